@@ -1,0 +1,36 @@
+"""legwright: which thermoelectric material, at which size and doping, is worth making into a leg."""
+
+from __future__ import annotations
+
+from importlib import import_module
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from legwright import physics as physics
+    from legwright.candidate.library import Candidate as Candidate
+    from legwright.candidate.library import load_candidate as load_candidate
+    from legwright.physics.properties import Properties as Properties
+    from legwright.physics.properties import evaluate as evaluate
+
+__version__ = "0.1.0"
+
+_HOMES = {
+    "physics": ("legwright.physics", None),
+    "load_candidate": ("legwright.candidate.library", "load_candidate"),
+    "Candidate": ("legwright.candidate.library", "Candidate"),
+    "evaluate": ("legwright.physics.properties", "evaluate"),
+    "Properties": ("legwright.physics.properties", "Properties"),
+}
+__all__ = ["Candidate", "Properties", "__version__", "evaluate", "load_candidate", "physics"]
+
+
+def __getattr__(name: str) -> Any:
+    if name not in _HOMES:
+        raise AttributeError(f"module 'legwright' has no attribute '{name}'")
+    module, attribute = _HOMES[name]
+    home = import_module(module)
+    return home if attribute is None else getattr(home, attribute)
+
+
+def __dir__() -> list[str]:
+    return sorted(__all__)

@@ -1,0 +1,1 @@
+"""The cellar: units, flags and refusals, files. No physics."""

@@ -1,0 +1,61 @@
+"""Where shipped data lies, TOML with positions in its messages, and writes that never leave half a file."""
+
+from __future__ import annotations
+
+import os
+import tempfile
+from importlib import resources
+from pathlib import Path
+from typing import Any
+
+from legwright.base.errors import InputError
+
+LARGEST_INPUT_BYTES = 2_000_000
+
+
+def datasets_folder() -> Path:
+    """The shipped data: `legwright/datasets` of an installed wheel, else `datasets/` of the checkout."""
+    shipped = Path(str(resources.files("legwright"))) / "datasets"
+    if shipped.is_dir():
+        return shipped
+    checkout = Path(__file__).resolve().parents[3] / "datasets"
+    if checkout.is_dir():
+        return checkout
+    raise FileNotFoundError("legwright is installed without its datasets; install it again")
+
+
+def read_toml(path: Path) -> dict[str, Any]:
+    """The parsed file; InputError that names the file and the line where it is not readable TOML."""
+    import tomli
+
+    if path.is_dir():
+        raise InputError("is a directory; a TOML file is needed", file=path)
+    try:
+        if path.stat().st_size > LARGEST_INPUT_BYTES:
+            raise InputError(f"is larger than {LARGEST_INPUT_BYTES} bytes", file=path)
+        return tomli.loads(path.read_text(encoding="utf-8"))
+    except FileNotFoundError as error:
+        raise InputError("no such file", file=path) from error
+    except UnicodeDecodeError as error:
+        raise InputError("is not UTF-8 text; a TOML file is needed", file=path) from error
+    except tomli.TOMLDecodeError as error:
+        raise InputError(f"is not valid TOML: {error}", file=path) from error
+    except OSError as error:
+        raise InputError(f"cannot be read ({error.strerror})", file=path) from error
+
+
+def write_whole(path: Path, text: str) -> None:
+    """Write `text` to `path` completely or not at all (temporary name, fsync, replace)."""
+    try:
+        handle, temporary = tempfile.mkstemp(dir=path.parent, prefix=f".{path.name}.")
+    except OSError as error:
+        raise InputError(f"cannot be written ({error.strerror})", file=path) from error
+    try:
+        with os.fdopen(handle, "w", encoding="utf-8", newline="\n") as stream:
+            stream.write(text)
+            stream.flush()
+            os.fsync(stream.fileno())
+        os.replace(temporary, path)
+    except OSError as error:
+        os.unlink(temporary)
+        raise InputError(f"cannot be written ({error.strerror})", file=path) from error

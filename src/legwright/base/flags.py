@@ -1,0 +1,56 @@
+"""Flags: what a reader must know before leaning on a figure. One slug, one paragraph each."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+
+MEANINGS: dict[str, str] = {
+    "above-service-temperature": (
+        "The hot side is above the highest service temperature in the candidate's file; the leg would "
+        "sublime, oxidise, melt or lose its dopant. Score 0."
+    ),
+    "duty-out-of-reach": "No current lets this leg serve the duty (a cooler cannot span the asked difference).",
+    "no-doping-range": "The brief's doping range and the candidate's own do not overlap. Score 0.",
+    "avoided-element": "The candidate contains an element that the brief avoids. Score 0.",
+    "window-open": (
+        "The score is still within 5 % of its best at a limit of the size range, so that end of the window "
+        "is the limit, not a loss of performance."
+    ),
+    "size-at-limit": (
+        "The best size is a limit of the size range: the brief's, or the smallest that can be made. "
+        "Beyond it the model still gains."
+    ),
+    "doping-at-limit": "The best doping is a limit of the doping range; solubility or the brief stops it.",
+    "no-gain-reference": "Coarse-grained material scores 0 under this duty, so the gain is undefined.",
+    "below-smallest-makeable-size": (
+        "The size is below the smallest that the candidate's file says can be made; nobody is known to make it."
+    ),
+    "doping-outside-known-range": (
+        "The doping lies outside the range in which the candidate's file says it has been made active."
+    ),
+    "temperature-outside-data": (
+        "Part of the temperature range lies outside the span over which the candidate's parameters were checked."
+    ),
+    "lattice-below-amorphous-minimum": (
+        "The computed lattice conductivity is below the amorphous minimum (Cahill, Watson & Pohl 1992): "
+        "the particle picture of phonons no longer holds and the true value is likely higher."
+    ),
+    "sintered-boundaries": (
+        "Sintered bodies of this alloy have behaved as if the boundary length were about a tenth of the grain "
+        "(subgrains, defects): real lattice conductivity may be lower, and mobility too, than at the stated grain."
+    ),
+    "mixed-minority-carriers": (
+        "Minority carriers carry more than a tenth of the electronic heat at the hot end (bipolar conduction)."
+    ),
+    "from-memory": "More than half of the numbers in this candidate's file were taken from memory, not read.",
+    "direction": "The figures hold for the one crystal direction or texture named in the candidate's file.",
+}
+
+
+def ordered(flags: Iterable[str]) -> tuple[str, ...]:
+    """Flags without repeats, in the order of MEANINGS; an unknown slug is a KeyError (our fault)."""
+    present = set(flags)
+    unknown = present - MEANINGS.keys()
+    if unknown:
+        raise KeyError(f"flag without a meaning: {sorted(unknown)}")
+    return tuple(slug for slug in MEANINGS if slug in present)

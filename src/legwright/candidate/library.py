@@ -1,0 +1,94 @@
+"""The library of candidates: finding, reading, listing."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cache, cached_property
+from pathlib import Path
+
+from legwright.base.errors import InputError, nearest
+from legwright.base.files import datasets_folder, read_toml
+from legwright.base.reading import read_as
+from legwright.candidate.composition import Disorder, disorder
+from legwright.candidate.model import CandidateFile, numbers
+from legwright.candidate.sources import source_keys
+
+
+@dataclass(frozen=True, eq=False)
+class Candidate:
+    """A material under consideration: its name, its file and what the file says."""
+
+    name: str
+    path: Path
+    data: CandidateFile
+
+    @cached_property
+    def disorder(self) -> Disorder:
+        """Mean mass and disorder from the formula's sublattices."""
+        return disorder(self.data.site)
+
+    @cached_property
+    def elements(self) -> tuple[str, ...]:
+        """Elements of formula and dopant, sorted."""
+        inside = {element for site in self.data.site for element in site.occupants}
+        return tuple(sorted(inside | {self.data.doping.dopant}))
+
+    @cached_property
+    def basis_counts(self) -> dict[str, int]:
+        """How many of the file's numbers are measured, published, calibrated, practice, from memory."""
+        counts: dict[str, int] = {}
+        for _, number in numbers(self.data):
+            counts[number.basis] = counts.get(number.basis, 0) + 1
+        return counts
+
+
+def candidates_folder() -> Path:
+    """Where the library's candidate files lie."""
+    return datasets_folder() / "candidates"
+
+
+@cache
+def library_names() -> tuple[str, ...]:
+    """Names of all library candidates, sorted."""
+    return tuple(sorted(path.stem for path in candidates_folder().glob("*.toml")))
+
+
+def load_candidate(name_or_path: str | Path) -> Candidate:
+    """The candidate of that library name, or in that file.
+
+    Raises InputError, naming file, key, value and what is allowed, when it cannot be used.
+
+    >>> load_candidate("si-n").data.carrier
+    'n'
+    """
+    text = str(name_or_path)
+    if text in library_names():
+        path = candidates_folder() / f"{text}.toml"
+    elif "/" in text or text.endswith(".toml") or Path(text).exists():
+        path = Path(text)
+    else:
+        raise InputError(f"no candidate '{text}' in the library; {nearest(text, library_names())}")
+    return _read(path.resolve(), text)
+
+
+@cache
+def _read(path: Path, shown: str) -> Candidate:
+    try:
+        data = read_as(CandidateFile, read_toml(path), shown)
+    except InputError as error:
+        raise InputError(str(error)) from error
+    known = source_keys(path.parent)
+    for key, number in numbers(data):
+        if number.source not in known:
+            raise InputError(
+                f"source '{number.source}' is in neither the library's sources.bib nor one beside the file; "
+                f"{nearest(number.source, known)}",
+                file=shown,
+                key=key,
+            )
+    candidate = Candidate(path.stem, path, data)
+    try:
+        _ = candidate.disorder
+    except InputError as error:
+        raise InputError(str(error), file=shown, key="site") from error
+    return candidate

@@ -1,0 +1,242 @@
+"""What a candidate file holds: a material with its parameters, every number with its origin."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import Annotated, Literal
+
+from pydantic import BaseModel, Field, model_validator
+
+from legwright.base.reading import Table
+from legwright.candidate.number import Measure, measure
+
+Pure = Annotated[Measure, measure("1", 0)]
+Fraction = Annotated[Measure, measure("1", 0, 1)]
+Signed = Annotated[Measure, measure("1")]
+Length = Annotated[Measure, measure("m", 0, above=True)]
+Volume = Annotated[Measure, measure("m^3", 0, above=True)]
+Mass = Annotated[Measure, measure("kg", 0, above=True)]
+Energy = Annotated[Measure, measure("J")]
+EnergyPerKelvin = Annotated[Measure, measure("J/K")]
+PerEnergy = Annotated[Measure, measure("1/J", 0)]
+Kelvin = Annotated[Measure, measure("K", 0, above=True)]
+Pressure = Annotated[Measure, measure("Pa", 0, above=True)]
+Speed = Annotated[Measure, measure("m/s", 0, above=True)]
+Mobility = Annotated[Measure, measure("m^2/V/s", 0, above=True)]
+Seebeck = Annotated[Measure, measure("V/K")]
+Conductivity = Annotated[Measure, measure("W/m/K", 0, above=True)]
+Density = Annotated[Measure, measure("1/m^3", 0, above=True)]
+PhononField = Annotated[Measure, measure("J/m", 0, above=True)]
+
+Carrier = Literal["n", "p"]
+Side = Literal["conduction", "valence"]
+Quantity = Literal["mobility", "seebeck", "lattice_conductivity"]
+Fixes = Literal[
+    "mass",
+    "lattice scattering",
+    "impurity scattering",
+    "anharmonicity",
+    "strain",
+    "carrier scattering",
+    "nothing",
+]
+AlloyForm = Literal["golden rule", "published 3 pi^2/8"]
+
+FIXED_BY: dict[str, tuple[str, ...]] = {
+    "mobility": ("lattice scattering", "impurity scattering", "nothing"),
+    "seebeck": ("mass", "nothing"),
+    "lattice_conductivity": ("anharmonicity", "strain", "carrier scattering", "nothing"),
+}
+
+
+class Site(Table):
+    """One sublattice of the formula unit; unlike occupants scatter phonons by mass and by size."""
+
+    count: float = Field(gt=0)
+    occupants: dict[str, Annotated[float, Field(gt=0, le=1)]]
+    sizes: dict[str, Length] = Field(default_factory=dict)
+
+    @model_validator(mode="after")
+    def _full(self) -> Site:
+        if abs(sum(self.occupants.values()) - 1) > 1e-9:
+            raise ValueError("occupants must add up to 1")
+        if self.sizes and set(self.sizes) != set(self.occupants):
+            raise ValueError("sizes must name each occupant")
+        return self
+
+
+class Cell(Table):
+    """Room per atom and atoms per primitive cell."""
+
+    volume_per_atom: Volume
+    atoms: Pure
+
+
+class Band(Table):
+    """A Kane band. `edge` is its energy at 0 K; it moves by −edge_alpha T²/(T + edge_beta) (Varshni 1967)."""
+
+    label: str
+    side: Side
+    edge: Energy
+    edge_alpha: EnergyPerKelvin | None = None
+    edge_beta: Kelvin | None = None
+    valleys: Pure
+    dos_mass: Mass
+    inertial_mass: Mass
+    mass_exponent: Signed | None = None
+    nonparabolicity: PerEnergy | None = None
+    deformation_potential: Energy
+    intervalley_field: PhononField | None = None
+    intervalley_phonon: Energy | None = None
+    alloy_potential: Energy | None = None
+    alloy_form: AlloyForm = "golden rule"
+
+    @model_validator(mode="after")
+    def _paired(self) -> Band:
+        if (self.intervalley_field is None) != (self.intervalley_phonon is None):
+            raise ValueError("intervalley_field and intervalley_phonon go together")
+        return self
+
+
+class Scattering(Table):
+    """What the carriers of all bands share."""
+
+    elastic_constant: Pressure
+    dielectric_constant: Pure
+    alloy_fraction: Fraction | None = None
+    alloy_volume: Volume | None = None
+    grain_reflection: Fraction | None = None
+
+    @model_validator(mode="after")
+    def _paired(self) -> Scattering:
+        if (self.alloy_fraction is None) != (self.alloy_volume is None):
+            raise ValueError("alloy_fraction and alloy_volume go together")
+        return self
+
+
+class Lattice(Table):
+    """One longitudinal and two transverse branches, and what scatters them."""
+
+    sound_longitudinal: Speed
+    sound_transverse: Speed
+    grueneisen_longitudinal: Pure
+    grueneisen_transverse: Pure
+    umklapp_divisor: Pure
+    normal_ratio: Pure
+    strain_parameter: Pure
+    carrier_deformation_potential: Energy
+
+
+class Anchor(Table):
+    """A measurement on coarse material, and the prefactor that it fixes."""
+
+    quantity: Quantity
+    fixes: Fixes
+    temperature: Kelvin
+    doping: Density | None = None
+    mobility: Mobility | None = None
+    seebeck: Seebeck | None = None
+    lattice_conductivity: Conductivity | None = None
+
+    @property
+    def measured(self) -> Measure:
+        """The measured figure itself."""
+        number = getattr(self, self.quantity)
+        assert isinstance(number, Measure)
+        return number
+
+    @model_validator(mode="after")
+    def _whole(self) -> Anchor:
+        if not isinstance(getattr(self, self.quantity), Measure):
+            raise ValueError(f"an anchor of quantity '{self.quantity}' needs the key '{self.quantity}'")
+        if self.fixes not in FIXED_BY[self.quantity]:
+            allowed = ", ".join(FIXED_BY[self.quantity])
+            raise ValueError(f"'{self.quantity}' can fix one of: {allowed}")
+        if self.doping is None and self.quantity != "lattice_conductivity":
+            raise ValueError("needs the key 'doping': the active density of the sample")
+        return self
+
+
+class Doping(Table):
+    """Active densities that have been made, and the element that gives them."""
+
+    lowest: Density
+    highest: Density
+    dopant: str
+    replaces: str
+    dopant_size: Length | None = None
+    host_size: Length | None = None
+
+
+class Service(Table):
+    """Where the candidate may be used."""
+
+    highest_temperature: Kelvin
+    reason: str
+    data_from: Kelvin
+    data_to: Kelvin
+
+
+class Making(Table):
+    """What can be made, and how."""
+
+    smallest_grain: Length
+    smallest_wire: Length | None = None
+    smallest_film: Length | None = None
+    route: str
+    sintered_like_finer: bool = False
+
+    def smallest(self, shape: str) -> float:
+        """Smallest size of that shape that can be made, m; 0 where the file does not say."""
+        size = {"grain": self.smallest_grain, "wire": self.smallest_wire, "film": self.smallest_film}[shape]
+        return 0.0 if size is None else size.si
+
+
+class CandidateFile(Table):
+    """A whole candidate file."""
+
+    schema_: Literal[1] = Field(alias="schema")
+    title: str
+    formula: str
+    carrier: Carrier
+    direction: str
+    site: tuple[Site, ...] = Field(min_length=1)
+    cell: Cell
+    band: tuple[Band, ...] = Field(min_length=1)
+    scattering: Scattering
+    lattice: Lattice
+    anchor: tuple[Anchor, ...]
+    doping: Doping
+    service: Service
+    making: Making
+
+    @model_validator(mode="after")
+    def _consistent(self) -> CandidateFile:
+        majority = "conduction" if self.carrier == "n" else "valence"
+        if not any(band.side == majority for band in self.band):
+            raise ValueError(f"carrier '{self.carrier}' needs a {majority} band")
+        if self.doping.lowest.si >= self.doping.highest.si:
+            raise ValueError("doping.lowest must be below doping.highest")
+        hosts = {element for site in self.site for element in site.occupants}
+        if self.doping.replaces not in hosts:
+            raise ValueError(f"doping.replaces '{self.doping.replaces}' is not in the formula")
+        return self
+
+
+def numbers(table: BaseModel, prefix: str = "") -> Iterator[tuple[str, Measure]]:
+    """Every Measure below `table`, with its key."""
+    for name in type(table).model_fields:
+        value = getattr(table, name)
+        key = f"{prefix}.{name}" if prefix else name
+        if isinstance(value, Measure):
+            yield key, value
+        elif isinstance(value, BaseModel):
+            yield from numbers(value, key)
+        elif isinstance(value, tuple):
+            for index, item in enumerate(value):
+                if isinstance(item, BaseModel):
+                    yield from numbers(item, f"{key}[{index + 1}]")
+        elif isinstance(value, dict):
+            for inner, item in value.items():
+                if isinstance(item, Measure):
+                    yield f"{key}.{inner}", item

@@ -1,0 +1,39 @@
+"""What is assumed of grain boundaries for every candidate alike."""
+
+from __future__ import annotations
+
+from functools import cache
+from typing import Literal
+
+from pydantic import Field
+
+from legwright.base.files import datasets_folder, read_toml
+from legwright.base.reading import Table, read_as
+from legwright.candidate.model import Fraction, Pure
+
+
+class GrainLaw(Table):
+    """Λ_gb = c d (ω_max/ω)^s."""
+
+    exponent: Pure
+    prefactor: Pure
+
+
+class Reflection(Table):
+    """Share of carriers that a grain boundary turns back."""
+
+    electrons: Fraction
+
+
+class Priors(Table):
+    """The whole of priors.toml."""
+
+    schema_: Literal[1] = Field(alias="schema")
+    grain_law: GrainLaw
+    reflection: Reflection
+
+
+@cache
+def load_priors() -> Priors:
+    """The shipped priors."""
+    return read_as(Priors, read_toml(datasets_folder() / "priors.toml"), "priors.toml")

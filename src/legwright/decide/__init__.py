@@ -1,0 +1,1 @@
+"""Which one to make: brief, maps, ranking, peaks."""

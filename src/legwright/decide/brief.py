@@ -1,0 +1,151 @@
+"""The job to be decided, as the user wrote it."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Annotated, Literal
+
+from pydantic import Field, model_validator
+
+from legwright.base.errors import InputError, nearest
+from legwright.base.files import read_toml
+from legwright.base.reading import Table, read_as
+from legwright.base.units import NM
+from legwright.candidate.library import Candidate, library_names, load_candidate
+from legwright.leg.duty import GOALS, Duty, Goal, Kind
+from legwright.physics.properties import Shape
+
+Positive = Annotated[float, Field(gt=0)]
+Temperature = Annotated[float, Field(gt=0, le=3000)]
+
+#: leg length when the brief gives none: common practice for bulk legs is 1 to 5 mm
+DEFAULT_LENGTH_MM = 1.0
+
+
+class DutyTable(Table):
+    """What the leg is for."""
+
+    kind: Kind
+    hot_K: Temperature
+    cold_K: Temperature
+    maximise: Goal
+
+    @model_validator(mode="after")
+    def _possible(self) -> DutyTable:
+        if self.hot_K <= self.cold_K:
+            raise ValueError(f"hot_K = {self.hot_K:g} must be above cold_K = {self.cold_K:g}")
+        if self.maximise not in GOALS[self.kind]:
+            raise ValueError(
+                f"maximise = '{self.maximise}' does not fit kind = '{self.kind}' "
+                f"(allowed: {', '.join(GOALS[self.kind])})"
+            )
+        return self
+
+
+class SizeTable(Table):
+    """The sizes to consider."""
+
+    shape: Shape
+    min_nm: Positive
+    max_nm: Positive
+
+    @model_validator(mode="after")
+    def _ordered(self) -> SizeTable:
+        if self.max_nm <= self.min_nm:
+            raise ValueError(f"max_nm = {self.max_nm:g} must be above min_nm = {self.min_nm:g}")
+        return self
+
+
+class DopingTable(Table):
+    """Active densities to consider, where narrower than each candidate's own range."""
+
+    min_per_cm3: Positive
+    max_per_cm3: Positive
+
+    @model_validator(mode="after")
+    def _ordered(self) -> DopingTable:
+        if self.max_per_cm3 <= self.min_per_cm3:
+            raise ValueError(f"max_per_cm3 = {self.max_per_cm3:g} must be above min_per_cm3 = {self.min_per_cm3:g}")
+        return self
+
+
+class CandidatesTable(Table):
+    """Who is considered."""
+
+    use: Literal["all"] | tuple[str, ...] = "all"
+    carrier: Literal["n", "p", "either"] = "either"
+
+
+class AvoidTable(Table):
+    """What must not be in the leg."""
+
+    elements: tuple[str, ...] = ()
+
+
+class LegTable(Table):
+    """The leg itself."""
+
+    length_mm: Positive = DEFAULT_LENGTH_MM
+
+
+class Brief(Table):
+    """A whole brief."""
+
+    title: str
+    duty: DutyTable
+    size: SizeTable
+    doping: DopingTable | None = None
+    candidates: CandidatesTable = CandidatesTable()
+    avoid: AvoidTable = AvoidTable()
+    leg: LegTable = LegTable()
+
+    @property
+    def task(self) -> Duty:
+        """The duty in SI."""
+        duty = self.duty
+        return Duty(duty.kind, duty.hot_K, duty.cold_K, duty.maximise, self.leg.length_mm * 1e6 * NM)
+
+
+def load_brief(path: str | Path) -> Brief:
+    """The brief in that file; InputError naming file, key, value and what is allowed when it cannot be used."""
+    brief = read_as(Brief, read_toml(Path(path)), path)
+    if brief.candidates.use == ():
+        raise InputError('is empty; name at least one candidate, or "all"', file=path, key="candidates.use")
+    _check_elements(brief, path)
+    return brief
+
+
+def _check_elements(brief: Brief, path: str | Path) -> None:
+    if not brief.avoid.elements:
+        return
+    from pymatgen.core.periodic_table import Element
+
+    symbols = [element.value for element in Element]
+    for symbol in brief.avoid.elements:
+        if symbol not in symbols:
+            raise InputError(
+                f"'{symbol}' is not an element; {nearest(symbol, symbols)}", file=path, key="avoid.elements"
+            )
+
+
+def candidates_of(brief: Brief, path: str | Path) -> list[Candidate]:
+    """The brief's candidates in a fixed order, whatever order the brief lists them in."""
+    wanted = library_names() if brief.candidates.use == "all" else brief.candidates.use
+    found: dict[Path, Candidate] = {}
+    for name in wanted:
+        beside = Path(path).parent / name
+        try:
+            one = load_candidate(beside if name.endswith(".toml") and beside.exists() else name)
+        except InputError as error:
+            if name in library_names() or name.endswith(".toml"):
+                raise
+            raise InputError(str(error), file=path, key="candidates.use") from error
+        found[one.path] = one
+    chosen = [c for c in found.values() if brief.candidates.carrier in ("either", c.data.carrier)]
+    if not chosen:
+        raise InputError(
+            f"none of the candidates has carrier '{brief.candidates.carrier}'",
+            file=path,
+            key="candidates.carrier",
+        )
+    return sorted(chosen, key=lambda c: (c.name, str(c.path)))

@@ -1,0 +1,207 @@
+"""The main job: for each candidate the best size and doping of a leg, then the order of candidates."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.interpolate import CubicSpline
+
+from legwright.base.flags import ordered
+from legwright.base.units import NM, PER_CM3
+from legwright.candidate.library import Candidate
+from legwright.decide.brief import Brief, candidates_of
+from legwright.decide.score import leg_material, properties_over_span, score
+from legwright.decide.warnings import point_flags
+from legwright.leg.duty import SCORE_NAMES, Duty, best_score
+from legwright.physics.properties import Properties
+
+Array = NDArray[np.float64]
+
+#: a size is inside the window when it keeps this share of the best score
+WINDOW_SHARE = 0.95
+_MAP_DOPINGS, _MAP_SIZES, _WINDOW_SIZES = 25, 33, 129
+_FINE_NODES, _FINE_ROUNDS = 17, 8
+_ZOOMS, _ZOOM_POINTS = 6, 7
+
+
+@dataclass(frozen=True)
+class Row:
+    """One line of the ranking; SI except where the name says otherwise. None: not defined, with a flag."""
+
+    candidate: Candidate
+    shape: str
+    size: float | None
+    window: tuple[float, float] | None
+    doping: float | None
+    score: float
+    score_name: str
+    zt_mean: float | None
+    zt_peak: float | None
+    gain_over_bulk: float | None
+    flags: tuple[str, ...]
+    rank: int = 0
+
+
+def rank(brief: Brief, path: str | Path, workers: int = 1) -> list[Row]:
+    """All candidates of the brief, best first; those that cannot serve stand last with score 0 and a flag.
+
+    `workers` processes share the candidates; each candidate is one whole task, so the figures do not change.
+    """
+    candidates = candidates_of(brief, path)
+    if workers == 1:
+        rows = [rank_one(brief, candidate) for candidate in candidates]
+    else:
+        from joblib import Parallel, delayed
+
+        rows = Parallel(n_jobs=workers)(delayed(rank_one)(brief, candidate) for candidate in candidates)
+    rows.sort(key=lambda row: (-row.score, row.candidate.name))
+    return [replace(row, rank=place) for place, row in enumerate(rows, start=1)]
+
+
+def rank_one(brief: Brief, candidate: Candidate) -> Row:
+    """Dense map over doping and size, refined around its best point; then window, zT and gain there."""
+    duty, shape = brief.task, brief.size.shape
+    refusal = _refusal(brief, candidate, duty)
+    dopings = doping_range(brief, candidate)
+    if refusal or dopings is None:
+        return _infeasible(brief, candidate, refusal or "no-doping-range")
+    sizes = size_range(brief, candidate)
+    doping, size, _ = best_design(candidate, duty, dopings, sizes, shape)
+    made = properties_over_span(candidate, duty, doping, size, shape, _FINE_NODES)
+    best = float(best_score(leg_material(candidate, made), duty, _FINE_ROUNDS))
+    if best == 0:
+        return _infeasible(brief, candidate, "duty-out-of-reach")
+    low, high, open_ended = window(candidate, duty, doping, size, sizes, shape)
+    bulk = best_bulk_score(candidate, duty, dopings, shape)
+    zt_mean, zt_peak = zt_over(made, duty)
+    flags = _design_flags(candidate, brief, made, doping, size, dopings, sizes)
+    if open_ended:
+        flags.append("window-open")
+    if bulk == 0:
+        flags.append("no-gain-reference")
+    return Row(
+        candidate,
+        shape,
+        size,
+        (low, high),
+        doping,
+        best,
+        SCORE_NAMES[duty.maximise],
+        zt_mean,
+        zt_peak,
+        best / bulk if bulk > 0 else None,
+        ordered(flags),
+    )
+
+
+def doping_range(brief: Brief, candidate: Candidate) -> tuple[float, float] | None:
+    """The candidate's active densities (1/m³), cut to the brief's; None where they do not overlap."""
+    low, high = candidate.data.doping.lowest.si, candidate.data.doping.highest.si
+    if brief.doping is not None:
+        low = max(low, brief.doping.min_per_cm3 * PER_CM3)
+        high = min(high, brief.doping.max_per_cm3 * PER_CM3)
+    return (low, high) if low < high else None
+
+
+def size_range(brief: Brief, candidate: Candidate) -> tuple[float, float]:
+    """The brief's sizes (m), cut to those that the candidate can be made in; as they stand where none can."""
+    low, high = brief.size.min_nm * NM, brief.size.max_nm * NM
+    smallest = candidate.data.making.smallest(brief.size.shape)
+    return (max(low, smallest), high) if smallest < high else (low, high)
+
+
+def _refusal(brief: Brief, candidate: Candidate, duty: Duty) -> str | None:
+    if set(brief.avoid.elements) & set(candidate.elements):
+        return "avoided-element"
+    if duty.hot > candidate.data.service.highest_temperature.si:
+        return "above-service-temperature"
+    return None
+
+
+def _infeasible(brief: Brief, candidate: Candidate, flag: str) -> Row:
+    name = SCORE_NAMES[brief.duty.maximise]
+    return Row(candidate, brief.size.shape, None, None, None, 0.0, name, None, None, None, (flag,))
+
+
+def log_axis(ends: tuple[float, float], count: int) -> Array:
+    """Natural logarithms, evenly spaced between the ends."""
+    return np.linspace(np.log(ends[0]), np.log(ends[1]), count)
+
+
+def best_design(
+    candidate: Candidate, duty: Duty, dopings: tuple[float, float], sizes: tuple[float, float], shape: str
+) -> tuple[float, float, float]:
+    """(doping, size, score) of the best leg: a dense map, then grids that shrink around the best point."""
+    log_n = log_axis(dopings, _MAP_DOPINGS)
+    log_d = log_axis(sizes, _MAP_SIZES)
+    for _ in range(_ZOOMS + 1):
+        scores = score(candidate, duty, np.exp(log_n)[:, None], np.exp(log_d), shape)
+        i, j = np.unravel_index(int(np.argmax(scores)), scores.shape)
+        best = float(np.exp(log_n[i])), float(np.exp(log_d[j])), float(scores[i, j])
+        log_n, log_d = (
+            np.linspace(axis[max(k - 1, 0)], axis[min(k + 1, axis.size - 1)], _ZOOM_POINTS)
+            for axis, k in ((log_n, int(i)), (log_d, int(j)))
+        )
+    return best
+
+
+def best_bulk_score(candidate: Candidate, duty: Duty, dopings: tuple[float, float], shape: str) -> float:
+    """Score of coarse-grained material (size = ∞) at its own best doping."""
+    log_n = log_axis(dopings, _MAP_DOPINGS)
+    for _ in range(_ZOOMS):
+        scores = score(candidate, duty, np.exp(log_n), np.inf, shape)
+        i = int(np.argmax(scores))
+        doping = float(np.exp(log_n[i]))
+        log_n = np.linspace(log_n[max(i - 1, 0)], log_n[min(i + 1, log_n.size - 1)], _ZOOM_POINTS)
+    return float(score(candidate, duty, doping, np.inf, shape, _FINE_NODES, _FINE_ROUNDS))
+
+
+def window(
+    candidate: Candidate, duty: Duty, doping: float, size: float, sizes: tuple[float, float], shape: str
+) -> tuple[float, float, bool]:
+    """Sizes around the best that keep WINDOW_SHARE of its score, and whether an end is a limit of the range."""
+    log_d = np.sort(np.append(log_axis(sizes, _WINDOW_SIZES), np.log(size)))
+    return window_of(log_d, score(candidate, duty, doping, np.exp(log_d), shape))
+
+
+def window_of(log_size: Array, scores: Array) -> tuple[float, float, bool]:
+    """Window of a score curve over ln(size); its ends are interpolated between samples."""
+    best = int(np.argmax(scores))
+    level = WINDOW_SHARE * scores[best]
+    outside = np.flatnonzero(scores < level)
+    below, above = outside[outside < best], outside[outside > best]
+
+    def crossing(out: int, kept: int) -> float:
+        share = (level - scores[out]) / (scores[kept] - scores[out])
+        return float(np.exp(log_size[out] + share * (log_size[kept] - log_size[out])))
+
+    low = crossing(below[-1], below[-1] + 1) if below.size else float(np.exp(log_size[0]))
+    high = crossing(above[0], above[0] - 1) if above.size else float(np.exp(log_size[-1]))
+    return low, high, not (below.size and above.size)
+
+
+def zt_over(made: Properties, duty: Duty) -> tuple[float, float]:
+    """Mean ∫zT dT/(T_h − T_c) and largest zT between the duty's temperatures."""
+    curve = CubicSpline(made.temperature, made.zt)
+    mean = curve.integrate(duty.cold, duty.hot) / (duty.hot - duty.cold)
+    return float(mean), float(np.max(curve(np.linspace(duty.cold, duty.hot, 501))))
+
+
+def _design_flags(
+    candidate: Candidate,
+    brief: Brief,
+    made: Properties,
+    doping: float,
+    size: float,
+    dopings: tuple[float, float],
+    sizes: tuple[float, float],
+) -> list[str]:
+    flags = point_flags(candidate, made, brief.size.shape)
+    if not sizes[0] * 1.001 < size < sizes[1] * 0.999:
+        flags.append("size-at-limit")
+    if not dopings[0] * 1.001 < doping < dopings[1] * 0.999:
+        flags.append("doping-at-limit")
+    return flags

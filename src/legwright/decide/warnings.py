@@ -1,0 +1,35 @@
+"""Which flags a set of design points carries."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from legwright.candidate.library import Candidate
+from legwright.physics.properties import Properties
+
+
+def point_flags(candidate: Candidate, made: Properties, shape: str) -> list[str]:
+    """What a reader must know about these design points, whatever they are for."""
+    data, flags = candidate.data, []
+    if np.any(made.size < data.making.smallest(shape) * (1 - 1e-9)):
+        flags.append("below-smallest-makeable-size")
+    if np.any(made.doping < data.doping.lowest.si * (1 - 1e-9)) or np.any(
+        made.doping > data.doping.highest.si * (1 + 1e-9)
+    ):
+        flags.append("doping-outside-known-range")
+    if np.any(made.temperature < data.service.data_from.si) or np.any(made.temperature > data.service.data_to.si):
+        flags.append("temperature-outside-data")
+    if np.any(made.temperature > data.service.highest_temperature.si):
+        flags.append("above-service-temperature")
+    if np.any(made.lattice_thermal_conductivity < made.amorphous_minimum):
+        flags.append("lattice-below-amorphous-minimum")
+    if np.any(made.bipolar_thermal_conductivity > 0.1 * made.electronic_thermal_conductivity):
+        flags.append("mixed-minority-carriers")
+    if shape == "grain" and data.making.sintered_like_finer and np.any(np.isfinite(made.size)):
+        flags.append("sintered-boundaries")
+    if not data.direction.startswith("isotropic"):
+        flags.append("direction")
+    counts = candidate.basis_counts
+    if counts.get("from memory", 0) > 0.5 * sum(counts.values()):
+        flags.append("from-memory")
+    return flags

@@ -1,0 +1,1 @@
+"""What a device does: one leg at its duty."""

@@ -1,0 +1,184 @@
+"""One leg in steady state, by relative-current integration over temperature.
+
+With w = (conducted heat flux)/(current density), W/A, the energy balance of a one-dimensional leg is
+dw/dT = −κρ/w − T dS/dT: length and current drop out. w > 0 in a generator, w < 0 in a cooler whose temperature
+rises all the way to the hot end. The heat per current through a face is Φ = S T + w.
+Source: Snyder & Ursell, Physical Review Letters 91, 148301 (2003); w is the inverse of their u.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.interpolate import CubicSpline
+
+Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class LegMaterial:
+    """S (V/K), ρ (Ω m) and κ (W/(m K)) of one or many legs as smooth functions of temperature.
+
+    Arrays are (temperature, legs …); S is taken with the sign of the majority carrier, so S > 0 helps.
+    """
+
+    seebeck: CubicSpline
+    resistivity: CubicSpline
+    thermal_conductivity: CubicSpline
+
+    @classmethod
+    def from_nodes(
+        cls, temperature: Array, seebeck: Array, resistivity: Array, thermal_conductivity: Array
+    ) -> LegMaterial:
+        """Cubic splines through ascending temperatures (axis 0)."""
+        return cls(*(CubicSpline(temperature, values) for values in (seebeck, resistivity, thermal_conductivity)))
+
+    @property
+    def lowest(self) -> float:
+        """Lowest temperature of the nodes, K."""
+        return float(self.seebeck.x[0])
+
+    @property
+    def highest(self) -> float:
+        """Highest temperature of the nodes, K."""
+        return float(self.seebeck.x[-1])
+
+
+@dataclass(frozen=True)
+class Along:
+    """A march down in temperature: w² and ∫κ/|w| dT (= current density × length covered) at each step."""
+
+    temperature: Array
+    w_squared: Array
+    current_length: Array
+
+
+def march_down(material: LegMaterial, top: float, bottom: float, sign: int, w_top: Array, steps: int) -> Along:
+    """Integrate d(w²)/dT = −2κρ − 2wT dS/dT from `top` down to `bottom` with w = ±√(w²) of the given sign.
+
+    Fourth-order Runge–Kutta in θ = √(T_top − T), in which the start from w = 0 (a temperature maximum inside
+    the leg) is smooth. w_top: |w| at the top (W/A), shape legs …; the result has a first axis of steps + 1.
+    """
+    theta = np.sqrt(top - bottom) * np.linspace(0.0, 1.0, 2 * steps + 1)
+    t = top - theta**2
+    kappa = material.thermal_conductivity(t)
+    joule = kappa * material.resistivity(t)
+    thomson = np.reshape(sign * t, (-1, *(1,) * (kappa.ndim - 1))) * material.seebeck(t, 1)
+    at_rest = np.sqrt(2 * kappa[0] ** 2 / joule[0])  # limit of 2θκ/w at w = 0, θ = 0
+    shape = np.broadcast_shapes(kappa.shape[1:], np.shape(w_top))
+
+    def slopes(i: int, y: Array) -> tuple[Array, Array]:
+        w = np.sqrt(np.maximum(y, 0.0))
+        change = 4 * theta[i] * (joule[i] + w * thomson[i])
+        if i:
+            return change, 2 * theta[i] * kappa[i] / np.maximum(w, _SMALLEST_W)
+        return change, np.where(w > 0, 0.0, at_rest)
+
+    y = np.empty((steps + 1, *shape))
+    length = np.zeros((steps + 1, *shape))
+    y[0] = np.asarray(w_top, dtype=float) ** 2
+    for k in range(steps):
+        h, i = theta[2 * k + 2] - theta[2 * k], 2 * k
+        a, la = slopes(i, y[k])
+        b, lb = slopes(i + 1, y[k] + 0.5 * h * a)
+        c, lc = slopes(i + 1, y[k] + 0.5 * h * b)
+        d, ld = slopes(i + 2, y[k] + h * c)
+        y[k + 1] = y[k] + h / 6 * (a + 2 * (b + c) + d)
+        length[k + 1] = length[k] + h / 6 * (la + 2 * (lb + lc) + ld)
+    return Along(t[::2], y, length)
+
+
+#: guards the division where no current reaches; W/A
+_SMALLEST_W = 1e-30
+
+
+@dataclass(frozen=True)
+class Generator:
+    """A generating leg at one operating point; areal figures are times the leg length (W/m, A/m)."""
+
+    efficiency: Array
+    power_times_length: Array
+    current_times_length: Array
+
+
+def generate(material: LegMaterial, hot: float, cold: float, w_hot: Array, steps: int = 24) -> Generator:
+    """Efficiency 1 − Φ_c/Φ_h, and power and current density times length, for |w| at the hot end.
+
+    −inf efficiency where the leg would consume heat in the wrong sense (Φ_h ≤ 0).
+    """
+    along = march_down(material, hot, cold, +1, w_hot, steps)
+    phi_hot = material.seebeck(hot) * hot + w_hot
+    phi_cold = material.seebeck(cold) * cold + np.sqrt(np.maximum(along.w_squared[-1], 0.0))
+    valid = (phi_hot > 0) & (along.w_squared[-1] > 0)
+    efficiency = np.where(valid, 1 - phi_cold / np.where(valid, phi_hot, 1.0), -np.inf)
+    current = along.current_length[-1]
+    return Generator(efficiency, current * (phi_hot - phi_cold), current)
+
+
+@dataclass(frozen=True)
+class Cooler:
+    """A cooling leg at one operating point; areal figures are times the leg length."""
+
+    cop: Array
+    heat_times_length: Array
+    current_times_length: Array
+
+
+def cool(material: LegMaterial, hot: float, cold: float, w_hot: Array, steps: int = 24) -> Cooler:
+    """COP Φ_c/(Φ_h − Φ_c) and lifted heat density times length, for |w| at the hot end of a monotonic leg."""
+    along = march_down(material, hot, cold, -1, w_hot, steps)
+    phi_hot = material.seebeck(hot) * hot - w_hot
+    phi_cold = material.seebeck(cold) * cold - np.sqrt(np.maximum(along.w_squared[-1], 0.0))
+    spent = phi_hot - phi_cold
+    cop = np.where(spent > 0, phi_cold / np.where(spent > 0, spent, 1.0), -np.inf)
+    current = along.current_length[-1]
+    return Cooler(cop, current * phi_cold, current)
+
+
+def cool_past_peak(material: LegMaterial, hot: float, cold: float, peak: float, steps: int = 24) -> Cooler:
+    """A cooling leg that is hottest inside, at `peak` ≥ `hot`: two marches down from w = 0 at the peak."""
+    at_rest = np.zeros(material.seebeck.c.shape[2:])
+    to_cold = march_down(material, peak, cold, -1, at_rest, steps)
+    to_hot = march_down(material, peak, hot, +1, at_rest, steps)
+    phi_cold = material.seebeck(cold) * cold - np.sqrt(np.maximum(to_cold.w_squared[-1], 0.0))
+    phi_hot = material.seebeck(hot) * hot + np.sqrt(np.maximum(to_hot.w_squared[-1], 0.0))
+    current = to_cold.current_length[-1] + to_hot.current_length[-1]
+    return Cooler(phi_cold / (phi_hot - phi_cold), current * phi_cold, current)
+
+
+def largest_difference(material: LegMaterial, hot: float, steps: int = 96) -> Array:
+    """ΔT at which a cooler whose hot end is at `hot` lifts nothing any more, K.
+
+    At the best current the temperature has its maximum just at the hot end (w = 0 there) and the cold face
+    takes in no heat (Φ_c = 0): one march down from w = 0 until S T = |w|. Limited by the lowest node.
+    For constant properties ½ Z T_c² (Ioffe, Semiconductor Thermoelements, 1957).
+    """
+    along = march_down(material, hot, material.lowest, -1, np.zeros(material.seebeck.c.shape[2:]), steps)
+    t = along.temperature.reshape(-1, *(1,) * (along.w_squared.ndim - 1))
+    left = material.seebeck(along.temperature) * t - np.sqrt(np.maximum(along.w_squared, 0.0))
+    spent = left <= 0
+    ends, after = np.any(spent, axis=0), np.maximum(np.argmax(spent, axis=0), 1)[None]
+    (y0, y1), (t0, t1) = (
+        [np.take_along_axis(np.broadcast_to(a, left.shape), i, axis=0)[0] for i in (after - 1, after)]
+        for a in (left, t)
+    )
+    crossing = t0 + (t1 - t0) * y0 / np.where(y0 != y1, y0 - y1, 1.0)
+    cold = np.where(spent[0], hot, np.where(ends, crossing, material.lowest))
+    return np.asarray(hot - cold)
+
+
+def zoom(score: Callable[[Array], Array], low: Array, high: Array, points: int, rounds: int) -> tuple[Array, Array]:
+    """Best argument and score of a single-peaked function per leg: a grid that shrinks around its best point.
+
+    `score` takes the grid with its points along a first axis of its own.
+    """
+    for _ in range(rounds):
+        grid = low + (high - low) * np.linspace(0, 1, points).reshape(-1, *(1,) * np.ndim(low))
+        values = score(grid)
+        best = np.argmax(values, axis=0)[None]
+        low = np.take_along_axis(grid, np.maximum(best - 1, 0), axis=0)[0]
+        high = np.take_along_axis(grid, np.minimum(best + 1, points - 1), axis=0)[0]
+    return np.take_along_axis(grid, best, axis=0)[0], np.take_along_axis(values, best, axis=0)[0]

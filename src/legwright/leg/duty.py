@@ -1,0 +1,115 @@
+"""The job of a leg, and the best score that a material reaches in it."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Literal, get_args
+
+import numpy as np
+from numpy.typing import NDArray
+
+from legwright.leg.balance import (
+    LegMaterial,
+    cool,
+    cool_past_peak,
+    generate,
+    largest_difference,
+    zoom,
+)
+
+Array = NDArray[np.float64]
+Kind = Literal["generator", "cooler"]
+Goal = Literal["efficiency", "power", "cop", "delta_t", "heat_lifted"]
+
+GOALS: dict[str, tuple[Goal, ...]] = {
+    "generator": ("efficiency", "power"),
+    "cooler": ("cop", "delta_t", "heat_lifted"),
+}
+SCORE_NAMES: dict[Goal, str] = {
+    "efficiency": "efficiency",
+    "power": "power_W_per_cm2",
+    "cop": "cop",
+    "delta_t": "delta_t_max_K",
+    "heat_lifted": "heat_lifted_W_per_cm2",
+}
+assert set(SCORE_NAMES) == set(get_args(Goal))
+
+#: W/m² in one W/cm²
+_PER_CM2 = 1e4
+#: a cooler's interior may rise this far above its hot end, as a share of the hot temperature
+_PEAK_RISE = 0.2
+#: lowest temperature looked at for the largest difference, as a share of the hot temperature
+_COLDEST = 0.5
+
+
+@dataclass(frozen=True)
+class Duty:
+    """What the leg is for: temperatures in K, what counts, and the leg length (m) for areal figures."""
+
+    kind: Kind
+    hot: float
+    cold: float
+    maximise: Goal
+    length: float
+
+    @property
+    def span(self) -> tuple[float, float]:
+        """Temperatures over which the material's properties are needed."""
+        if self.maximise == "delta_t":
+            return _COLDEST * self.hot, self.hot
+        if self.maximise == "heat_lifted":
+            return self.cold, (1 + _PEAK_RISE) * self.hot
+        return self.cold, self.hot
+
+
+def best_score(material: LegMaterial, duty: Duty, rounds: int = 4) -> Array:
+    """The duty's score at the best current, contacts at zero; 0 where the leg cannot serve.
+
+    Efficiency and COP are fractions, areal figures W/cm² of leg, ΔT in K. `rounds` sets how closely the best
+    current is found: each divides the bracket by three.
+    """
+    if duty.maximise == "delta_t":
+        return largest_difference(material, duty.hot)
+    if duty.maximise == "heat_lifted":
+        return _serving(_best_lift(material, duty) / duty.length / _PER_CM2)
+    pull = np.maximum(material.seebeck(duty.hot) * duty.hot, 1e-12)
+    root = np.sqrt(1 + _figure_of_merit(material, duty) * 0.5 * (duty.hot + duty.cold))
+    if duty.kind == "cooler":
+        _, score = zoom(
+            lambda w: cool(material, duty.hot, duty.cold, w).cop, np.zeros_like(pull), pull, 7, rounds + 1
+        )
+        return _serving(score)
+
+    def generated(log_w: Array) -> Array:
+        made = generate(material, duty.hot, duty.cold, np.exp(log_w))
+        if duty.maximise == "efficiency":
+            return made.efficiency
+        return np.where(np.isfinite(made.efficiency), made.power_times_length, -np.inf)
+
+    expected = np.log(pull / np.maximum(root - 1, 1e-9))
+    _, score = zoom(generated, expected - 2.5, expected + 2.5, 7, rounds + 1)
+    if duty.maximise == "power":
+        score = score / duty.length / _PER_CM2
+    return _serving(score)
+
+
+def _figure_of_merit(material: LegMaterial, duty: Duty) -> Array:
+    """Z from S, ρ and κ at mid-span, 1/K: only a first guess for the best current."""
+    middle = 0.5 * (duty.hot + duty.cold)
+    heat = material.resistivity(middle) * material.thermal_conductivity(middle)
+    return np.asarray(material.seebeck(middle) ** 2 / heat)
+
+
+def _serving(score: Array) -> Array:
+    return np.where(np.isfinite(score) & (score > 0), score, 0.0)
+
+
+def _best_lift(material: LegMaterial, duty: Duty) -> Array:
+    """Largest lifted heat × length over interior peak temperatures, with a parabola through the best three."""
+    peaks = duty.hot * (1 + _PEAK_RISE * np.linspace(0, 1, 25) ** 1.5)
+    lifted = np.stack([cool_past_peak(material, duty.hot, duty.cold, peak).heat_times_length for peak in peaks])
+    inner = np.clip(np.argmax(lifted, axis=0), 1, peaks.size - 2)[None]
+    left, middle, right = (np.take_along_axis(lifted, inner + step, axis=0)[0] for step in (-1, 0, 1))
+    curvature = left - 2 * middle + right
+    rise = np.where(curvature < 0, (right - left) ** 2 / np.where(curvature < 0, -8 * curvature, 1.0), 0.0)
+    return np.asarray(np.maximum(middle + rise, np.max(lifted, axis=0)))

@@ -1,0 +1,256 @@
+"""From bands and doping to the chemical potential and the transport integrals.
+
+Axes: whatever temperature, doping and size broadcast to, then one axis of bands, then one of energies.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from legwright.base.units import E_CHARGE, K_B
+from legwright.physics import bands as kane
+from legwright.physics import carrier_scattering as scattering
+from legwright.physics.boundaries import film_suppression, grain_suppression, wire_suppression
+from legwright.physics.fermi import softplus_mesh
+
+Array = NDArray[np.float64]
+
+ROOM = 300.0
+
+
+@dataclass(frozen=True)
+class Electrons:
+    """Bands and scatterers in SI; one entry of each array a band.
+
+    side: +1 conduction, −1 valence. `lattice_scale` multiplies acoustic and intervalley rates of the majority
+    bands and `mass_scale` their masses; `impurity_knots` are ln(doping) and ln(heavy-doping factor).
+    """
+
+    carrier: int
+    side: Array
+    edge: Array
+    edge_alpha: Array
+    edge_beta: Array
+    valleys: Array
+    dos_mass: Array
+    inertial_mass: Array
+    mass_exponent: Array
+    nonparabolicity: Array
+    deformation_potential: Array
+    intervalley_field: Array
+    intervalley_phonon: Array
+    alloy_potential: Array
+    alloy_fraction: float
+    alloy_volume: float
+    elastic_constant: float
+    density: float
+    permittivity: float
+    reflection: float
+    mass_scale: float = 1.0
+    lattice_scale: float = 1.0
+    acoustic_weight: float = 1.0
+    intervalley_weight: float = 1.0
+    alloy_weight: float = 1.0
+    impurity_weight: float = 1.0
+    impurity_knots: tuple[tuple[float, float], ...] = ()
+
+    @property
+    def majority(self) -> NDArray[np.bool_]:
+        """Which bands hold the majority carriers."""
+        return np.asarray(self.side == self.carrier)
+
+    def heavy_doping_factor(self, doping: Array) -> Array:
+        """Factor on the ionised-impurity rate: ln–ln interpolation between bulk anchors, level outside."""
+        if not self.impurity_knots:
+            return np.ones_like(doping)
+        log_doping, log_factor = np.array(self.impurity_knots).T
+        return np.asarray(np.exp(np.interp(np.log(doping), log_doping, log_factor)))
+
+
+@dataclass(frozen=True)
+class Filling:
+    """State of the carriers at one (T, doping); last axis of the band arrays: bands."""
+
+    chemical_potential: Array
+    eta: Array
+    density: Array
+    compressibility: Array
+
+
+@dataclass(frozen=True)
+class Integrals:
+    """L_k per band: ∫ Ξ(E) (E − µ)^k (−∂f/∂E) dE for k = 0, 1, 2; SI."""
+
+    l0: Array
+    l1: Array
+    l2: Array
+
+    def over(self, bands: NDArray[np.bool_]) -> Integrals:
+        """Summed over the chosen bands."""
+        return Integrals(*(np.sum(part[..., bands], axis=-1) for part in (self.l0, self.l1, self.l2)))
+
+
+def masses(electrons: Electrons, temperature: Array) -> tuple[Array, Array]:
+    """Density-of-states and inertial masses (kg) at T, with a last axis of bands: m (T/300 K)^p."""
+    growth = (temperature[..., None] / ROOM) ** electrons.mass_exponent
+    growth = growth * np.where(electrons.majority, electrons.mass_scale, 1.0)
+    return electrons.dos_mass * growth, electrons.inertial_mass * growth
+
+
+def _occupied(electrons: Electrons, temperature: Array, mu: Array) -> tuple[Array, Array, Array]:
+    """(η, density, ∂density/∂|µ|) per band. ∫ g f dε is taken as ∫ N(ε)(−∂f/∂ε) dε, so one mesh serves."""
+    kt = K_B * temperature[..., None]
+    edge = kane.band_edge(temperature[..., None], electrons.edge, electrons.edge_alpha, electrons.edge_beta)
+    eta = electrons.side * (mu[..., None] - edge) / kt
+    z, weight = softplus_mesh(eta)
+    window = weight * thermal_window(z - eta[..., None])
+    mass, _ = masses(electrons, temperature)
+    energy = z * kt[..., None]
+    alpha = electrons.nonparabolicity[:, None]
+    density = np.sum(window * kane.states_below(energy, mass[..., None], alpha), axis=-1)
+    states = np.sum(window * kane.density_of_states(energy, mass[..., None], alpha), axis=-1)
+    return eta, density, states
+
+
+def thermal_window(x: Array) -> Array:
+    """−∂f/∂x of the Fermi function, 1/(4 cosh²(x/2)), without overflow.
+
+    >>> float(thermal_window(np.array(0.0)))
+    0.25
+    """
+    fall = np.exp(-np.abs(x))
+    return np.asarray(fall / (1 + fall) ** 2)
+
+
+def fill(electrons: Electrons, temperature: Array, doping: Array) -> Filling:
+    """Solve charge neutrality, majority = minority + N, for the chemical potential at each (T, doping).
+
+    The root is sought in ln(majority) − ln(minority + N), nearly straight in µ whether doping or pairs rule,
+    by Newton steps that fall back to halving the bracket. Each point stops by its own step, so it does not
+    matter which points are solved together.
+    Raises ArithmeticError where there is no root within 3 eV of the bands.
+    """
+    t, n = (np.asarray(a, dtype=float) for a in np.broadcast_arrays(temperature, doping))
+    sign, majority = electrons.carrier, electrons.majority
+    edges = kane.band_edge(t[..., None], electrons.edge, electrons.edge_alpha, electrons.edge_beta) * sign
+    low, high = np.min(edges, axis=-1) - _REACH, np.max(edges, axis=-1) + _REACH
+    level, last = np.min(edges[..., majority], axis=-1), high - low
+    settled = np.zeros(t.shape, dtype=bool)
+    for _ in range(_MOST_STEPS):
+        _, density, states = _occupied(electrons, t, sign * level)
+        many, few = np.sum(density[..., majority], axis=-1), np.sum(density[..., ~majority], axis=-1)
+        rise = np.sum(states[..., majority], axis=-1) / many + np.sum(states[..., ~majority], axis=-1) / (few + n)
+        miss = np.log(many / (few + n))
+        low, high = np.where(miss < 0, level, low), np.where(miss < 0, high, level)
+        step = -miss / rise
+        trusted = (level + step >= low) & (level + step <= high) & (np.abs(step) < last)
+        step = np.where(settled, 0.0, np.where(trusted, step, 0.5 * (low + high) - level))
+        level, last = level + step, np.abs(step)
+        settled = settled | (last < _SETTLED * K_B * t)
+        if np.all(settled):
+            break
+    else:
+        raise ArithmeticError("charge neutrality has no root within 3 eV of the bands")
+    mu = sign * level
+    eta, density, states = _occupied(electrons, t, mu)
+    return Filling(mu, eta, density, states)
+
+
+_REACH = 3.0 * E_CHARGE
+_MOST_STEPS = 80
+#: steps below this share of k_B T no longer change a digit of the density
+_SETTLED = 1e-13
+
+
+def _energy_mesh(electrons: Electrons, eta: Array, kt: Array) -> tuple[Array, Array]:
+    """Reduced energies and weights per band, split at the onset of phonon emission where there is one."""
+    if not np.any(electrons.intervalley_field):
+        return softplus_mesh(eta)
+    onset = np.where(electrons.intervalley_field > 0, electrons.intervalley_phonon / kt, 2.0)[..., None]
+    nodes, weights = np.polynomial.legendre.leggauss(24)
+    u = 0.5 * np.pi * (nodes + 1)
+    below = onset * 0.5 * (1 - np.cos(u))  # square roots at both ends become smooth
+    below_weight = onset * 0.25 * np.pi * np.sin(u) * weights
+    above, above_weight = softplus_mesh(eta - onset[..., 0])
+    shape = np.broadcast_shapes(eta.shape, onset.shape[:-1])
+    z = np.concatenate([np.broadcast_to(below, (*shape, 24)), onset + above], axis=-1)
+    weight = np.concatenate([np.broadcast_to(below_weight, (*shape, 24)), above_weight], axis=-1)
+    return z, weight
+
+
+@dataclass(frozen=True)
+class Flow:
+    """Bulk transport on the mesh at each (T, doping): spectral conductivity, mean free path, E − µ, weight."""
+
+    spectral: Array
+    mean_free_path: Array
+    excess: Array
+
+
+def bulk_flow(electrons: Electrons, temperature: Array, doping: Array, filling: Filling) -> Flow:
+    """Everything about the carriers that does not depend on size."""
+    t, n = temperature[..., None, None], doping[..., None, None]
+    kt = K_B * t
+    z, weight = _energy_mesh(electrons, filling.eta, kt[..., 0])
+    energy = z * kt
+    mass, inertia = (m[..., None] for m in masses(electrons, temperature))
+    alpha = electrons.nonparabolicity[:, None]
+    valleys = electrons.valleys[:, None]
+    slope = kane.kane_slope(energy, alpha)
+    states = kane.density_of_states(energy, mass, alpha)
+    valley_states = states / valleys
+    scale = np.where(electrons.majority, electrons.lattice_scale, 1.0)[:, None]
+
+    rate = electrons.acoustic_weight * scale * scattering.acoustic_rate(
+        valley_states, slope, t, electrons.deformation_potential[:, None], electrons.elastic_constant
+    )  # fmt: skip
+    if np.any(electrons.intervalley_field):
+        phonon = np.where(electrons.intervalley_field > 0, electrons.intervalley_phonon, E_CHARGE)[:, None]
+        after = kane.density_of_states(energy + phonon, mass, alpha) / valleys
+        left = np.maximum(energy - phonon, 0.0)
+        before = kane.density_of_states(left, mass, alpha) / valleys
+        rate = rate + electrons.intervalley_weight * scale * scattering.intervalley_rate(
+            after, before, t, electrons.intervalley_field[:, None], phonon, electrons.density
+        )
+    if electrons.alloy_fraction:
+        rate = rate + electrons.alloy_weight * scattering.alloy_rate(
+            valley_states,
+            electrons.alloy_fraction,
+            electrons.alloy_volume,
+            electrons.alloy_potential[:, None],
+        )
+    screening = scattering.screening_wave_number_squared(
+        np.sum(filling.compressibility, axis=-1), electrons.permittivity
+    )[..., None, None]
+    centres = n * electrons.heavy_doping_factor(n) * electrons.impurity_weight
+    wave2 = kane.wave_number_squared(energy, mass / valleys ** (2 / 3), alpha)
+    rate = rate + scattering.ionised_impurity_rate(valley_states, wave2, screening, centres, electrons.permittivity)
+    if not np.all(rate > 0):
+        raise ArithmeticError("a band has no scattering: its conductivity would be infinite")
+    velocity2 = kane.velocity_squared(energy, inertia, alpha)
+    window = weight * thermal_window(z - filling.eta[..., None])
+    return Flow(
+        spectral=states * velocity2 / rate * window,
+        mean_free_path=np.sqrt(3 * velocity2) / rate,
+        excess=electrons.side[:, None] * (z - filling.eta[..., None]) * kt,
+    )
+
+
+def transport_integrals(flow: Flow, size: Array, shape: str, reflection: float) -> Integrals:
+    """L_0, L_1, L_2 per band, with each energy held back by grains, a wire's wall or a film's faces."""
+    d = size[..., None, None]
+    if not np.all(np.isinf(size)):
+        flowing = flow.spectral * _held_back(flow.mean_free_path, d, shape, reflection)
+    else:
+        flowing = np.broadcast_to(flow.spectral, np.broadcast_shapes(flow.spectral.shape, d.shape))
+    first = flowing * flow.excess
+    return Integrals(np.sum(flowing, axis=-1), np.sum(first, axis=-1), np.sum(first * flow.excess, axis=-1))
+
+
+def _held_back(mean_free_path: Array, size: Array, shape: str, reflection: float) -> Array:
+    if shape == "grain":
+        return grain_suppression(mean_free_path, size, reflection)
+    return (wire_suppression if shape == "wire" else film_suppression)(mean_free_path / size)

@@ -1,0 +1,252 @@
+"""A candidate as plain SI numbers, with the prefactors that its bulk anchors fix."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+from functools import cache
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+from scipy.optimize import least_squares
+
+from legwright.base.errors import InputError
+from legwright.base.units import EPS_0
+from legwright.candidate.composition import dopant_disorder
+from legwright.candidate.library import Candidate
+from legwright.candidate.model import Anchor, Band
+from legwright.candidate.number import Measure
+from legwright.candidate.priors import load_priors
+from legwright.physics.carriers import Electrons, bulk_flow, fill, masses, transport_integrals
+from legwright.physics.lattice import (
+    Carriers,
+    Phonons,
+    acoustic_conductivity,
+    crystal_rates,
+    modes,
+    optical_conductivity,
+)
+from legwright.physics.moments import mobility, seebeck
+
+Array = NDArray[np.float64]
+
+#: how the published form of the alloy rate compares with the golden rule for the same U
+PUBLISHED_ALLOY_RATIO = 3 * np.pi**2 / 8
+
+
+@dataclass(frozen=True)
+class Crystal:
+    """Electrons and phonons of one candidate."""
+
+    electrons: Electrons
+    phonons: Phonons
+
+
+@cache
+def crystal(candidate: Candidate) -> Crystal:
+    """The candidate's numbers in SI with every prefactor solved from its anchors.
+
+    Raises InputError where an anchor cannot be met by any value of the prefactor that it is said to fix.
+    """
+    bare = Crystal(_electrons(candidate), _phonons(candidate))
+    electrons = _fix_electrons(candidate, bare.electrons)
+    return Crystal(electrons, _fix_phonons(candidate, replace(bare, electrons=electrons)))
+
+
+def _si(number: Measure | None, otherwise: float = 0.0) -> float:
+    return otherwise if number is None else number.si
+
+
+def _electrons(candidate: Candidate) -> Electrons:
+    data, shared = candidate.data, candidate.data.scattering
+
+    def each(value: Callable[[Band], float]) -> Array:
+        return np.array([value(band) for band in data.band])
+
+    def alloy_potential(band: Band) -> float:
+        factor = PUBLISHED_ALLOY_RATIO**0.5 if band.alloy_form != "golden rule" else 1.0
+        return _si(band.alloy_potential) * factor
+
+    reflection = shared.grain_reflection or load_priors().reflection.electrons
+    return Electrons(
+        carrier=-1 if data.carrier == "p" else 1,
+        side=each(lambda b: 1.0 if b.side == "conduction" else -1.0),
+        edge=each(lambda b: b.edge.si),
+        edge_alpha=each(lambda b: _si(b.edge_alpha)),
+        edge_beta=each(lambda b: _si(b.edge_beta)),
+        valleys=each(lambda b: b.valleys.si),
+        dos_mass=each(lambda b: b.dos_mass.si),
+        inertial_mass=each(lambda b: b.inertial_mass.si),
+        mass_exponent=each(lambda b: _si(b.mass_exponent)),
+        nonparabolicity=each(lambda b: _si(b.nonparabolicity)),
+        deformation_potential=each(lambda b: b.deformation_potential.si),
+        intervalley_field=each(lambda b: _si(b.intervalley_field)),
+        intervalley_phonon=each(lambda b: _si(b.intervalley_phonon)),
+        alloy_potential=each(alloy_potential),
+        alloy_fraction=_si(shared.alloy_fraction),
+        alloy_volume=_si(shared.alloy_volume),
+        elastic_constant=shared.elastic_constant.si,
+        density=_density(candidate),
+        permittivity=shared.dielectric_constant.si * EPS_0,
+        reflection=reflection.si,
+    )
+
+
+def _density(candidate: Candidate) -> float:
+    return candidate.disorder.mean_mass / candidate.data.cell.volume_per_atom.si
+
+
+def _phonons(candidate: Candidate) -> Phonons:
+    data, disorder = candidate.data, candidate.disorder
+    lattice, law = data.lattice, load_priors().grain_law
+    dopant = dopant_disorder(data.doping, disorder.mean_mass)
+    return Phonons(
+        speed=np.array([lattice.sound_longitudinal.si, lattice.sound_transverse.si]),
+        grueneisen=np.array([lattice.grueneisen_longitudinal.si, lattice.grueneisen_transverse.si]),
+        umklapp_divisor=lattice.umklapp_divisor.si,
+        normal_ratio=lattice.normal_ratio.si,
+        volume_per_atom=data.cell.volume_per_atom.si,
+        atoms=data.cell.atoms.si,
+        mean_mass=disorder.mean_mass,
+        mass_variance=disorder.mass_variance,
+        size_variance=disorder.size_variance,
+        dopant_mass_variance=dopant.mass_variance,
+        dopant_size_variance=dopant.size_variance,
+        strain_parameter=lattice.strain_parameter.si,
+        carrier_deformation_potential=lattice.carrier_deformation_potential.si,
+        density=_density(candidate),
+        grain_exponent=law.exponent.si,
+        grain_prefactor=law.prefactor.si,
+    )
+
+
+_BULK = np.array(np.inf)
+
+
+def bulk_mobility_and_seebeck(
+    electrons: Electrons, temperature: ArrayLike, doping: ArrayLike
+) -> tuple[Array, Array]:
+    """σ/(e × majority density) in m²/(V s), and S in V/K, of coarse material; temperature and doping broadcast."""
+    t, n = np.broadcast_arrays(np.asarray(temperature, dtype=float), np.asarray(doping, dtype=float))
+    filling = fill(electrons, t, n)
+    sums = transport_integrals(bulk_flow(electrons, t, n, filling), _BULK, "grain", 0.0)
+    majority, every = electrons.majority, sums.over(np.full(electrons.side.shape, True))
+    moving = mobility(sums.over(majority).l0, np.sum(filling.density[..., majority], axis=-1))
+    return moving, seebeck(every.l0, every.l1, t)
+
+
+def _fix_electrons(candidate: Candidate, bare: Electrons) -> Electrons:
+    """Mass, lattice-scattering and heavy-doping factors that meet the anchors best, all solved together.
+
+    Each factor is one unknown (heavy doping: one per anchored density); misses are weighed by the spread of
+    their anchor. With as many anchors as unknowns every anchor is met exactly.
+    """
+    anchors = [a for a in candidate.data.anchor if a.fixes in _ELECTRON_FIXES]
+    if not anchors:
+        return bare
+    unknowns = sorted({_unknown(anchor) for anchor in anchors})
+
+    def scaled(logs: Array) -> Electrons:
+        made, knots = bare, []
+        for (fixes, log_doping), log in zip(unknowns, logs, strict=True):
+            if fixes == "mass":
+                made = replace(made, mass_scale=float(np.exp(log)))
+            elif fixes == "lattice scattering":
+                made = replace(made, lattice_scale=float(np.exp(log)))
+            else:
+                knots.append((log_doping, float(log)))
+        pure = [(float(np.log(_si(a.doping))), 0.0) for a in anchors if a.fixes == "lattice scattering"]
+        return replace(made, impurity_knots=tuple(sorted({**dict(pure), **dict(knots)}.items())))
+
+    temperature = np.array([anchor.temperature.si for anchor in anchors])
+    doping = np.array([_si(anchor.doping) for anchor in anchors])
+    measured = np.array([anchor.measured.si for anchor in anchors])
+    spread = np.array([anchor.measured.relative_spread for anchor in anchors])
+    of_mobility = np.array([anchor.quantity == "mobility" for anchor in anchors])
+
+    def misses(logs: Array) -> Array:
+        moving, thermopower = bulk_mobility_and_seebeck(scaled(logs), temperature, doping)
+        return np.asarray((np.where(of_mobility, moving, thermopower) / measured - 1) / spread)
+
+    found = least_squares(
+        misses, np.zeros(len(unknowns)), bounds=(-_FARTHEST, _FARTHEST), xtol=1e-12, ftol=1e-12, gtol=1e-12
+    )
+    _refuse_far_misses(candidate, anchors, found.fun)
+    return scaled(found.x)
+
+
+_ELECTRON_FIXES = ("mass", "lattice scattering", "impurity scattering")
+_FARTHEST = float(np.log(1e4))
+#: an anchor that its prefactor leaves further off than this many spreads is a fault of the file
+_FAR = 3.0
+
+
+def _unknown(anchor: Anchor) -> tuple[str, float]:
+    """The factor that an anchor fixes; heavy doping has one per density."""
+    return anchor.fixes, float(np.log(_si(anchor.doping))) if anchor.fixes == "impurity scattering" else 0.0
+
+
+def _refuse_far_misses(candidate: Candidate, anchors: list[Anchor], misses: Array) -> None:
+    worst = int(np.argmax(np.abs(misses)))
+    if abs(misses[worst]) > _FAR:
+        anchor = anchors[worst]
+        raise InputError(
+            f"no '{anchor.fixes}' meets this {anchor.quantity.replace('_', ' ')}: the nearest is "
+            f"{100 * misses[worst] * anchor.measured.relative_spread:+.0f} % off; "
+            "change the anchor, its spread or the scattering parameters",
+            file=candidate.path.name,
+            key=f"anchor[{candidate.data.anchor.index(anchor) + 1}]",
+        )
+
+
+def bulk_lattice_conductivity(one: Crystal, temperature: float, doping: float | None) -> float:
+    """Acoustic and optical lattice conductivity of coarse material, W/(m K); doping None: undoped."""
+    t = np.array(temperature)
+    n = np.array(doping or 0.0)
+    carriers = majority_carriers(one.electrons, t, fill(one.electrons, t, n).eta) if doping else None
+    mesh = modes(one.phonons)
+    rates = crystal_rates(one.phonons, mesh, t, n, carriers)
+    acoustic = acoustic_conductivity(one.phonons, mesh, rates, t, _BULK, "grain")
+    return float(acoustic + optical_conductivity(one.phonons, t))
+
+
+def majority_carriers(electrons: Electrons, temperature: Array, eta: Array) -> Carriers:
+    """What the phonons see of the majority bands."""
+    keep = electrons.majority
+    mass, _ = masses(electrons, temperature)
+    valley_mass = mass[..., keep] / electrons.valleys[keep] ** (2 / 3)
+    return Carriers(eta[..., keep], valley_mass, electrons.valleys[keep])
+
+
+def _fix_phonons(candidate: Candidate, one: Crystal) -> Phonons:
+    """Anharmonic, strain and carrier factors that meet the lattice anchors best, weighed as for the carriers."""
+    anchors = [a for a in candidate.data.anchor if a.fixes in _PHONON_FIXES]
+    if not anchors:
+        return one.phonons
+    unknowns = sorted({anchor.fixes for anchor in anchors})
+
+    def scaled(logs: Array) -> Phonons:
+        scales = {_PHONON_FIXES[fixes]: float(np.exp(log)) for fixes, log in zip(unknowns, logs, strict=True)}
+        return replace(one.phonons, **scales)  # type: ignore[arg-type]
+
+    def misses(logs: Array) -> Array:
+        made = replace(one, phonons=scaled(logs))
+        return np.array([_lattice_miss(made, anchor) / anchor.measured.relative_spread for anchor in anchors])
+
+    found = least_squares(
+        misses, np.zeros(len(unknowns)), bounds=(-_FARTHEST, _FARTHEST), xtol=1e-12, ftol=1e-12, gtol=1e-12
+    )
+    _refuse_far_misses(candidate, anchors, found.fun)
+    return scaled(found.x)
+
+
+_PHONON_FIXES = {
+    "anharmonicity": "anharmonic_scale",
+    "strain": "strain_scale",
+    "carrier scattering": "carrier_weight",
+}
+
+
+def _lattice_miss(one: Crystal, anchor: Anchor) -> float:
+    doping = anchor.doping.si if anchor.doping else None
+    return bulk_lattice_conductivity(one, anchor.temperature.si, doping) / anchor.measured.si - 1

@@ -1,0 +1,240 @@
+"""Lattice conductivity: one longitudinal and two transverse sine branches, plus optical heat.
+
+Axes: whatever temperature, doping and size broadcast to, then branches (longitudinal, transverse), then modes.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cache
+
+import numpy as np
+from numpy.typing import NDArray
+
+from legwright.base.units import HBAR, K_B
+from legwright.physics import phonon_scattering as scattering
+from legwright.physics.boundaries import film_suppression, grain_mean_free_path, wire_suppression
+
+Array = NDArray[np.float64]
+
+#: one longitudinal branch, two transverse ones that are alike
+DEGENERACY = np.array([1.0, 2.0])
+_MODES = 32
+
+
+@dataclass(frozen=True)
+class Phonons:
+    """Branches and scatterers in SI; arrays are (longitudinal, transverse).
+
+    `anharmonic_scale` multiplies Umklapp and normal rates, `strain_scale` the strain parameter;
+    the weights switch processes for tests and explanations.
+    """
+
+    speed: Array
+    grueneisen: Array
+    umklapp_divisor: float
+    normal_ratio: float
+    volume_per_atom: float
+    atoms: float
+    mean_mass: float
+    mass_variance: float
+    size_variance: float
+    dopant_mass_variance: float
+    dopant_size_variance: float
+    strain_parameter: float
+    carrier_deformation_potential: float
+    density: float
+    grain_exponent: float
+    grain_prefactor: float
+    anharmonic_scale: float = 1.0
+    strain_scale: float = 1.0
+    umklapp_weight: float = 1.0
+    normal_weight: float = 1.0
+    defect_weight: float = 1.0
+    carrier_weight: float = 1.0
+
+    @property
+    def zone_edge(self) -> float:
+        """q_D = (6π²/(n V))^(1/3), 1/m, n atoms per primitive cell (Slack 1973)."""
+        return float((6 * np.pi**2 / (self.atoms * self.volume_per_atom)) ** (1 / 3))
+
+    @property
+    def top_frequency(self) -> Array:
+        """ω_max = 2 v q_D/π of each branch, rad/s (Born & von Kármán 1912)."""
+        return np.asarray(2 * self.speed * self.zone_edge / np.pi)
+
+    @property
+    def branch_temperature(self) -> Array:
+        """θ = ħ ω_max/k_B of each branch, K."""
+        return np.asarray(HBAR * self.top_frequency / K_B)
+
+
+@dataclass(frozen=True)
+class Carriers:
+    """What phonons need to know of the majority carriers; last axis: bands."""
+
+    eta: Array
+    valley_mass: Array
+    valleys: Array
+
+
+@dataclass(frozen=True)
+class Modes:
+    """The modes on the q mesh: frequency, group velocity and quadrature weight q² dq/(6π²) × degeneracy."""
+
+    q: Array
+    omega: Array
+    velocity: Array
+    weight: Array
+
+    @property
+    def states(self) -> Array:
+        """q²/(2π² v_g): states per frequency and volume of one branch, s/m³."""
+        return np.asarray(self.q**2 / (2 * np.pi**2 * self.velocity))
+
+
+@cache
+def _unit_mesh(count: int) -> tuple[Array, Array]:
+    """Gauss–Legendre in u with q = q_D u²: close where heat of long waves sits."""
+    nodes, weights = np.polynomial.legendre.leggauss(count)
+    u = 0.5 * (nodes + 1)
+    return u**2, u * weights
+
+
+def modes(phonons: Phonons, count: int = _MODES) -> Modes:
+    """ω = ω_max sin(π q/2q_D) and its slope on the mesh (branches, modes)."""
+    share, weight = _unit_mesh(count)
+    q = phonons.zone_edge * share
+    phase = 0.5 * np.pi * share
+    return Modes(
+        q=q,
+        omega=phonons.top_frequency[:, None] * np.sin(phase),
+        velocity=phonons.speed[:, None] * np.cos(phase),
+        weight=DEGENERACY[:, None] * q**2 * phonons.zone_edge * weight / (6 * np.pi**2),
+    )
+
+
+def mode_heat(omega: Array, temperature: Array) -> Array:
+    """Heat capacity of one mode, J/K: k_B x² eˣ/(eˣ − 1)², x = ħω/k_B T (Einstein 1907)."""
+    half = 0.5 * HBAR * omega / (K_B * temperature)
+    return np.asarray(K_B * (half / np.sinh(half)) ** 2)
+
+
+@dataclass(frozen=True)
+class Rates:
+    """Rates inside an unbounded crystal at each (T, doping): those that resist, and normal processes."""
+
+    umklapp: Array
+    defects: Array
+    carriers: Array
+    normal: Array
+
+    @property
+    def resistive(self) -> Array:
+        """All that destroys crystal momentum."""
+        return self.umklapp + self.defects + self.carriers
+
+
+def crystal_rates(
+    phonons: Phonons, mesh: Modes, temperature: Array, doping: Array, carriers: Carriers | None
+) -> Rates:
+    """Rates per mode that do not depend on size. doping (1/m³) adds dopant atoms; None: no carriers."""
+    t = temperature[..., None, None]
+    theta = phonons.branch_temperature
+    strength = phonons.anharmonic_scale * scattering.anharmonic_strength(
+        phonons.grueneisen, phonons.mean_mass, phonons.speed, theta
+    )[:, None]  # fmt: skip
+    strain = phonons.strain_scale * phonons.strain_parameter
+    per_atom = doping[..., None, None] * phonons.volume_per_atom
+    gamma = (
+        phonons.mass_variance
+        + strain * phonons.size_variance
+        + per_atom * (phonons.dopant_mass_variance + strain * phonons.dopant_size_variance)
+    )
+    umklapp = scattering.umklapp_rate(mesh.omega, t, strength, theta[:, None], phonons.umklapp_divisor)
+    normal = scattering.normal_rate(mesh.omega, t, strength, phonons.normal_ratio)
+    defects = scattering.point_defect_rate(mesh.omega, mesh.states, phonons.volume_per_atom, gamma)
+    by_carriers = np.zeros(1)
+    if carriers is not None and phonons.carrier_weight and phonons.carrier_deformation_potential:
+        by_band = scattering.carrier_rate(
+            mesh.omega,
+            mesh.q,
+            t[..., None],
+            carriers.eta[..., None, None],
+            carriers.valley_mass[..., None, None],
+            carriers.valleys[:, None, None],
+            phonons.carrier_deformation_potential,
+            phonons.density,
+        )
+        by_carriers = phonons.carrier_weight * np.sum(by_band, axis=-3)
+    return Rates(
+        phonons.umklapp_weight * umklapp,
+        phonons.defect_weight * defects,
+        by_carriers,
+        phonons.normal_weight * normal,
+    )
+
+
+def acoustic_conductivity(
+    phonons: Phonons, mesh: Modes, rates: Rates, temperature: Array, size: Array, shape: str
+) -> Array:
+    """Heat carried by the acoustic branches, W/(m K), with Callaway's correction for normal processes.
+
+    κ = Σ∫ w C v² τ_C + [Σ∫ w C (v q/ω) τ_C/τ_N]²/Σ∫ w C (q/ω)² τ_C/(τ_N τ_R),  w = q² dq/6π²,
+    1/τ_C = 1/τ_N + 1/τ_R; one drift velocity is shared by the branches. Grains add v/Λ_gb to 1/τ_R; walls
+    of wires and films multiply τ_C by the exact kinetic factor, and 1/τ_R is what then is left of 1/τ_C.
+    Sources: Callaway, Physical Review 113, 1046 (1959); Allen, Physical Review B 88, 144302 (2013).
+    """
+    heat = mesh.weight * mode_heat(mesh.omega, temperature[..., None, None])
+    resistive, normal = rates.resistive, rates.normal
+    d = size[..., None, None]
+    if shape == "grain":
+        ratio = mesh.omega / phonons.top_frequency[:, None]
+        free_path = grain_mean_free_path(d, ratio, phonons.grain_exponent, phonons.grain_prefactor)
+        resistive = resistive + mesh.velocity / free_path
+        combined = 1 / (resistive + normal)
+    else:
+        bulk = 1 / (resistive + normal)
+        suppress = wire_suppression if shape == "wire" else film_suppression
+        combined = bulk * suppress(mesh.velocity * bulk / d)
+        resistive = 1 / combined - normal
+    direct = np.sum(heat * mesh.velocity**2 * combined, axis=(-2, -1))
+    slowness = mesh.q / mesh.omega
+    shared = heat * slowness * combined * normal
+    drift = np.sum(shared * mesh.velocity, axis=(-2, -1))
+    lost = np.sum(shared * slowness * resistive, axis=(-2, -1))
+    with np.errstate(invalid="ignore"):
+        carried = np.where(drift > 0, drift**2 / np.where(lost > 0, lost, np.inf), 0.0)
+    return np.asarray(direct + carried)
+
+
+def _glass_integral(phonons: Phonons, temperature: Array, from_share: float) -> Array:
+    """Cahill's integral, W/(m K), over wave numbers from `from_share` of the full Debye sphere to its edge."""
+    atoms_per_volume = 1 / phonons.volume_per_atom
+    edge = phonons.speed * HBAR / K_B * (6 * np.pi**2 * atoms_per_volume) ** (1 / 3)
+    nodes, weights = np.polynomial.legendre.leggauss(24)
+    share = from_share + (1 - from_share) * 0.5 * (nodes + 1)
+    x = edge[:, None] * share / temperature[..., None, None]
+    half = 0.5 * x
+    kernel = x * (half / np.sinh(half)) ** 2 * (edge[:, None] / temperature[..., None, None])
+    integral = np.sum(kernel * weights * 0.5 * (1 - from_share), axis=-1)
+    by_branch = DEGENERACY * phonons.speed * (temperature[..., None] / edge) ** 2 * integral
+    return np.asarray((np.pi / 6) ** (1 / 3) * K_B * atoms_per_volume ** (2 / 3) * np.sum(by_branch, axis=-1))
+
+
+def amorphous_minimum(phonons: Phonons, temperature: Array) -> Array:
+    """Conductivity if every oscillation lived half its period, W/(m K).
+
+    κ_min = (π/6)^(1/3) k_B n^(2/3) Σ v (T/θ)² ∫₀^{θ/T} x³ eˣ/(eˣ−1)² dx.
+    Source: Cahill, Watson & Pohl, Physical Review B 46, 6131 (1992).
+    """
+    return _glass_integral(phonons, temperature, 0.0)
+
+
+def optical_conductivity(phonons: Phonons, temperature: Array) -> Array:
+    """Heat of the modes above the acoustic branches, W/(m K): the part of Cahill's integral beyond q_D.
+
+    Taken as independent of size: such modes hardly travel. Zero with one atom per primitive cell.
+    Source of the split: Toberer, Zevalkink & Snyder, Journal of Materials Chemistry 21, 15843 (2011).
+    """
+    return _glass_integral(phonons, temperature, float(phonons.atoms ** (-1 / 3)))

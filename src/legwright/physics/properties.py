@@ -1,0 +1,180 @@
+"""A candidate at (temperature, doping, size): every property that a leg needs."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Literal, get_args
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from legwright.base.errors import InputError, nearest
+from legwright.base.units import CM2, MICRO, NM, PER_CM3
+from legwright.candidate.library import Candidate
+from legwright.physics import moments
+from legwright.physics.carriers import bulk_flow, fill, transport_integrals
+from legwright.physics.crystal import Crystal, crystal, majority_carriers
+from legwright.physics.lattice import (
+    acoustic_conductivity,
+    amorphous_minimum,
+    crystal_rates,
+    modes,
+    optical_conductivity,
+)
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+Array = NDArray[np.float64]
+Shape = Literal["grain", "wire", "film"]
+SHAPES: tuple[Shape, ...] = get_args(Shape)
+
+#: design points of one block: memory grows with the block, not with the map
+_BLOCK = 20_000
+
+
+@dataclass(frozen=True)
+class Properties:
+    """SI arrays, all of the shape to which temperature, doping and size broadcast."""
+
+    temperature: Array
+    doping: Array
+    size: Array
+    shape: Shape
+    electrical_conductivity: Array
+    seebeck: Array
+    electronic_thermal_conductivity: Array
+    bipolar_thermal_conductivity: Array
+    lattice_thermal_conductivity: Array
+    amorphous_minimum: Array
+    mobility: Array
+
+    @property
+    def thermal_conductivity(self) -> Array:
+        """Electronic (with its bipolar part) and lattice together, W/(m K)."""
+        return self.electronic_thermal_conductivity + self.lattice_thermal_conductivity
+
+    @property
+    def lorenz_number(self) -> Array:
+        """κ_e/(σT), W Ω/K²: from the integrals, never assumed."""
+        return self.electronic_thermal_conductivity / (self.electrical_conductivity * self.temperature)
+
+    @property
+    def power_factor(self) -> Array:
+        """S²σ, W/(m K²)."""
+        return self.seebeck**2 * self.electrical_conductivity
+
+    @property
+    def zt(self) -> Array:
+        """Figure of merit S²σT/κ (Ioffe 1957)."""
+        return self.power_factor * self.temperature / self.thermal_conductivity
+
+    def to_frame(self) -> pd.DataFrame:
+        """One row a design point, in trade units that each column names."""
+        import pandas as pd
+
+        columns = {
+            "temperature [K]": self.temperature,
+            "doping [1/cm^3]": self.doping / PER_CM3,
+            "size [nm]": self.size / NM,
+            "electrical conductivity [S/m]": self.electrical_conductivity,
+            "seebeck [uV/K]": self.seebeck / MICRO,
+            "mobility [cm^2/V/s]": self.mobility / CM2,
+            "electronic thermal conductivity [W/m/K]": self.electronic_thermal_conductivity,
+            "bipolar thermal conductivity [W/m/K]": self.bipolar_thermal_conductivity,
+            "lattice thermal conductivity [W/m/K]": self.lattice_thermal_conductivity,
+            "thermal conductivity [W/m/K]": self.thermal_conductivity,
+            "lorenz number [W ohm/K^2]": self.lorenz_number,
+            "power factor [W/m/K^2]": self.power_factor,
+            "zT [1]": self.zt,
+        }
+        return pd.DataFrame({name: np.ravel(values) for name, values in columns.items()})
+
+
+def evaluate(
+    candidate: Candidate, temperature: ArrayLike, doping: ArrayLike, size: ArrayLike, shape: str = "grain"
+) -> Properties:
+    """All transport properties of a candidate, in SI.
+
+    temperature T (K, > 0), doping: net active density (1/m³, > 0; its sign is the candidate's carrier),
+    size d (m, > 0; inf for coarse material) of grain, wire or film by `shape`; all broadcast.
+    σ = e²L_0, S = −L_1/(eTL_0), κ_e = (L_2 − L_1²/L_0)/T over all bands on one energy axis (Ravich, Efimova &
+    Smirnov 1970); bipolar = κ_e − κ_e(conduction alone) − κ_e(valence alone) (Goldsmid 2010); lattice after
+    Callaway (1959). Raises InputError for a value that physics does not allow, naming it.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> made = evaluate(load_candidate("si-n"), 300.0, 1e26, [20e-9, float("inf")])
+    >>> bool(made.lattice_thermal_conductivity[0] < 0.2 * made.lattice_thermal_conductivity[1])
+    True
+    """
+    if shape not in SHAPES:
+        raise InputError(f"value '{shape}' is not allowed; {nearest(shape, SHAPES)}", key="shape")
+    t, n, d = (
+        _positive(value, key, infinite)
+        for value, key, infinite in (
+            (temperature, "temperature", False),
+            (doping, "doping", False),
+            (size, "size", True),
+        )
+    )
+    rank = max(t.ndim, n.ndim, d.ndim)
+    t, n, d = (np.reshape(a, (1,) * (rank - a.ndim) + a.shape) for a in (t, n, d))
+    parts = _evaluate_blocks(crystal(candidate), t, n, d, shape)
+    whole = np.broadcast_shapes(t.shape, n.shape, d.shape)
+    t, n, d = (np.broadcast_to(a, whole) for a in (t, n, d))
+    return Properties(t, n, d, shape, **parts)
+
+
+def _positive(value: ArrayLike, key: str, infinite: bool) -> Array:
+    array = np.asarray(value, dtype=float)
+    allowed = (array > 0) if infinite else (array > 0) & np.isfinite(array)
+    if not np.all(allowed):
+        bad = array[~allowed].flat[0]
+        raise InputError(f"value {bad} is not allowed; above 0{'' if infinite else ' and finite'}", key=key)
+    return array
+
+
+def _evaluate_blocks(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> dict[str, Array]:
+    """Split the longest axis until a block is small; each point's sums do not depend on the split."""
+    whole = np.broadcast_shapes(t.shape, n.shape, d.shape)
+    if int(np.prod(whole)) <= _BLOCK or not whole:
+        return _evaluate_block(one, t, n, d, shape)
+    axis = int(np.argmax(whole))
+    middle = whole[axis] // 2
+
+    def half(a: Array, part: slice) -> Array:
+        index = [slice(None)] * a.ndim
+        index[axis] = part if a.shape[axis] > 1 else slice(None)
+        return a[tuple(index)]
+
+    halves = [
+        _evaluate_blocks(one, half(t, part), half(n, part), half(d, part), shape)
+        for part in (slice(None, middle), slice(middle, None))
+    ]
+    return {name: np.concatenate([half[name] for half in halves], axis=axis) for name in halves[0]}
+
+
+def _evaluate_block(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> dict[str, Array]:
+    electrons, phonons = one.electrons, one.phonons
+    filling = fill(electrons, t, n)
+    filled_t, filled_n = np.broadcast_arrays(t, n)
+    flow = bulk_flow(electrons, filled_t, filled_n, filling)
+    sums = transport_integrals(flow, d, shape, electrons.reflection)
+    up, down = sums.over(electrons.side > 0), sums.over(electrons.side < 0)
+    bipolar = moments.bipolar_heat(up.l0, up.l1, down.l0, down.l1, t)
+    one_sided = [moments.electronic_heat(part.l0, part.l1, part.l2, t) for part in (up, down)]
+    majority = electrons.majority
+    mesh = modes(phonons)
+    rates = crystal_rates(phonons, mesh, t, n, majority_carriers(electrons, filled_t, filling.eta))
+    lattice = acoustic_conductivity(phonons, mesh, rates, t, d, shape) + optical_conductivity(phonons, t)
+    parts = {
+        "electrical_conductivity": moments.conductivity(up.l0 + down.l0),
+        "seebeck": moments.seebeck(up.l0 + down.l0, up.l1 + down.l1, t),
+        "electronic_thermal_conductivity": one_sided[0] + one_sided[1] + bipolar,
+        "bipolar_thermal_conductivity": bipolar,
+        "lattice_thermal_conductivity": lattice,
+        "amorphous_minimum": amorphous_minimum(phonons, t),
+        "mobility": moments.mobility(sums.over(majority).l0, np.sum(filling.density[..., majority], axis=-1)),
+    }
+    whole = np.broadcast_shapes(t.shape, n.shape, d.shape)
+    return {name: np.broadcast_to(part, whole) for name, part in parts.items()}

@@ -1,0 +1,1 @@
+"""What people see: tables, records, command line."""

@@ -1,0 +1,145 @@
+"""Results as plain records in trade units: the same names in JSON, in CSV and under the tables."""
+
+from __future__ import annotations
+
+import json
+import math
+from collections.abc import Iterable
+from typing import Any
+
+from legwright.base.flags import MEANINGS
+from legwright.base.units import CM2, MICRO, NM, PER_CM3
+from legwright.candidate.hazards import cautions
+from legwright.candidate.library import Candidate
+from legwright.candidate.model import numbers
+from legwright.candidate.sources import bibliography
+from legwright.decide.peak import Peak
+from legwright.decide.rank import Row
+from legwright.physics.properties import Properties
+
+SCHEMA = 1
+Record = dict[str, Any]
+
+
+def nanometres(size: float | None) -> float | None:
+    """A size for JSON: null for none and for coarse material (infinite)."""
+    return None if size is None or math.isinf(size) else size / NM
+
+
+def rank_record(row: Row) -> Record:
+    """One row of `rank`."""
+    return {
+        "rank": row.rank,
+        "candidate": row.candidate.name,
+        "formula": row.candidate.data.formula,
+        "carrier": row.candidate.data.carrier,
+        "shape": row.shape,
+        "size_nm": nanometres(row.size),
+        "window_nm": None if row.window is None else [end / NM for end in row.window],
+        "doping_per_cm3": None if row.doping is None else row.doping / PER_CM3,
+        "score": row.score,
+        "score_name": row.score_name,
+        "zt_mean": row.zt_mean,
+        "zt_peak": row.zt_peak,
+        "gain_over_bulk": row.gain_over_bulk,
+        "flags": list(row.flags),
+    }
+
+
+def peak_record(found: Peak) -> Record:
+    """The whole of `peak`."""
+    return {
+        "candidate": found.candidate.name,
+        "temperature_K": found.temperature,
+        "doping_per_cm3": found.doping / PER_CM3,
+        "size_nm": found.size / NM,
+        "zt": found.zt,
+        "zt_coarse": found.zt_coarse,
+        "window_nm": [end / NM for end in found.window],
+        "flags": list(found.flags),
+        "curve": [
+            {"size_nm": float(d) / NM, "zt": float(z)} for d, z in zip(found.sizes, found.curve, strict=True)
+        ],
+    }
+
+
+def sheet_record(candidate: Candidate, made: Properties, flags: tuple[str, ...]) -> Record:
+    """The whole of `sheet`, for one design point."""
+    return {
+        "candidate": candidate.name,
+        "formula": candidate.data.formula,
+        "temperature_K": float(made.temperature),
+        "doping_per_cm3": float(made.doping) / PER_CM3,
+        "size_nm": nanometres(float(made.size)),
+        "shape": made.shape,
+        "electrical_conductivity_S_per_m": float(made.electrical_conductivity),
+        "seebeck_uV_per_K": float(made.seebeck) / MICRO,
+        "electronic_thermal_conductivity_W_per_mK": float(made.electronic_thermal_conductivity),
+        "bipolar_thermal_conductivity_W_per_mK": float(made.bipolar_thermal_conductivity),
+        "lattice_thermal_conductivity_W_per_mK": float(made.lattice_thermal_conductivity),
+        "thermal_conductivity_W_per_mK": float(made.thermal_conductivity),
+        "lorenz_number_W_ohm_per_K2": float(made.lorenz_number),
+        "power_factor_W_per_mK2": float(made.power_factor),
+        "zt": float(made.zt),
+        "mobility_cm2_per_Vs": float(made.mobility) / CM2,
+        "amorphous_minimum_W_per_mK": float(made.amorphous_minimum),
+        "flags": list(flags),
+    }
+
+
+def candidate_record(candidate: Candidate) -> Record:
+    """One line of `candidates`."""
+    data = candidate.data
+    return {
+        "candidate": candidate.name,
+        "title": data.title,
+        "formula": data.formula,
+        "carrier": data.carrier,
+        "direction": data.direction,
+        "highest_temperature_K": data.service.highest_temperature.si,
+        "doping_min_per_cm3": data.doping.lowest.si / PER_CM3,
+        "doping_max_per_cm3": data.doping.highest.si / PER_CM3,
+        "smallest_grain_nm": data.making.smallest_grain.si / NM,
+        "numbers": sum(candidate.basis_counts.values()),
+        "numbers_by_basis": dict(sorted(candidate.basis_counts.items())),
+    }
+
+
+def number_records(candidate: Candidate) -> list[Record]:
+    """Every number of a candidate with its origin."""
+    return [{"key": key, **number.model_dump()} for key, number in numbers(candidate.data)]
+
+
+def citations(candidate: Candidate) -> dict[str, str]:
+    """The sources of a candidate's numbers, as one line each."""
+    entries = bibliography(candidate.path.parent)
+    used = sorted({number.source for _, number in numbers(candidate.data)})
+    return {key: entries[key] for key in used}
+
+
+def notes(flags: Iterable[str], candidates: Iterable[Candidate]) -> Record:
+    """What goes under a table: the meaning of each flag used, and the cautions, once."""
+    used = set(flags)
+    return {
+        "flag_meanings": {slug: text for slug, text in MEANINGS.items() if slug in used},
+        "cautions": list(cautions(candidates)),
+    }
+
+
+def as_json(verb: str, content: Record) -> str:
+    """One strict JSON object: no NaN, no infinity."""
+    from legwright import __version__
+
+    whole = {"schema": SCHEMA, "legwright": __version__, "verb": verb, **content}
+    return json.dumps(whole, allow_nan=False, ensure_ascii=False, indent=2) + "\n"
+
+
+def as_csv(records: list[Record]) -> str:
+    """Records as CSV; lists are joined by spaces, inner tables are spread over columns."""
+    import pandas as pd
+
+    flat = [
+        {key: " ".join(map(str, value)) if isinstance(value, list) else value for key, value in record.items()}
+        for record in records
+    ]
+    return str(pd.json_normalize(flat).to_csv(index=False, lineterminator="\n"))

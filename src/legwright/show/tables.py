@@ -1,0 +1,160 @@
+"""Tables for people: terminal, or Markdown for a report. Rounded here and only here."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping, Sequence
+from typing import Any
+
+from rich import box
+from rich.console import Console
+from rich.table import Table
+from rich.text import Text
+
+Record = Mapping[str, Any]
+_NARROWEST = 150
+
+
+def console(markdown: bool) -> Console:
+    """A console on stdout; wide enough for the tables when nothing says how wide the screen is."""
+    out = Console(highlight=False, no_color=True if markdown else None, soft_wrap=markdown)
+    if not out.is_terminal or markdown:
+        out = Console(highlight=False, width=max(out.width, _NARROWEST), no_color=True, soft_wrap=markdown)
+    return out
+
+
+def draw(title: str, columns: Sequence[str], rows: Iterable[Sequence[str]], markdown: bool) -> Table:
+    """A table whose first column is text on the left and whose others stand to the right."""
+    table = Table(
+        title=None if markdown else title,
+        title_justify="left",
+        box=box.MARKDOWN if markdown else box.SIMPLE_HEAD,
+        title_style="bold",
+    )
+    for index, name in enumerate(columns):
+        table.add_column(name, justify="left" if index == 0 else "right", overflow="fold")
+    for row in rows:
+        table.add_row(*(Text(cell) for cell in row))
+    return table
+
+
+def figure(value: float | None, digits: int = 3) -> str:
+    """A rounded figure without trailing noise; a dash for none.
+
+    >>> figure(0.123456), figure(148.3), figure(None), figure(2.2e20)
+    ('0.123', '148', '–', '2.20e+20')
+    """
+    if value is None:
+        return "–"
+    if value and not 1e-3 <= abs(value) < 1e5:
+        return f"{value:.{digits - 1}e}"
+    return f"{value:.{digits}g}" if abs(value) < 10**digits else f"{value:.0f}"
+
+
+def _span(ends: Sequence[float] | None) -> str:
+    return "–" if ends is None else f"{figure(ends[0])} … {figure(ends[1])}"
+
+
+SCORE_TITLES = {
+    "efficiency": "efficiency",
+    "cop": "COP",
+    "delta_t_max_K": "ΔT max [K]",
+    "power_W_per_cm2": "power [W/cm²]",
+    "heat_lifted_W_per_cm2": "lift [W/cm²]",
+}
+
+
+def rank_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
+    """The ranking; flags are numbered and explained under the table."""
+    numbers = flag_numbers(rows)
+    columns = (
+        "candidate",
+        "formula",
+        "carrier",
+        "size [nm]",
+        "window [nm]",
+        "doping [cm⁻³]",
+        SCORE_TITLES[rows[0]["score_name"]],
+        "zT mean",
+        "zT peak",
+        "gain over coarse",
+        "notes",
+    )
+    cells = (
+        (
+            f"{row['rank']}. {row['candidate']}",
+            row["formula"],
+            row["carrier"],
+            figure(row["size_nm"]),
+            _span(row["window_nm"]),
+            figure(row["doping_per_cm3"]),
+            figure(row["score"]),
+            figure(row["zt_mean"]),
+            figure(row["zt_peak"]),
+            "–" if row["gain_over_bulk"] is None else f"×{row['gain_over_bulk']:.2f}",
+            " ".join(str(numbers[flag]) for flag in row["flags"]),
+        )
+        for row in rows
+    )
+    return draw(title, columns, cells, markdown)
+
+
+def flag_numbers(rows: Iterable[Record]) -> dict[str, int]:
+    """Footnote numbers of the flags, in order of first use."""
+    used = dict.fromkeys(flag for row in rows for flag in row["flags"])
+    return {flag: number for number, flag in enumerate(used, start=1)}
+
+
+def pairs_table(title: str, pairs: Iterable[tuple[str, str]], markdown: bool) -> Table:
+    """Two columns: what, and how much."""
+    return draw(title, ("property", "value"), pairs, markdown)
+
+
+_BASES = ("measured", "published model", "calibrated on bulk", "common practice", "from memory")
+
+
+def library_table(rows: Sequence[Record], markdown: bool) -> Table:
+    """One line a candidate, with the share of its numbers by basis."""
+    columns = ("candidate", "formula", "direction", "up to [K]", "doping [cm⁻³]", "numbers", *_BASES)
+    cells = (
+        (
+            row["candidate"],
+            row["formula"],
+            row["direction"],
+            figure(row["highest_temperature_K"], 4),
+            _span((row["doping_min_per_cm3"], row["doping_max_per_cm3"])),
+            str(row["numbers"]),
+            *(f"{100 * row['numbers_by_basis'].get(basis, 0) / row['numbers']:.0f} %" for basis in _BASES),
+        )
+        for row in rows
+    )
+    return draw("Library (shares of the numbers by where they came from)", columns, cells, markdown)
+
+
+def numbers_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
+    """Every number of a candidate."""
+    columns = ("key", "value", "unit", "spread (1 σ)", "basis", "source", "note")
+    cells = (
+        (
+            row["key"],
+            f"{row['value']:g}",
+            row["unit"],
+            f"{row['spread']:g} {row['spread_unit']}" if row["spread_unit"] else f"{100 * row['spread']:g} %",
+            row["basis"],
+            row["source"],
+            row["note"] or "",
+        )
+        for row in rows
+    )
+    return draw(title, columns, cells, markdown)
+
+
+def footnotes(
+    out: Console, numbers: Mapping[str, int], meanings: Mapping[str, str], cautions: Iterable[str]
+) -> None:
+    """Meaning of each numbered flag, then the cautions, once."""
+    for flag, number in numbers.items():
+        out.print(f"{number}  {flag}: {meanings[flag]}", markup=False)
+    reminders = list(cautions)
+    if reminders:
+        out.print()
+        out.print("Cautions: " + " ".join(reminders), markup=False)
