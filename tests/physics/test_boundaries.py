@@ -61,7 +61,7 @@ def dingle(knudsen: float) -> mpmath.mpf:
         return 1 - 6 / k * lost
 
 
-KNUDSEN = [1e-4, 0.03, 0.5, 1.0, 4.0, 60.0]
+KNUDSEN = [1e-4, 0.03, 0.5, 1.0, 4.0, 10.0, 60.0]
 
 
 def test_film_and_wire_at_one_mean_free_path():
@@ -81,12 +81,14 @@ def test_film_matches_mpmath(knudsen, specularity):
     assert relative_miss(film_suppression(knudsen, [specularity])[0], exact) < 1e-13
 
 
-@pytest.mark.parametrize("knudsen", [*KNUDSEN, 1e3])
+@pytest.mark.parametrize("knudsen", [*KNUDSEN, 1e3, 1e5, 1e7])
 def test_diffuse_wire_matches_mpmath(knudsen):
     exact = dingle(knudsen)
-    # 1e-12: in a thin wire the corner θ, β → 0 holds the logarithm of the next term
-    assert relative_miss(wire_suppression(knudsen), exact) < 1e-12
-    assert relative_miss(wire_suppression(knudsen, [0.0])[0], exact) < 1e-12
+    # rounding up to Kn = 10; in thinner wires the 91 × 91 points, of which those that hardly count in thick
+    # wires are left out, miss up to 2.6e-11 (measured)
+    allowed = 1e-13 if knudsen <= 10 else 5e-11
+    assert relative_miss(wire_suppression(knudsen), exact) < allowed
+    assert relative_miss(wire_suppression(knudsen, [0.0])[0], exact) < allowed
 
 
 @pytest.mark.parametrize("specularity", [0.3, 0.6, 0.9])
@@ -109,7 +111,8 @@ def test_mirrors_and_empty_space_do_not_scatter(suppression):
     knudsen = np.array([0.0, 1e-9, 1.0, 1e9])
     assert np.array_equal(suppression(knudsen, 1.0), np.ones(4))
     assert np.array_equal(suppression(knudsen, np.ones(4)), np.ones(4))
-    assert suppression(0.0, 0.2) == 1.0
+    # the rule's weights add up to 1 but for rounding
+    assert float(suppression(0.0, 0.2)) == pytest.approx(1, abs=1e-14)
 
 
 @pytest.mark.parametrize(("suppression", "slope"), [(film_suppression, 3 / 8), (wire_suppression, 3 / 4)])
@@ -137,14 +140,26 @@ def test_thin_wire_limit(specularity):
     assert abs(misses[1]) < abs(misses[0]) / 50
 
 
+ENDS = np.exp([-14.0, 46.0])
+
+
 @BOTH
 @pytest.mark.parametrize("specularity", [0.0, 0.45, 0.97])
 def test_table_agrees_with_the_integral_also_past_its_ends(suppression, specularity):
-    # a scalar specularity is looked up, an array is integrated; ln Kn −14 … 16 is tabled, beyond it is not
-    ends = np.exp([-14.0, 16.0])
-    kn = np.concatenate([np.geomspace(1e-8, 1e8, 251), ends * (1 - 1e-9), ends * (1 + 1e-9)])
+    # a scalar specularity is looked up, an array is integrated; ln Kn −14 … 46 is tabled, beyond it is not.
+    # Pieces of degree 9, half a unit of ln Kn wide, are 9e-14 off at worst (measured)
+    kn = np.concatenate([np.geomspace(1e-9, 1e19, 501), ENDS * (1 - 1e-12), ENDS * (1 + 1e-12)])
     tabled, integrated = suppression(kn, specularity), suppression(kn, np.full(kn.size, specularity))
-    assert np.max(np.abs(tabled / integrated - 1)) < 1e-13
+    assert np.max(np.abs(tabled / integrated - 1)) < 2e-13
+
+
+@BOTH
+@pytest.mark.parametrize("specularity", [0.0, 0.6])
+def test_no_step_where_pieces_of_the_table_meet(suppression, specularity):
+    # neighbours 2e-12 apart in Kn differ by that much at most, and by the error of either piece
+    seams = np.exp(np.arange(-14.0, 46.1, 0.5))[:, None] * (1 + 1e-12 * np.array([-1, 1]))
+    left, right = suppression(seams, specularity).T
+    assert np.max(np.abs(right / left - 1)) < 2e-12 + 2e-13
 
 
 @BOTH
@@ -159,7 +174,7 @@ def test_short_paths_meet_the_series_without_a_step(suppression):
 
 @BOTH
 @given(
-    log_kn=st.lists(st.floats(-16, 18), min_size=2, max_size=8),
+    log_kn=st.lists(st.floats(-16, 44), min_size=2, max_size=8),
     p=st.lists(st.floats(0, 1), min_size=2, max_size=4),
 )
 @settings(derandomize=True, deadline=None, max_examples=40)
@@ -170,7 +185,7 @@ def test_more_path_hurts_and_more_mirror_helps(suppression, log_kn, p):
     assert np.all((grid > 0) & (grid <= 1))
     assert np.all(np.diff(grid, axis=1) <= rounding)
     assert np.all(np.diff(grid, axis=0) >= -rounding)
-    assert np.all(np.diff(suppression(kn, float(mirrors[0]))) <= rounding)
+    assert np.all(np.diff(suppression(kn, 0.25)) <= rounding)
 
 
 @BOTH

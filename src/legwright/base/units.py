@@ -49,8 +49,10 @@ def si_factor(unit: str, si_unit: str) -> float:
     if si_unit == "1":
         si_unit = "dimensionless"
     try:
-        if registry.Quantity(0.0, unit).to(si_unit).magnitude != 0.0:
-            raise InputError(f"unit '{unit}' has a shifted zero; give it in {si_unit}")
-        return float(registry.Quantity(1.0, unit).to(si_unit).magnitude)
+        zero = registry.Quantity(0.0, unit).to(si_unit).magnitude
+        factor = float(registry.Quantity(1.0, unit).to(si_unit).magnitude)
     except (pint.PintError, AttributeError, ValueError, TypeError, SyntaxError) as error:
         raise InputError(f"unit '{unit}' is not a unit that converts to {si_unit}") from error
+    if zero != 0.0:
+        raise InputError(f"unit '{unit}' has a shifted zero; give it in {si_unit}")
+    return factor

@@ -10,7 +10,8 @@ from functools import cache
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
-from scipy.interpolate import BSpline, make_interp_spline
+
+from legwright.physics.pieces import Pieces
 
 Array = NDArray[np.float64]
 
@@ -129,7 +130,7 @@ def _film_paths() -> tuple[Array, Array]:
 @cache
 def _wire_paths() -> tuple[Array, Array]:
     """Wall-to-wall paths in diameters, and how much of the current each carries."""
-    angle, weight = _double_exponential(91)
+    angle, weight = _double_exponential(131)
     theta, beta = angle[:, None], angle[None, :]
     paths = np.cos(beta) / np.sin(theta)
     shares = (12 / np.pi) * np.cos(theta) ** 2 * np.sin(theta) * np.cos(beta) ** 2
@@ -153,17 +154,20 @@ def _integrate(paths_and_shares: _Paths, knudsen: Array, specularity: Array) -> 
     return total
 
 
-#: the table spans ln Kn from thick to thin; outside it the integral is taken as it stands
-_LN_THICK, _LN_THIN, _KNOTS = -14.0, 16.0, 601
+#: the table spans ln Kn from thick to thin: below it 1 − F is proportional to Kn, above it F is to 1/Kn
+_LN_THICK, _LN_THIN, _PIECES, _DEGREE = -14.0, 46.0, 120, 9
 
 
 @cache
-def _table(paths_and_shares: _Paths, specularity: float) -> BSpline:
-    """F (1 + Kn) against ln Kn as a spline of degree 7; held against the integral in the tests."""
-    log_kn = np.linspace(_LN_THICK, _LN_THIN, _KNOTS)
-    kn = np.exp(log_kn)
-    factor = _integrate(paths_and_shares, kn, np.full_like(kn, specularity))
-    return make_interp_spline(log_kn, factor * (1 + kn), k=7)
+def _table(paths_and_shares: _Paths, specularity: float) -> Pieces:
+    """F (1 + Kn) against ln Kn; held against the integral in the tests."""
+
+    def scaled(log_kn: Array) -> Array:
+        kn = np.exp(log_kn)
+        factor = _integrate(paths_and_shares, kn.ravel(), np.full(kn.size, specularity))
+        return np.asarray(factor.reshape(kn.shape) * (1 + kn))
+
+    return Pieces.of(scaled, _LN_THICK, _LN_THIN, _PIECES, _DEGREE)
 
 
 def _suppression(paths_and_shares: _Paths, knudsen: ArrayLike, specularity: ArrayLike) -> Array:
@@ -175,15 +179,16 @@ def _suppression(paths_and_shares: _Paths, knudsen: ArrayLike, specularity: Arra
         return _by_integral(paths_and_shares, kn, p)
     if p == 1:
         return np.ones_like(kn)
-    log_kn = np.log(np.clip(kn, np.exp(_LN_THICK), np.exp(_LN_THIN)))
-    factor = np.asarray(_table(paths_and_shares, float(p))(log_kn) / (1 + kn))
-    outside = (kn < np.exp(_LN_THICK)) | (kn > np.exp(_LN_THIN))
-    if np.any(outside):
-        factor[outside] = _by_integral(paths_and_shares, kn[outside], np.full(outside.sum(), p))
-    return factor
+    bounded = np.clip(kn, _THICK, _THIN)
+    factor = _table(paths_and_shares, float(p))(np.log(bounded)) / (1 + bounded)
+    thick = 1 - (1 - factor) * (kn / _THICK)
+    return np.asarray(np.where(kn < _THICK, thick, factor / np.maximum(kn / _THIN, 1.0)))
+
+
+_THICK, _THIN = float(np.exp(_LN_THICK)), float(np.exp(_LN_THIN))
 
 
 def _by_integral(paths_and_shares: _Paths, kn: Array, p: Array) -> Array:
     bounded = np.clip(kn.ravel(), 1e-30, 1e30)
     factor = _integrate(paths_and_shares, bounded, np.minimum(p.ravel(), 1 - 1e-16))
-    return np.where(p == 1, 1.0, factor.reshape(kn.shape))
+    return np.asarray(np.where(p == 1, 1.0, factor.reshape(kn.shape)))

@@ -8,10 +8,12 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 from scipy.special import gamma, rgamma
 
+from legwright.physics.pieces import Pieces
+
 Array = NDArray[np.float64]
 
 _SERIES_BELOW, _EXPANSION_ABOVE = -2.0, 80.0
-_PIECE, _DEGREE = 2.0, 17
+_PIECES, _DEGREE = 41, 17
 
 
 def fermi_dirac_integral(order: float, eta: ArrayLike) -> Array:
@@ -32,7 +34,7 @@ def fermi_dirac_integral(order: float, eta: ArrayLike) -> Array:
     if not np.all(np.isfinite(x)):
         raise ValueError("η must be finite")
     low, high = x < _SERIES_BELOW, x > _EXPANSION_ABOVE
-    result = _pieces(float(order), np.clip(x, _SERIES_BELOW, _EXPANSION_ABOVE))
+    result = _pieces(float(order))(np.clip(x, _SERIES_BELOW, _EXPANSION_ABOVE))
     if np.any(low):
         result = np.where(low, _series(order, np.minimum(x, _SERIES_BELOW)), result)
     if np.any(high):
@@ -78,26 +80,13 @@ _DIRICHLET_ETA = (np.pi**2 / 12, 7 * np.pi**4 / 720, 31 * np.pi**6 / 30240, 127 
 
 
 @cache
-def _coefficients(order: float) -> Array:
-    """Chebyshev coefficients on each piece of width 2, from the exponentially convergent rule above."""
-    count = round((_EXPANSION_ABOVE - _SERIES_BELOW) / _PIECE)
-    local = np.cos(np.pi * (np.arange(_DEGREE + 1) + 0.5) / (_DEGREE + 1))
-    centres = _SERIES_BELOW + _PIECE * (np.arange(count) + 0.5)
-    eta = centres[:, None] + 0.5 * _PIECE * local
+def _pieces(order: float) -> Pieces:
+    """F_j between the series and the expansion, from the exponentially convergent rule of `softplus_mesh`."""
     s = np.arange(-80.0, _EXPANSION_ABOVE + 45.0, 0.25)
     x = np.logaddexp(0.0, s)
     weight = 0.25 / (1 + np.exp(-s)) * x**order / gamma(order + 1)
-    values = np.sum(weight / (1 + np.exp(np.minimum(x - eta[..., None], 700.0))), axis=-1)
-    series = np.polynomial.chebyshev.chebfit(local, values.T, _DEGREE)
-    return np.asarray(series)
 
+    def integral(eta: Array) -> Array:
+        return np.asarray(np.sum(weight / (1 + np.exp(np.minimum(x - eta[..., None], 700.0))), axis=-1))
 
-def _pieces(order: float, x: Array) -> Array:
-    coefficients = _coefficients(order)
-    position = (x - _SERIES_BELOW) / _PIECE
-    piece = np.minimum(position.astype(np.intp), coefficients.shape[1] - 1)
-    local = 2 * (position - piece) - 1
-    upper, lower = np.zeros_like(x), np.zeros_like(x)
-    for k in range(_DEGREE, 0, -1):  # Clenshaw
-        upper, lower = coefficients[k][piece] + 2 * local * upper - lower, upper
-    return np.asarray(coefficients[0][piece] + local * upper - lower)
+    return Pieces.of(integral, _SERIES_BELOW, _EXPANSION_ABOVE, _PIECES, _DEGREE)
