@@ -135,7 +135,7 @@ def _wire_paths() -> tuple[Array, Array]:
     paths = np.cos(beta) / np.sin(theta)
     shares = (12 / np.pi) * np.cos(theta) ** 2 * np.sin(theta) * np.cos(beta) ** 2
     shares = shares * weight[:, None] * weight[None, :]
-    keep = shares > 1e-19
+    keep = shares > 1e-30
     return paths[keep], shares[keep]
 
 
