@@ -13,6 +13,7 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.integrate import simpson
 from scipy.interpolate import CubicSpline
 
 Array = NDArray[np.float64]
@@ -49,10 +50,10 @@ class LegMaterial:
 
 @dataclass(frozen=True)
 class Along:
-    """A march down in temperature: w² and ∫κ/|w| dT (= current density × length covered) at each step."""
+    """A march down in temperature: |w| at each step, and ∫κ/|w| dT = current density × length covered."""
 
     temperature: Array
-    w_squared: Array
+    w: Array
     current_length: Array
 
 
@@ -60,35 +61,36 @@ def march_down(material: LegMaterial, top: float, bottom: float, sign: int, w_to
     """Integrate d(w²)/dT = −2κρ − 2wT dS/dT from `top` down to `bottom` with w = ±√(w²) of the given sign.
 
     Fourth-order Runge–Kutta in θ = √(T_top − T), in which the start from w = 0 (a temperature maximum inside
-    the leg) is smooth. w_top: |w| at the top (W/A), shape legs …; the result has a first axis of steps + 1.
+    the leg) is smooth; the length by Simpson's rule on the same steps, an even number of them.
+    w_top: |w| at the top (W/A), shape legs …; `w` has a first axis of steps + 1.
     """
     theta = np.sqrt(top - bottom) * np.linspace(0.0, 1.0, 2 * steps + 1)
     t = top - theta**2
     kappa = material.thermal_conductivity(t)
     joule = kappa * material.resistivity(t)
     thomson = np.reshape(sign * t, (-1, *(1,) * (kappa.ndim - 1))) * material.seebeck(t, 1)
-    at_rest = np.sqrt(2 * kappa[0] ** 2 / joule[0])  # limit of 2θκ/w at w = 0, θ = 0
-    shape = np.broadcast_shapes(kappa.shape[1:], np.shape(w_top))
 
-    def slopes(i: int, y: Array) -> tuple[Array, Array]:
-        w = np.sqrt(np.maximum(y, 0.0))
-        change = 4 * theta[i] * (joule[i] + w * thomson[i])
-        if i:
-            return change, 2 * theta[i] * kappa[i] / np.maximum(w, _SMALLEST_W)
-        return change, np.where(w > 0, 0.0, at_rest)
+    def slope(i: int, y: Array) -> Array:
+        return np.asarray(4 * theta[i] * (joule[i] + np.sqrt(np.maximum(y, 0.0)) * thomson[i]))
 
-    y = np.empty((steps + 1, *shape))
-    length = np.zeros((steps + 1, *shape))
+    y = np.empty((steps + 1, *np.broadcast_shapes(kappa.shape[1:], np.shape(w_top))))
     y[0] = np.asarray(w_top, dtype=float) ** 2
+    h = theta[2] - theta[0]
     for k in range(steps):
-        h, i = theta[2 * k + 2] - theta[2 * k], 2 * k
-        a, la = slopes(i, y[k])
-        b, lb = slopes(i + 1, y[k] + 0.5 * h * a)
-        c, lc = slopes(i + 1, y[k] + 0.5 * h * b)
-        d, ld = slopes(i + 2, y[k] + h * c)
+        a = slope(2 * k, y[k])
+        b = slope(2 * k + 1, y[k] + 0.5 * h * a)
+        c = slope(2 * k + 1, y[k] + 0.5 * h * b)
+        d = slope(2 * k + 2, y[k] + h * c)
         y[k + 1] = y[k] + h / 6 * (a + 2 * (b + c) + d)
-        length[k + 1] = length[k] + h / 6 * (la + 2 * (lb + lc) + ld)
-    return Along(t[::2], y, length)
+    w = np.sqrt(np.maximum(y, 0.0))
+    at_rest = np.sqrt(2 * kappa[0] ** 2 / joule[0])  # limit of 2θκ/w at w = 0, θ = 0
+    covered = np.empty_like(w)
+    covered[0] = np.where(w[0] > 0, 0.0, at_rest)
+    per_theta = np.reshape(2 * theta[2::2], (-1, *(1,) * (kappa.ndim - 1))) * kappa[2::2]
+    covered[1:] = np.reshape(per_theta, (steps, *(1,) * (w.ndim - kappa.ndim), *kappa.shape[1:])) / np.maximum(
+        w[1:], _SMALLEST_W
+    )
+    return Along(t[::2], w, np.asarray(simpson(covered, dx=h, axis=0)))
 
 
 #: guards the division where no current reaches; W/A
@@ -111,10 +113,10 @@ def generate(material: LegMaterial, hot: float, cold: float, w_hot: Array, steps
     """
     along = march_down(material, hot, cold, +1, w_hot, steps)
     phi_hot = material.seebeck(hot) * hot + w_hot
-    phi_cold = material.seebeck(cold) * cold + np.sqrt(np.maximum(along.w_squared[-1], 0.0))
-    valid = (phi_hot > 0) & (along.w_squared[-1] > 0)
+    phi_cold = material.seebeck(cold) * cold + along.w[-1]
+    valid = (phi_hot > 0) & (along.w[-1] > 0)
     efficiency = np.where(valid, 1 - phi_cold / np.where(valid, phi_hot, 1.0), -np.inf)
-    current = along.current_length[-1]
+    current = along.current_length
     return Generator(efficiency, current * (phi_hot - phi_cold), current)
 
 
@@ -131,10 +133,10 @@ def cool(material: LegMaterial, hot: float, cold: float, w_hot: Array, steps: in
     """COP Φ_c/(Φ_h − Φ_c) and lifted heat density times length, for |w| at the hot end of a monotonic leg."""
     along = march_down(material, hot, cold, -1, w_hot, steps)
     phi_hot = material.seebeck(hot) * hot - w_hot
-    phi_cold = material.seebeck(cold) * cold - np.sqrt(np.maximum(along.w_squared[-1], 0.0))
+    phi_cold = material.seebeck(cold) * cold - along.w[-1]
     spent = phi_hot - phi_cold
     cop = np.where(spent > 0, phi_cold / np.where(spent > 0, spent, 1.0), -np.inf)
-    current = along.current_length[-1]
+    current = along.current_length
     return Cooler(cop, current * phi_cold, current)
 
 
@@ -143,9 +145,9 @@ def cool_past_peak(material: LegMaterial, hot: float, cold: float, peak: float, 
     at_rest = np.zeros(material.seebeck.c.shape[2:])
     to_cold = march_down(material, peak, cold, -1, at_rest, steps)
     to_hot = march_down(material, peak, hot, +1, at_rest, steps)
-    phi_cold = material.seebeck(cold) * cold - np.sqrt(np.maximum(to_cold.w_squared[-1], 0.0))
-    phi_hot = material.seebeck(hot) * hot + np.sqrt(np.maximum(to_hot.w_squared[-1], 0.0))
-    current = to_cold.current_length[-1] + to_hot.current_length[-1]
+    phi_cold = material.seebeck(cold) * cold - to_cold.w[-1]
+    phi_hot = material.seebeck(hot) * hot + to_hot.w[-1]
+    current = to_cold.current_length + to_hot.current_length
     return Cooler(phi_cold / (phi_hot - phi_cold), current * phi_cold, current)
 
 
@@ -157,17 +159,26 @@ def largest_difference(material: LegMaterial, hot: float, steps: int = 96) -> Ar
     For constant properties ½ Z T_c² (Ioffe, Semiconductor Thermoelements, 1957).
     """
     along = march_down(material, hot, material.lowest, -1, np.zeros(material.seebeck.c.shape[2:]), steps)
-    t = along.temperature.reshape(-1, *(1,) * (along.w_squared.ndim - 1))
-    left = material.seebeck(along.temperature) * t - np.sqrt(np.maximum(along.w_squared, 0.0))
+    t = along.temperature.reshape(-1, *(1,) * (along.w.ndim - 1))
+    left = material.seebeck(along.temperature) * t - along.w
     spent = left <= 0
-    ends, after = np.any(spent, axis=0), np.maximum(np.argmax(spent, axis=0), 1)[None]
-    (y0, y1), (t0, t1) = (
-        [np.take_along_axis(np.broadcast_to(a, left.shape), i, axis=0)[0] for i in (after - 1, after)]
+    first = np.clip(np.argmax(spent, axis=0), 2, steps - 1)[None]
+    near, at = (
+        np.stack([np.take_along_axis(np.broadcast_to(a, left.shape), first + k, axis=0)[0] for k in (-2, -1, 0, 1)])
         for a in (left, t)
     )
-    crossing = t0 + (t1 - t0) * y0 / np.where(y0 != y1, y0 - y1, 1.0)
-    cold = np.where(spent[0], hot, np.where(ends, crossing, material.lowest))
+    crossing = _lagrange(near, at)
+    cold = np.where(spent[0], hot, np.where(np.any(spent, axis=0), crossing, material.lowest))
     return np.asarray(hot - cold)
+
+
+def _lagrange(x: Array, y: Array) -> Array:
+    """The polynomial through (x, y), points along axis 0, at x = 0."""
+    total = np.zeros(x.shape[1:])
+    for k in range(len(x)):
+        others = [j for j in range(len(x)) if j != k]
+        total += y[k] * np.prod([x[j] / (x[j] - x[k]) for j in others], axis=0)
+    return total
 
 
 def zoom(score: Callable[[Array], Array], low: Array, high: Array, points: int, rounds: int) -> tuple[Array, Array]:

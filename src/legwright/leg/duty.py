@@ -111,5 +111,6 @@ def _best_lift(material: LegMaterial, duty: Duty) -> Array:
     inner = np.clip(np.argmax(lifted, axis=0), 1, peaks.size - 2)[None]
     left, middle, right = (np.take_along_axis(lifted, inner + step, axis=0)[0] for step in (-1, 0, 1))
     curvature = left - 2 * middle + right
-    rise = np.where(curvature < 0, (right - left) ** 2 / np.where(curvature < 0, -8 * curvature, 1.0), 0.0)
-    return np.asarray(np.maximum(middle + rise, np.max(lifted, axis=0)))
+    inside = (middle >= left) & (middle >= right) & (curvature < 0)
+    rise = np.where(inside, (right - left) ** 2 / np.where(inside, -8 * curvature, 1.0), 0.0)
+    return np.asarray(np.max(lifted, axis=0) + rise)

@@ -84,6 +84,7 @@ class Properties:
             "bipolar thermal conductivity [W/m/K]": self.bipolar_thermal_conductivity,
             "lattice thermal conductivity [W/m/K]": self.lattice_thermal_conductivity,
             "thermal conductivity [W/m/K]": self.thermal_conductivity,
+            "amorphous minimum [W/m/K]": self.amorphous_minimum,
             "lorenz number [W ohm/K^2]": self.lorenz_number,
             "power factor [W/m/K^2]": self.power_factor,
             "zT [1]": self.zt,

@@ -169,17 +169,14 @@ def _sheet(
 
     def table() -> None:
         out = tables.console(markdown)
-        named = {k: v for k, v in content.items() if isinstance(v, float) and k not in _ASKED}
-        pairs = [(key, tables.figure(value, 4)) for key, value in named.items()]
+        parts = made.to_frame().iloc[0].drop(["temperature [K]", "doping [1/cm^3]", "size [nm]"])
+        pairs = [(str(name), tables.figure(value, 4)) for name, value in parts.items()]
         where = "coarse" if math.isinf(size) else f"{size:g} nm {shape}"
         heading = f"{one.name} ({content['formula']}) at {temperature:g} K, {doping:.3g} cm⁻³, {where}"
         out.print(tables.pairs_table(heading, pairs, markdown))
         tables.footnotes(out, tables.flag_numbers([content]), under["flag_meanings"], under["cautions"])
 
     _publish("sheet", {**content, **under}, [content], as_json, csv_file, table)
-
-
-_ASKED = ("temperature_K", "doping_per_cm3", "size_nm")
 
 
 @_cli.command("candidates")

@@ -114,16 +114,16 @@ _BASES = ("measured", "published model", "calibrated on bulk", "common practice"
 
 def library_table(rows: Sequence[Record], markdown: bool) -> Table:
     """One line a candidate, with the share of its numbers by basis."""
-    columns = ("candidate", "formula", "direction", "up to [K]", "doping [cm⁻³]", "numbers", *_BASES)
+    columns = ("candidate", "formula", "up to [K]", "doping [cm⁻³]", "numbers", *_BASES, "direction")
     cells = (
         (
             row["candidate"],
             row["formula"],
-            row["direction"],
             figure(row["highest_temperature_K"], 4),
             _span((row["doping_min_per_cm3"], row["doping_max_per_cm3"])),
             str(row["numbers"]),
             *(f"{100 * row['numbers_by_basis'].get(basis, 0) / row['numbers']:.0f} %" for basis in _BASES),
+            row["direction"],
         )
         for row in rows
     )
