@@ -14,9 +14,7 @@ def ranked(legwright, path):
 
 
 def test_near_room_temperature_the_bismuth_tellurides_lead(legwright, brief):
-    rows = ranked(
-        legwright, brief({"candidates.use": '"all"', "duty.hot_K": "400", "duty.cold_K": "300"})
-    )
+    rows = ranked(legwright, brief({"candidates.use": '"all"', "duty.hot_K": "400", "duty.cold_K": "300"}))
     assert {rows["bisbte-p"]["rank"], rows["bitese-n"]["rank"]} == {1, 2}
 
 

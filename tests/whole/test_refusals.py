@@ -84,6 +84,11 @@ CANDIDATES = {
         'elastic_constant = { value = 183, unit = "hardish"',
         ["scattering.elastic_constant", "'hardish'", "Pa"],
     ),
+    "unit with a shifted zero": (
+        'highest_temperature = { value = 1230, unit = "K"',
+        'highest_temperature = { value = 957, unit = "degC"',
+        ["service.highest_temperature", "'degC'", "shifted zero"],
+    ),
     "number without a source": (
         'dielectric_constant = { value = 12.2, unit = "1", spread = 0.02, source = "workshop-notes", ',
         'dielectric_constant = { value = 12.2, unit = "1", spread = 0.02, ',
