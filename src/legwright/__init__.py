@@ -5,14 +5,14 @@ from __future__ import annotations
 from importlib import import_module
 from typing import TYPE_CHECKING, Any
 
+from legwright.base.version import VERSION as __version__
+
 if TYPE_CHECKING:
     from legwright import physics as physics
     from legwright.candidate.library import Candidate as Candidate
     from legwright.candidate.library import load_candidate as load_candidate
     from legwright.physics.properties import Properties as Properties
     from legwright.physics.properties import evaluate as evaluate
-
-__version__ = "0.1.0"
 
 _HOMES = {
     "physics": ("legwright.physics", None),

@@ -109,3 +109,10 @@ def test_priors_are_those_of_the_grain_law():
     assert priors.grain_law.exponent.spread == pytest.approx(12**-0.5, abs=0.005)  # written with two digits
     assert (priors.grain_law.prefactor.value, priors.grain_law.prefactor.spread) == (1.0, 0.3)
     assert (priors.reflection.electrons.value, priors.reflection.electrons.spread) == (0.3, 0.2)
+
+
+@pytest.mark.parametrize("name", library_names())
+def test_a_choice_of_the_library_says_how_it_was_made(name):
+    """Where no publication stands behind a number, a note does."""
+    silent = [key for key, n in numbers(load_candidate(name).data) if n.source == "this-library" and not n.note]
+    assert not silent

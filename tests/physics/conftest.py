@@ -5,9 +5,10 @@ from collections.abc import Callable
 import mpmath
 import numpy as np
 import pytest
+from scipy import constants
+
 from legwright.physics.carriers import Electrons, Filling, Integrals, bulk_flow, fill, transport_integrals
 from legwright.physics.lattice import Phonons
-from scipy import constants
 
 PER_BAND = {
     "side": 1.0,

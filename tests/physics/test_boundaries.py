@@ -8,13 +8,14 @@ import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
+from scipy.integrate import dblquad
+
 from legwright.physics.boundaries import (
     film_suppression,
     grain_mean_free_path,
     grain_suppression,
     wire_suppression,
 )
-from scipy.integrate import dblquad
 
 BOTH = pytest.mark.parametrize("suppression", [film_suppression, wire_suppression])
 
@@ -84,11 +85,9 @@ def test_film_matches_mpmath(knudsen, specularity):
 @pytest.mark.parametrize("knudsen", [*KNUDSEN, 1e3, 1e5, 1e7])
 def test_diffuse_wire_matches_mpmath(knudsen):
     exact = dingle(knudsen)
-    # rounding up to Kn = 10; in thinner wires the 91 × 91 points, of which those that hardly count in thick
-    # wires are left out, miss up to 2.6e-11 (measured)
-    allowed = 1e-13 if knudsen <= 10 else 5e-11
-    assert relative_miss(wire_suppression(knudsen), exact) < allowed
-    assert relative_miss(wire_suppression(knudsen, [0.0])[0], exact) < allowed
+    # 8e-14 at worst (measured), in thin wires
+    assert relative_miss(wire_suppression(knudsen), exact) < 2e-13
+    assert relative_miss(wire_suppression(knudsen, [0.0])[0], exact) < 2e-13
 
 
 @pytest.mark.parametrize("specularity", [0.3, 0.6, 0.9])

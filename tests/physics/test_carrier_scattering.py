@@ -4,6 +4,9 @@ import math
 
 import numpy as np
 import pytest
+from scipy import constants
+from scipy.integrate import quad
+
 from legwright.physics.bands import density_of_states, wave_number_squared
 from legwright.physics.carrier_scattering import (
     acoustic_rate,
@@ -12,8 +15,6 @@ from legwright.physics.carrier_scattering import (
     ionised_impurity_rate,
     screening_wave_number_squared,
 )
-from scipy import constants
-from scipy.integrate import quad
 
 EV, M_E, HBAR, K_B = constants.e, constants.m_e, constants.hbar, constants.k
 
@@ -63,7 +64,9 @@ def test_intervalley_scattering_is_in_detailed_balance(nonparabolicity):
     low = np.array([0.002, 0.03, 0.2]) * EV
     states = [density_of_states(e, 0.4 * M_E, nonparabolicity) for e in (low, low + phonon)]
     up = states[0] * np.exp(-low / (K_B * t)) * intervalley_rate(states[1], 0.0, t, 1e-8, phonon, 3000.0)
-    down = states[1] * np.exp(-(low + phonon) / (K_B * t)) * intervalley_rate(0.0, states[0], t, 1e-8, phonon, 3000.0)
+    down = (
+        states[1] * np.exp(-(low + phonon) / (K_B * t)) * intervalley_rate(0.0, states[0], t, 1e-8, phonon, 3000.0)
+    )
     assert up == pytest.approx(down, rel=1e-13)
 
 
@@ -76,7 +79,9 @@ def test_intervalley_scattering_by_soft_phonons_is_like_acoustic():
     assert soft == pytest.approx(acoustic, rel=2e-6)
 
 
-def brooks_herring(wave_number: float, screening: float, centres: float, permittivity: float, states: float) -> float:
+def brooks_herring(
+    wave_number: float, screening: float, centres: float, permittivity: float, states: float
+) -> float:
     """(2π/ħ) N ∫ V_q² (1 − cos θ) over the sphere of final states, V_q = e²/(ε(q² + q_s²)): Brooks (1955)."""
 
     def integrand(u: float) -> float:  # u = q/2k, 1 − cos θ = 2u², d cos θ = 4u du
@@ -84,7 +89,9 @@ def brooks_herring(wave_number: float, screening: float, centres: float, permitt
         return potential**2 * 2 * u**2 * 4 * u / 2
 
     knee = math.sqrt(screening) / (2 * wave_number)
-    value, _ = quad(integrand, 0, 1, points=[p for p in (0.3 * knee, knee, 5 * knee) if p < 1], epsabs=0, epsrel=1e-12)
+    value, _ = quad(
+        integrand, 0, 1, points=[p for p in (0.3 * knee, knee, 5 * knee) if p < 1], epsabs=0, epsrel=1e-12
+    )
     return 2 * math.pi / HBAR * centres * states / 2 * value
 
 

@@ -5,6 +5,7 @@ import math
 import mpmath
 import numpy as np
 import pytest
+
 from legwright.physics.carriers import thermal_window
 from legwright.physics.fermi import fermi_dirac_integral, softplus_mesh
 
@@ -92,12 +93,25 @@ def test_mesh_error_far_above_the_edge_is_what_theory_says(power, step):
     assert largest == pytest.approx(2 * a / math.sinh(a), rel=0.1)
 
 
+LEVELS = (-30.0, -3.0, 0.0, 1.0, 5.0, 40.0)
+
+
 @pytest.mark.parametrize("power", [1.0, 1.5, 2.0, 3.0, 4.0])
 def test_halving_the_step_squares_the_error(power):
-    levels = (-30.0, -3.0, 0.0, 1.0, 5.0, 40.0)
-    at_one = max(abs(mesh_error(power, eta, 1.0)) for eta in levels)
-    at_half = max(abs(mesh_error(power, eta, 0.5)) for eta in levels)
+    at_one, at_half = (max(abs(mesh_error(power, eta, step)) for eta in LEVELS) for step in (1.0, 0.5))
     # theory above 2.1e-7, and up to 2.5 times as much near the edge, where z starts as a power of eˢ;
     # its square is under the rounding of 144 terms
     assert 1e-7 < at_one < 6e-7
     assert at_half < 2e-14
+
+
+@pytest.mark.parametrize("power", [0.5, 1.0, 1.5, 2.0, 3.0, 4.0])
+def test_mesh_that_every_band_uses_is_good_to_a_few_parts_in_1e10(power):
+    # step 0.75: a/sinh(a) × 2 = 4e-10, up to 2.5 times as much near the edge (as at step 1); the cut at
+    # s = −15 adds e^(−15 (p+1)), 1e-10 at p = ½
+    def error(eta: float) -> float:
+        nodes, weights = softplus_mesh(np.array(eta))
+        found = np.sum(nodes**power * weights * thermal_window(nodes - eta))
+        return float(found / (math.gamma(power + 1) * fermi_dirac_integral(power - 1, eta)) - 1)
+
+    assert max(abs(error(eta)) for eta in LEVELS) < 1.5e-9

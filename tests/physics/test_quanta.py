@@ -4,9 +4,10 @@ import math
 
 import numpy as np
 import pytest
-from legwright.physics import quanta
 from scipy import constants
 from scipy.integrate import quad
+
+from legwright.physics import quanta
 
 
 def test_thermal_conductance_quantum():

@@ -24,28 +24,37 @@ def datasets_folder() -> Path:
     raise FileNotFoundError("legwright is installed without its datasets; install it again")
 
 
-def read_toml(path: Path) -> dict[str, Any]:
-    """The parsed file; InputError that names the file and the line where it is not readable TOML."""
+def read_toml(path: Path, shown: Path | str | None = None) -> dict[str, Any]:
+    """The parsed file; InputError that names the file (as `shown`) and the line where it is not readable TOML."""
     import tomli
 
-    if path.is_dir():
-        raise InputError("is a directory; a TOML file is needed", file=path)
+    name = path if shown is None else shown
     try:
+        if path.is_dir():
+            raise InputError("is a directory; a TOML file is needed", file=name)
         if path.stat().st_size > LARGEST_INPUT_BYTES:
-            raise InputError(f"is larger than {LARGEST_INPUT_BYTES} bytes", file=path)
-        return tomli.loads(path.read_text(encoding="utf-8"))
+            raise InputError(f"is larger than {LARGEST_INPUT_BYTES} bytes", file=name)
+        return tomli.loads(path.read_text(encoding="utf-8-sig"))
     except FileNotFoundError as error:
-        raise InputError("no such file", file=path) from error
+        raise InputError("no such file", file=name) from error
     except UnicodeDecodeError as error:
-        raise InputError("is not UTF-8 text; a TOML file is needed", file=path) from error
+        raise InputError("is not UTF-8 text; a TOML file is needed", file=name) from error
     except tomli.TOMLDecodeError as error:
-        raise InputError(f"is not valid TOML: {error}", file=path) from error
+        raise InputError(f"is not valid TOML: {error}", file=name) from error
+    except RecursionError as error:
+        raise InputError("is nested too deeply for a TOML file of ours", file=name) from error
     except OSError as error:
-        raise InputError(f"cannot be read ({error.strerror})", file=path) from error
+        raise InputError(f"cannot be read ({error.strerror})", file=name) from error
+    except ValueError as error:
+        if isinstance(error, InputError):
+            raise
+        raise InputError(f"is not a path ({error})", file=repr(str(name))) from error
 
 
 def write_whole(path: Path, text: str) -> None:
     """Write `text` to `path` completely or not at all (temporary name, fsync, replace)."""
+    if path.is_dir():
+        raise InputError("cannot be written (is a directory)", file=path)
     try:
         handle, temporary = tempfile.mkstemp(dir=path.parent, prefix=f".{path.name}.")
     except OSError as error:

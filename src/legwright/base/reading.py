@@ -67,6 +67,7 @@ def _sentence(kind: type[BaseModel], fault: Any) -> str:
         allowed = fault["ctx"]["expected"].replace(" or ", ", ").replace("'", "").split(", ")
         return f"value '{value}' is not allowed; {nearest(value, allowed)}"
     message = str(fault["msg"]).removeprefix("Value error, ")
+    message = message.replace("valid tuple", "list").replace("valid dictionary", "table")
     shown = isinstance(value, str | int | float | bool | datetime.date)
     return f"value {value!r}: {message}" if shown else message
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import tokenize
 from functools import cache
 from typing import TYPE_CHECKING
 
@@ -25,6 +26,10 @@ NM = 1e-9
 PER_CM3 = 1e6
 CM2 = 1e-4
 MICRO = 1e-6
+
+
+#: what reading a unit that is none may raise
+_UNREADABLE = (AttributeError, AssertionError, ValueError, TypeError, SyntaxError)
 
 
 @cache
@@ -51,7 +56,7 @@ def si_factor(unit: str, si_unit: str) -> float:
     try:
         zero = registry.Quantity(0.0, unit).to(si_unit).magnitude
         factor = float(registry.Quantity(1.0, unit).to(si_unit).magnitude)
-    except (pint.PintError, AttributeError, ValueError, TypeError, SyntaxError) as error:
+    except (pint.PintError, tokenize.TokenError, ArithmeticError, *_UNREADABLE) as error:
         raise InputError(f"unit '{unit}' is not a unit that converts to {si_unit}") from error
     if zero != 0.0:
         raise InputError(f"unit '{unit}' has a shifted zero; give it in {si_unit}")

@@ -64,19 +64,25 @@ def load_candidate(name_or_path: str | Path) -> Candidate:
     text = str(name_or_path)
     if text in library_names():
         path = candidates_folder() / f"{text}.toml"
-    elif "/" in text or text.endswith(".toml") or Path(text).exists():
+    elif "/" in text or text.endswith(".toml") or stamp(Path(text)):
         path = Path(text)
     else:
         raise InputError(f"no candidate '{text}' in the library; {nearest(text, library_names())}")
-    return _read(path.resolve(), text)
+    return _read(path, text, stamp(path), stamp(path.parent / "sources.bib"))
+
+
+def stamp(path: Path) -> tuple[int, int] | None:
+    """What changes when a file is edited: time of change and size; None where there is no file."""
+    try:
+        found = path.stat()
+    except (OSError, ValueError):
+        return None
+    return found.st_mtime_ns, found.st_size
 
 
 @cache
-def _read(path: Path, shown: str) -> Candidate:
-    try:
-        data = read_as(CandidateFile, read_toml(path), shown)
-    except InputError as error:
-        raise InputError(str(error)) from error
+def _read(path: Path, shown: str, *_stamps: tuple[int, int] | None) -> Candidate:
+    data = read_as(CandidateFile, read_toml(path, shown), shown)
     known = source_keys(path.parent)
     for key, number in numbers(data):
         if number.source not in known:
@@ -86,7 +92,7 @@ def _read(path: Path, shown: str) -> Candidate:
                 file=shown,
                 key=key,
             )
-    candidate = Candidate(path.stem, path, data)
+    candidate = Candidate(path.stem, path.resolve(), data)
     try:
         _ = candidate.disorder
     except InputError as error:

@@ -5,18 +5,19 @@ from __future__ import annotations
 from pathlib import Path
 from typing import Annotated, Literal
 
-from pydantic import Field, model_validator
+from pydantic import Field, PlainValidator, model_validator
 
 from legwright.base.errors import InputError, nearest
 from legwright.base.files import read_toml
 from legwright.base.reading import Table, read_as
-from legwright.base.units import NM
+from legwright.base.units import NM, PER_CM3
 from legwright.candidate.library import Candidate, library_names, load_candidate
 from legwright.leg.duty import GOALS, Duty, Goal, Kind
-from legwright.physics.properties import Shape
+from legwright.physics.properties import COLDEST, DENSEST, HOTTEST, LARGEST, SMALLEST, THINNEST, Shape
 
-Positive = Annotated[float, Field(gt=0)]
-Temperature = Annotated[float, Field(gt=0, le=3000)]
+Temperature = Annotated[float, Field(ge=COLDEST, le=HOTTEST)]
+Size = Annotated[float, Field(ge=round(SMALLEST / NM, 6), le=round(LARGEST / NM, 6))]
+Active = Annotated[float, Field(ge=THINNEST / PER_CM3, le=DENSEST / PER_CM3)]
 
 #: leg length when the brief gives none: common practice for bulk legs is 1 to 5 mm
 DEFAULT_LENGTH_MM = 1.0
@@ -46,8 +47,8 @@ class SizeTable(Table):
     """The sizes to consider."""
 
     shape: Shape
-    min_nm: Positive
-    max_nm: Positive
+    min_nm: Size
+    max_nm: Size
 
     @model_validator(mode="after")
     def _ordered(self) -> SizeTable:
@@ -59,8 +60,8 @@ class SizeTable(Table):
 class DopingTable(Table):
     """Active densities to consider, where narrower than each candidate's own range."""
 
-    min_per_cm3: Positive
-    max_per_cm3: Positive
+    min_per_cm3: Active
+    max_per_cm3: Active
 
     @model_validator(mode="after")
     def _ordered(self) -> DopingTable:
@@ -69,10 +70,16 @@ class DopingTable(Table):
         return self
 
 
+def _all_or_names(value: object) -> object:
+    if value == "all" or (isinstance(value, tuple) and value and all(isinstance(name, str) for name in value)):
+        return value
+    raise ValueError('must be "all" or a list of at least one name or path')
+
+
 class CandidatesTable(Table):
     """Who is considered."""
 
-    use: Literal["all"] | tuple[str, ...] = "all"
+    use: Annotated[Literal["all"] | tuple[str, ...], PlainValidator(_all_or_names)] = "all"
     carrier: Literal["n", "p", "either"] = "either"
 
 
@@ -85,7 +92,7 @@ class AvoidTable(Table):
 class LegTable(Table):
     """The leg itself."""
 
-    length_mm: Positive = DEFAULT_LENGTH_MM
+    length_mm: Annotated[float, Field(ge=1e-3, le=1e3)] = DEFAULT_LENGTH_MM
 
 
 class Brief(Table):
@@ -109,8 +116,6 @@ class Brief(Table):
 def load_brief(path: str | Path) -> Brief:
     """The brief in that file; InputError naming file, key, value and what is allowed when it cannot be used."""
     brief = read_as(Brief, read_toml(Path(path)), path)
-    if brief.candidates.use == ():
-        raise InputError('is empty; name at least one candidate, or "all"', file=path, key="candidates.use")
     _check_elements(brief, path)
     return brief
 
@@ -133,12 +138,9 @@ def candidates_of(brief: Brief, path: str | Path) -> list[Candidate]:
     wanted = library_names() if brief.candidates.use == "all" else brief.candidates.use
     found: dict[Path, Candidate] = {}
     for name in wanted:
-        beside = Path(path).parent / name
         try:
-            one = load_candidate(beside if name.endswith(".toml") and beside.exists() else name)
+            one = load_candidate(Path(path).parent / name if name.endswith(".toml") else name)
         except InputError as error:
-            if name in library_names() or name.endswith(".toml"):
-                raise
             raise InputError(str(error), file=path, key="candidates.use") from error
         found[one.path] = one
     chosen = [c for c in found.values() if brief.candidates.carrier in ("either", c.data.carrier)]

@@ -126,36 +126,30 @@ def _infeasible(brief: Brief, candidate: Candidate, flag: str) -> Row:
     return Row(candidate, brief.size.shape, None, None, None, 0.0, name, None, None, None, (flag,))
 
 
-def log_axis(ends: tuple[float, float], count: int) -> Array:
-    """Natural logarithms, evenly spaced between the ends."""
-    return np.linspace(np.log(ends[0]), np.log(ends[1]), count)
+def around(axis: Array, best: int, count: int = _ZOOM_POINTS) -> Array:
+    """A finer axis between the neighbours of the best point, evenly spaced in the logarithm."""
+    return np.geomspace(axis[max(best - 1, 0)], axis[min(best + 1, axis.size - 1)], count)
 
 
 def best_design(
     candidate: Candidate, duty: Duty, dopings: tuple[float, float], sizes: tuple[float, float], shape: str
 ) -> tuple[float, float, float]:
     """(doping, size, score) of the best leg: a dense map, then grids that shrink around the best point."""
-    log_n = log_axis(dopings, _MAP_DOPINGS)
-    log_d = log_axis(sizes, _MAP_SIZES)
+    density, length = np.geomspace(*dopings, _MAP_DOPINGS), np.geomspace(*sizes, _MAP_SIZES)
     for _ in range(_ZOOMS + 1):
-        scores = score(candidate, duty, np.exp(log_n)[:, None], np.exp(log_d), shape)
+        scores = score(candidate, duty, density[:, None], length, shape)
         i, j = np.unravel_index(int(np.argmax(scores)), scores.shape)
-        best = float(np.exp(log_n[i])), float(np.exp(log_d[j])), float(scores[i, j])
-        log_n, log_d = (
-            np.linspace(axis[max(k - 1, 0)], axis[min(k + 1, axis.size - 1)], _ZOOM_POINTS)
-            for axis, k in ((log_n, int(i)), (log_d, int(j)))
-        )
+        best = float(density[i]), float(length[j]), float(scores[i, j])
+        density, length = around(density, int(i)), around(length, int(j))
     return best
 
 
 def best_bulk_score(candidate: Candidate, duty: Duty, dopings: tuple[float, float], shape: str) -> float:
     """Score of coarse-grained material (size = ∞) at its own best doping."""
-    log_n = log_axis(dopings, _MAP_DOPINGS)
+    density = np.geomspace(*dopings, _MAP_DOPINGS)
     for _ in range(_ZOOMS):
-        scores = score(candidate, duty, np.exp(log_n), np.inf, shape)
-        i = int(np.argmax(scores))
-        doping = float(np.exp(log_n[i]))
-        log_n = np.linspace(log_n[max(i - 1, 0)], log_n[min(i + 1, log_n.size - 1)], _ZOOM_POINTS)
+        i = int(np.argmax(score(candidate, duty, density, np.inf, shape)))
+        doping, density = float(density[i]), around(density, i)
     return float(score(candidate, duty, doping, np.inf, shape, _FINE_NODES, _FINE_ROUNDS))
 
 
@@ -163,12 +157,12 @@ def window(
     candidate: Candidate, duty: Duty, doping: float, size: float, sizes: tuple[float, float], shape: str
 ) -> tuple[float, float, bool]:
     """Sizes around the best that keep WINDOW_SHARE of its score, and whether an end is a limit of the range."""
-    log_d = np.sort(np.append(log_axis(sizes, _WINDOW_SIZES), np.log(size)))
-    return window_of(log_d, score(candidate, duty, doping, np.exp(log_d), shape))
+    length = np.sort(np.append(np.geomspace(*sizes, _WINDOW_SIZES), size))
+    return window_of(length, score(candidate, duty, doping, length, shape))
 
 
-def window_of(log_size: Array, scores: Array) -> tuple[float, float, bool]:
-    """Window of a score curve over ln(size); its ends are interpolated between samples."""
+def window_of(size: Array, scores: Array) -> tuple[float, float, bool]:
+    """Window of a score curve over ascending sizes; its ends are interpolated in ln(size) between samples."""
     best = int(np.argmax(scores))
     level = WINDOW_SHARE * scores[best]
     outside = np.flatnonzero(scores < level)
@@ -176,10 +170,10 @@ def window_of(log_size: Array, scores: Array) -> tuple[float, float, bool]:
 
     def crossing(out: int, kept: int) -> float:
         share = (level - scores[out]) / (scores[kept] - scores[out])
-        return float(np.exp(log_size[out] + share * (log_size[kept] - log_size[out])))
+        return float(size[out] * (size[kept] / size[out]) ** share)
 
-    low = crossing(below[-1], below[-1] + 1) if below.size else float(np.exp(log_size[0]))
-    high = crossing(above[0], above[0] - 1) if above.size else float(np.exp(log_size[-1]))
+    low = crossing(below[-1], below[-1] + 1) if below.size else float(size[0])
+    high = crossing(above[0], above[0] - 1) if above.size else float(size[-1])
     return low, high, not (below.size and above.size)
 
 

@@ -29,6 +29,11 @@ Array = NDArray[np.float64]
 Shape = Literal["grain", "wire", "film"]
 SHAPES: tuple[Shape, ...] = get_args(Shape)
 
+#: what can be asked, SI: beyond these the formulas still run but mean nothing
+COLDEST, HOTTEST = 2.0, 3000.0
+THINNEST, DENSEST = 1e12, 1e29
+SMALLEST, LARGEST = 1e-10, 1.0
+
 #: design points of one block: memory grows with the block, not with the map
 _BLOCK = 20_000
 
@@ -110,14 +115,9 @@ def evaluate(
     """
     if shape not in SHAPES:
         raise InputError(f"value '{shape}' is not allowed; {nearest(shape, SHAPES)}", key="shape")
-    t, n, d = (
-        _positive(value, key, infinite)
-        for value, key, infinite in (
-            (temperature, "temperature", False),
-            (doping, "doping", False),
-            (size, "size", True),
-        )
-    )
+    t = _within(temperature, "temperature", COLDEST, HOTTEST, "K")
+    n = _within(doping, "doping", THINNEST, DENSEST, "1/m³")
+    d = _within(size, "size", SMALLEST, LARGEST, "m", infinite=True)
     rank = max(t.ndim, n.ndim, d.ndim)
     t, n, d = (np.reshape(a, (1,) * (rank - a.ndim) + a.shape) for a in (t, n, d))
     parts = _evaluate_blocks(crystal(candidate), t, n, d, shape)
@@ -126,12 +126,13 @@ def evaluate(
     return Properties(t, n, d, shape, **parts)
 
 
-def _positive(value: ArrayLike, key: str, infinite: bool) -> Array:
+def _within(value: ArrayLike, key: str, low: float, high: float, unit: str, *, infinite: bool = False) -> Array:
     array = np.asarray(value, dtype=float)
-    allowed = (array > 0) if infinite else (array > 0) & np.isfinite(array)
+    allowed = ((array >= low) & (array <= high)) | (infinite & np.isposinf(array))
     if not np.all(allowed):
         bad = array[~allowed].flat[0]
-        raise InputError(f"value {bad} is not allowed; above 0{'' if infinite else ' and finite'}", key=key)
+        or_bulk = ", or infinite" if infinite else ""
+        raise InputError(f"value {bad:g} {unit} is not allowed; {low:g} to {high:g} {unit}{or_bulk}", key=key)
     return array
 
 

@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING, Any, NoReturn
 import click
 
 from legwright.base.errors import InputError, NothingFeasible, nearest
+from legwright.base.version import VERSION
 
 if TYPE_CHECKING:
     from legwright.show.records import Record
@@ -62,7 +63,7 @@ _shape = click.option("--shape", default="grain", show_default=True, metavar="gr
 
 
 @click.group(cls=_Verbs, context_settings={"help_option_names": ["-h", "--help"]})
-@click.version_option(package_name="legwright")
+@click.version_option(VERSION)
 def _cli() -> None:
     """Which thermoelectric material, at which size and doping, is worth making into a leg."""
 
@@ -219,6 +220,8 @@ def _publish(
     from legwright.base.files import write_whole
     from legwright.show import records
 
+    if csv_file == Path():
+        raise InputError("needs the name of a file", key="--csv")
     if csv_file is not None:
         write_whole(csv_file, records.as_csv(rows))
     if as_json:
@@ -238,6 +241,9 @@ def run(arguments: list[str]) -> int:
         done = _cli.main(args=arguments, prog_name="legwright", standalone_mode=False)
     except InputError as error:
         return _refuse(str(error))
+    except click.exceptions.NoArgsIsHelpError as error:
+        click.echo(error.format_message())
+        return 0
     except click.ClickException as error:
         return _refuse(error.format_message())
     except NothingFeasible as error:

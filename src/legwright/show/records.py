@@ -9,6 +9,7 @@ from typing import Any
 
 from legwright.base.flags import MEANINGS
 from legwright.base.units import CM2, MICRO, NM, PER_CM3
+from legwright.base.version import VERSION
 from legwright.candidate.hazards import cautions
 from legwright.candidate.library import Candidate
 from legwright.candidate.model import numbers
@@ -128,9 +129,7 @@ def notes(flags: Iterable[str], candidates: Iterable[Candidate]) -> Record:
 
 def as_json(verb: str, content: Record) -> str:
     """One strict JSON object: no NaN, no infinity."""
-    from legwright import __version__
-
-    whole = {"schema": SCHEMA, "legwright": __version__, "verb": verb, **content}
+    whole = {"schema": SCHEMA, "legwright": VERSION, "verb": verb, **content}
     return json.dumps(whole, allow_nan=False, ensure_ascii=False, indent=2) + "\n"
 
 

@@ -11,14 +11,17 @@ from rich.table import Table
 from rich.text import Text
 
 Record = Mapping[str, Any]
-_NARROWEST = 150
+#: columns that a table gets off a terminal; Markdown rows must not fold at all
+_OFF_TERMINAL, _UNFOLDED = 150, 100_000
 
 
 def console(markdown: bool) -> Console:
     """A console on stdout; wide enough for the tables when nothing says how wide the screen is."""
-    out = Console(highlight=False, no_color=True if markdown else None, soft_wrap=markdown)
-    if not out.is_terminal or markdown:
-        out = Console(highlight=False, width=max(out.width, _NARROWEST), no_color=True, soft_wrap=markdown)
+    if markdown:
+        return Console(highlight=False, width=_UNFOLDED, no_color=True, soft_wrap=True)
+    out = Console(highlight=False)
+    if not out.is_terminal:
+        out = Console(highlight=False, width=max(out.width, _OFF_TERMINAL), no_color=True)
     return out
 
 
