@@ -64,5 +64,6 @@ def bipolar_heat(
     both = (one > 0) & (other > 0)
     safe_one, safe_other = np.where(both, one, 1.0), np.where(both, other, 1.0)
     gap = np.asarray(l1_one) / safe_one - np.asarray(l1_other) / safe_other
-    pairs = 1 / (1 / safe_one + 1 / safe_other)
+    fewer, more = np.minimum(safe_one, safe_other), np.maximum(safe_one, safe_other)
+    pairs = fewer / (1 + fewer / more)
     return np.asarray(np.where(both, pairs * gap**2 / np.asarray(temperature), 0.0))
