@@ -30,7 +30,7 @@ def conductivity(
     *,
     doping: float = 0.0,
     carriers: lattice.Carriers | None = None,
-    count: int = 32,
+    count: int = 128,
 ) -> float:
     """Acoustic conductivity at one point."""
     mesh, t = lattice.modes(phonons, count), np.array(float(temperature))
@@ -156,9 +156,9 @@ def test_normal_processes_change_nothing_where_all_modes_resist_alike(ratio, mak
     # κ = (1/3) C v² τ_R whatever the normal rate (Callaway 1959)
     phonons, v, rate = make_phonons(), 5000.0, 3e10
     mesh = lattice.modes(phonons)
-    straight = replace(mesh, omega=v * np.stack([mesh.q, mesh.q]), velocity=np.full((2, 32), v))
+    straight = replace(mesh, omega=v * np.stack([mesh.q, mesh.q]), velocity=np.full(mesh.velocity.shape, v))
     t = np.array(200.0)
-    zero = np.zeros((2, 32))
+    zero = np.zeros(mesh.velocity.shape)
     rates = lattice.Rates(
         umklapp=zero + rate, defects=zero, carriers=zero, normal=ratio * rate * (straight.omega / 1e13) ** 2
     )
@@ -168,8 +168,9 @@ def test_normal_processes_change_nothing_where_all_modes_resist_alike(ratio, mak
 
 
 def test_overwhelming_normal_processes_reach_zimans_limit(make_phonons):
-    # Ziman (1960): κ = [Σ∫ C v q/ω]²/Σ∫ C (q/ω)²/τ_R, the least of the family
-    phonons = make_phonons()
+    # Ziman (1960): κ = [Σ∫ C v q/ω]²/Σ∫ C (q/ω)²/τ_R, the least of the family. Umklapp alone resists: the point
+    # defects of a sine branch would make the lower integral diverge, as the logarithm, at the zone edge
+    phonons = make_phonons(**PURE)
     mesh, t = lattice.modes(phonons), np.array(150.0)
     resist = lattice.crystal_rates(phonons, mesh, t, np.array(0.0), None).resistive
     heat, slowness = mesh.weight * lattice.mode_heat(mesh.omega, t), mesh.q / mesh.omega
@@ -225,7 +226,7 @@ def callaway_by_quadrature(phonons: lattice.Phonons, t: float, d: float, doping:
 def test_callaway_matches_plain_quadrature(t, d, make_phonons):
     phonons = make_phonons()
     exact = callaway_by_quadrature(phonons, t, d, 1e26)
-    # 32 modes of this alloy leave 1e-10 at worst at these points (measured against 512)
+    # the modes leave 1e-12 at worst at these points (measured against 512); the quadratures 1e-9
     assert conductivity(phonons, t, d, doping=1e26) == pytest.approx(exact, rel=1e-8)
 
 
@@ -247,19 +248,19 @@ def mesh_error(phonons: lattice.Phonons, count: int) -> float:
 def test_doubling_the_modes_squares_the_error_of_an_alloy(make_phonons):
     # Gauss–Legendre on an analytic integrand converges geometrically: e(2n) ≈ e(n)²
     at_16, at_32, at_64 = (mesh_error(make_phonons(), count) for count in (16, 32, 64))
-    assert 1e-6 < at_16 < 1e-4
+    assert 1e-6 < at_16 < 1e-3
     assert at_32 < 10 * at_16**2
     assert at_64 < 2e-14  # rounding of the sum
 
 
-def test_a_nearly_pure_crystal_is_the_hard_case_of_the_mesh(make_phonons):
-    # few defects and the diverging density of states at the zone edge make a thin layer there:
-    # 1.5e-3, 3.4e-5, 1.5e-8 were measured with 16, 32 and 64 modes
+def test_a_nearly_pure_crystal_is_no_harder(make_phonons):
+    # few defects and the diverging density of states at the zone edge make a thin layer there, where the mesh
+    # is close: 1e-4, 1.3e-9 and 6e-15 were measured with 16, 32 and 64 modes
     clean = make_phonons(mass_variance=2e-4, size_variance=0.0)
     at_16, at_32, at_64 = (mesh_error(clean, count) for count in (16, 32, 64))
-    assert at_16 < 2e-3
-    assert at_32 < 5e-5
-    assert at_64 < 3e-8
+    assert at_16 < 2e-4
+    assert at_32 < 3e-9
+    assert at_64 < 2e-14
 
 
 # ---- what each process does

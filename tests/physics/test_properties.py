@@ -37,7 +37,8 @@ def test_blocks_give_the_same_bits(name, shape, monkeypatch):
     whole = evaluate(candidate, TEMPERATURE, DOPING, SIZE, shape)
     assert whole.zt.shape == (5, 4, 4)
     for block in (1, 3, 17):
-        monkeypatch.setattr(properties, "_BLOCK", block)
+        monkeypatch.setattr(properties, "_STATES", block)
+        monkeypatch.setattr(properties, "_POINTS", 2 * block)
         assert same_bits(whole, evaluate(candidate, TEMPERATURE, DOPING, SIZE, shape))
 
 

@@ -15,6 +15,7 @@ from legwright.physics import bands as kane
 from legwright.physics import carrier_scattering as scattering
 from legwright.physics.boundaries import film_suppression, grain_suppression, wire_suppression
 from legwright.physics.fermi import softplus_mesh
+from legwright.physics.spectra import PathMesh, through
 
 Array = NDArray[np.float64]
 
@@ -240,7 +241,10 @@ def bulk_flow(electrons: Electrons, temperature: Array, doping: Array, filling: 
 
 
 def transport_integrals(flow: Flow, size: Array, shape: str, reflection: float) -> Integrals:
-    """L_0, L_1, L_2 per band, with each energy held back by grains, a wire's wall or a film's faces."""
+    """L_0, L_1, L_2 per band, with each energy held back by grains, a wire's wall or a film's faces.
+
+    Energy by energy, a last axis of energies for each size: for few points, and the measure of `integrals_at`.
+    """
     d = size[..., None, None]
     if not np.all(np.isinf(size)):
         flowing = flow.spectral * _held_back(flow.mean_free_path, d, shape, reflection)
@@ -248,6 +252,31 @@ def transport_integrals(flow: Flow, size: Array, shape: str, reflection: float) 
         flowing = np.broadcast_to(flow.spectral, np.broadcast_shapes(flow.spectral.shape, d.shape))
     first = flowing * flow.excess
     return Integrals(np.sum(flowing, axis=-1), np.sum(first, axis=-1), np.sum(first * flow.excess, axis=-1))
+
+
+#: mean free paths that carriers of any candidate may have
+PATHS = PathMesh(1e-11, 1e-4, 10)
+
+
+def path_spectrum(electrons: Electrons, flow: Flow) -> Array:
+    """L_0, L_1, L_2 of the conduction and then of the valence bands by mean free path: (..., 6, paths)."""
+    sides = []
+    for side in (1.0, -1.0):
+        bands = electrons.side == side
+        spectral, excess, path = (
+            part[..., bands, :].reshape(*part.shape[:-2], -1)
+            for part in (flow.spectral, flow.excess, flow.mean_free_path)
+        )
+        first = spectral * excess
+        sides.append(PATHS.gather(path, np.stack([spectral, first, first * excess], axis=-2)))
+    return np.concatenate(sides, axis=-2)
+
+
+def integrals_at(spectrum: Array, size: Array, shape: str, reflection: float) -> tuple[Integrals, Integrals]:
+    """Transport integrals of the conduction and of the valence bands at each size, from a path spectrum."""
+    sums = through(spectrum, _held_back(PATHS.paths, size[..., None], shape, reflection))
+    up, down = (Integrals(*np.moveaxis(sums[..., part], -1, 0)) for part in (slice(0, 3), slice(3, 6)))
+    return up, down
 
 
 def _held_back(mean_free_path: Array, size: Array, shape: str, reflection: float) -> Array:

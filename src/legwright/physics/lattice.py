@@ -14,12 +14,13 @@ from numpy.typing import NDArray
 from legwright.base.units import HBAR, K_B
 from legwright.physics import phonon_scattering as scattering
 from legwright.physics.boundaries import film_suppression, grain_mean_free_path, wire_suppression
+from legwright.physics.spectra import PathMesh, through
 
 Array = NDArray[np.float64]
 
 #: one longitudinal branch, two transverse ones that are alike
 DEGENERACY = np.array([1.0, 2.0])
-_MODES = 32
+_MODES = 128
 
 
 @dataclass(frozen=True)
@@ -95,10 +96,14 @@ class Modes:
 
 @cache
 def _unit_mesh(count: int) -> tuple[Array, Array]:
-    """Gauss–Legendre in u with q = q_D u²: close where heat of long waves sits."""
+    """Gauss–Legendre in u with q = q_D (1 − cos πu)/2: close where long waves and standing waves sit.
+
+    With 128 nodes κ of every library candidate is within 1e-9 from 300 K up, for any size and grain law; below,
+    the edge of carrier scattering at twice the Fermi wave number sharpens: 4e-6 at 150 K, 1 % at 50 K.
+    """
     nodes, weights = np.polynomial.legendre.leggauss(count)
-    u = 0.5 * (nodes + 1)
-    return u**2, u * weights
+    angle = 0.5 * np.pi * (nodes + 1)
+    return 0.5 * (1 - np.cos(angle)), 0.25 * np.pi * np.sin(angle) * weights
 
 
 def modes(phonons: Phonons, count: int = _MODES) -> Modes:
@@ -205,6 +210,49 @@ def acoustic_conductivity(
     lost = np.sum(shared * slowness * resistive, axis=(-2, -1))
     with np.errstate(invalid="ignore"):
         carried = np.where(drift > 0, drift**2 / np.where(lost > 0, lost, np.inf), 0.0)
+    return np.asarray(direct + carried)
+
+
+#: mean free paths of phonons, down to the standing waves of the zone edge
+PATHS = PathMesh(1e-13, 1e2, 17)
+
+
+@dataclass(frozen=True)
+class HeatSpectrum:
+    """Callaway's three sums by mean free path (..., 3, paths), and the part of the third that no wall touches."""
+
+    sums: Array
+    untouched: Array
+
+
+def heat_spectrum(phonons: Phonons, mesh: Modes, rates: Rates, temperature: Array, shape: str) -> HeatSpectrum:
+    """What `acoustic_conductivity` sums over modes, gathered by path; in the third sum 1/τ_R = 1/τ_C − 1/τ_N."""
+    heat = mesh.weight * mode_heat(mesh.omega, temperature[..., None, None])
+    normal = rates.normal
+    lifetime = 1 / (rates.resistive + normal)
+    slowness = mesh.q / mesh.omega
+    path = mesh.velocity * lifetime
+    if shape == "grain":
+        ratio = mesh.omega / phonons.top_frequency[:, None]
+        path = path / grain_mean_free_path(1.0, ratio, phonons.grain_exponent, phonons.grain_prefactor)
+    shared = heat * slowness * lifetime * normal
+    parts = [heat * mesh.velocity**2 * lifetime, shared * mesh.velocity, shared * slowness * normal]
+    values = np.stack(parts, axis=-3)
+    flat = values.reshape(*values.shape[:-2], -1)
+    untouched = np.sum((heat * slowness**2 * normal).reshape(*flat.shape[:-2], -1), axis=-1)
+    return HeatSpectrum(PATHS.gather(path.reshape(*flat.shape[:-2], -1), flat), untouched)
+
+
+def conductivity_at(spectrum: HeatSpectrum, size: Array, shape: str) -> Array:
+    """`acoustic_conductivity` at each size, W/(m K), from a heat spectrum."""
+    crossed = PATHS.paths / size[..., None]
+    if shape == "grain":
+        kept = 1 / (1 + crossed)
+    else:
+        kept = (wire_suppression if shape == "wire" else film_suppression)(crossed)
+    direct, drift, held = np.moveaxis(through(spectrum.sums, kept), -1, 0)
+    lost = spectrum.untouched - held
+    carried = np.divide(drift**2, lost, out=np.zeros_like(direct), where=(drift > 0) & (lost > 0))
     return np.asarray(direct + carried)
 
 

@@ -12,12 +12,13 @@ from legwright.base.errors import InputError, nearest
 from legwright.base.units import CM2, MICRO, NM, PER_CM3
 from legwright.candidate.library import Candidate
 from legwright.physics import moments
-from legwright.physics.carriers import bulk_flow, fill, transport_integrals
+from legwright.physics.carriers import bulk_flow, fill, integrals_at, path_spectrum
 from legwright.physics.crystal import Crystal, crystal, majority_carriers
 from legwright.physics.lattice import (
-    acoustic_conductivity,
     amorphous_minimum,
+    conductivity_at,
     crystal_rates,
+    heat_spectrum,
     modes,
     optical_conductivity,
 )
@@ -34,8 +35,8 @@ COLDEST, HOTTEST = 2.0, 3000.0
 THINNEST, DENSEST = 1e12, 1e29
 SMALLEST, LARGEST = 1e-10, 1.0
 
-#: design points of one block: memory grows with the block, not with the map
-_BLOCK = 20_000
+#: states (T, doping) and design points of one block: memory grows with the block, not with the map
+_STATES, _POINTS = 256, 400_000
 
 
 @dataclass(frozen=True)
@@ -138,10 +139,14 @@ def _within(value: ArrayLike, key: str, low: float, high: float, unit: str, *, i
 
 def _evaluate_blocks(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> dict[str, Array]:
     """Split the longest axis until a block is small; each point's sums do not depend on the split."""
-    whole = np.broadcast_shapes(t.shape, n.shape, d.shape)
-    if int(np.prod(whole)) <= _BLOCK or not whole:
+    states = np.broadcast_shapes(t.shape, n.shape)
+    whole = np.broadcast_shapes(states, d.shape)
+    if int(np.prod(states)) > _STATES:
+        axis = int(np.argmax(states))
+    elif int(np.prod(whole)) > _POINTS:
+        axis = int(np.argmax(whole))
+    else:
         return _evaluate_block(one, t, n, d, shape)
-    axis = int(np.argmax(whole))
     middle = whole[axis] // 2
 
     def half(a: Array, part: slice) -> Array:
@@ -158,25 +163,24 @@ def _evaluate_blocks(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> 
 
 def _evaluate_block(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> dict[str, Array]:
     electrons, phonons = one.electrons, one.phonons
-    filling = fill(electrons, t, n)
     filled_t, filled_n = np.broadcast_arrays(t, n)
-    flow = bulk_flow(electrons, filled_t, filled_n, filling)
-    sums = transport_integrals(flow, d, shape, electrons.reflection)
-    up, down = sums.over(electrons.side > 0), sums.over(electrons.side < 0)
+    filling = fill(electrons, filled_t, filled_n)
+    spectrum = path_spectrum(electrons, bulk_flow(electrons, filled_t, filled_n, filling))
+    up, down = integrals_at(spectrum, d, shape, electrons.reflection)
     bipolar = moments.bipolar_heat(up.l0, up.l1, down.l0, down.l1, t)
     one_sided = [moments.electronic_heat(part.l0, part.l1, part.l2, t) for part in (up, down)]
-    majority = electrons.majority
     mesh = modes(phonons)
     rates = crystal_rates(phonons, mesh, t, n, majority_carriers(electrons, filled_t, filling.eta))
-    lattice = acoustic_conductivity(phonons, mesh, rates, t, d, shape) + optical_conductivity(phonons, t)
+    acoustic = conductivity_at(heat_spectrum(phonons, mesh, rates, filled_t, shape), d, shape)
+    moving = up if electrons.carrier > 0 else down
     parts = {
         "electrical_conductivity": moments.conductivity(up.l0 + down.l0),
         "seebeck": moments.seebeck(up.l0 + down.l0, up.l1 + down.l1, t),
         "electronic_thermal_conductivity": one_sided[0] + one_sided[1] + bipolar,
         "bipolar_thermal_conductivity": bipolar,
-        "lattice_thermal_conductivity": lattice,
+        "lattice_thermal_conductivity": acoustic + optical_conductivity(phonons, t),
         "amorphous_minimum": amorphous_minimum(phonons, t),
-        "mobility": moments.mobility(sums.over(majority).l0, np.sum(filling.density[..., majority], axis=-1)),
+        "mobility": moments.mobility(moving.l0, np.sum(filling.density[..., electrons.majority], axis=-1)),
     }
     whole = np.broadcast_shapes(t.shape, n.shape, d.shape)
     return {name: np.broadcast_to(part, whole) for name, part in parts.items()}
