@@ -17,12 +17,16 @@ from scipy.optimize import brentq
 from legwright.physics import carriers, moments
 from legwright.physics.fermi import softplus_mesh
 
+#: pytest adds an absolute 1e-12 of its own, which is large among SI figures
+near = partial(pytest.approx, abs=0.0)
+
 EV, M_E, HBAR, K_B = constants.e, constants.m_e, constants.hbar, constants.k
 KELVIN_VOLT = constants.k / constants.e
 
 #: the energy mesh leaves 4e-10 in each integral, up to 2.5 times as much near the edge (test_fermi.py);
-#: Seebeck coefficient and Lorenz number are differences of two or three such integrals: 6e-9 (measured)
-MESH = 1e-8
+#: Seebeck coefficient and Lorenz number are differences of two or three such integrals, which weigh the ends of
+#: the window more: 1.2e-8 at worst (measured)
+MESH = 2e-8
 
 
 def conduction_states(mass: float, temperature: float) -> float:
@@ -53,9 +57,9 @@ def test_acoustic_band_follows_its_closed_forms(eta, make_electrons, solve, exac
     electrons = make_electrons()
     filling, sums = solve(electrons, t, density)
     _, seebeck, lorenz = coefficients((filling, sums), t)
-    assert filling.eta[0] == pytest.approx(eta, abs=2e-9 * f_half / slope)  # 1e-9 in the density
-    assert seebeck == pytest.approx(-KELVIN_VOLT * (2 * f1 / f0 - eta), rel=MESH)
-    assert lorenz == pytest.approx(KELVIN_VOLT**2 * (6 * f2 / f0 - (2 * f1 / f0) ** 2), rel=MESH)
+    assert filling.eta[0] == near(eta, abs=2e-9 * f_half / slope)  # 1e-9 in the density
+    assert seebeck == near(-KELVIN_VOLT * (2 * f1 / f0 - eta), rel=MESH)
+    assert lorenz == near(KELVIN_VOLT**2 * (6 * f2 / f0 - (2 * f1 / f0) ** 2), rel=MESH)
 
 
 def test_acoustic_band_at_its_edge(make_electrons, solve, exact_fermi):
@@ -71,10 +75,10 @@ def test_lorenz_number_at_both_ends(make_electrons, solve):
     # CODATA: 2 (k/e)² = 1.4852e-8 for few carriers, (π²/3)(k/e)² = 2.4430e-8 for many
     assert f"{2 * KELVIN_VOLT**2:.4e}" == "1.4852e-08"
     assert f"{math.pi**2 / 3 * KELVIN_VOLT**2:.4e}" == "2.4430e-08"
-    few = coefficients(solve(make_electrons(), 1000.0, 1e20), 1000.0)[2]
-    many = coefficients(solve(make_electrons(), 4.0, 1e28), 4.0)[2]
-    assert few == pytest.approx(2 * KELVIN_VOLT**2, rel=MESH)
-    assert many == pytest.approx(math.pi**2 / 3 * KELVIN_VOLT**2, rel=MESH)
+    few = coefficients(solve(make_electrons(), 1000.0, 1e16), 1000.0)[2]
+    many = coefficients(solve(make_electrons(), 2.0, 1e29), 2.0)[2]
+    assert few == near(2 * KELVIN_VOLT**2, rel=MESH)
+    assert many == near(math.pi**2 / 3 * KELVIN_VOLT**2, rel=MESH)
 
 
 @pytest.mark.parametrize("eta", [-12.0, 0.0, 20.0])
@@ -88,7 +92,7 @@ def test_acoustic_mobility_is_that_of_bardeen_and_shockley(eta, make_electrons, 
     few = 2 * math.sqrt(2 * math.pi) / 3 * EV * HBAR**4 * 1.5e11
     few /= valley_mass**1.5 * 0.25 * M_E * (K_B * t) ** 1.5 * (9 * EV) ** 2
     sigma, _, _ = coefficients(solve(electrons, t, density), t)
-    assert sigma / (EV * density) == pytest.approx(few * f0 / f_half, rel=MESH)
+    assert sigma / (EV * density) == near(few * f0 / f_half, rel=MESH)
 
 
 def test_alloy_mobility_alone(make_electrons, solve):
@@ -101,11 +105,9 @@ def test_alloy_mobility_alone(make_electrons, solve):
         states = math.sqrt(2) * valley_mass**1.5 * math.sqrt(K_B * t) / (math.pi**2 * HBAR**3)
         tau = HBAR / (math.pi * 0.3 * 0.7 * 2e-29 * (0.7 * EV) ** 2 * states)
         sigma, seebeck, _ = coefficients(solve(electrons, t, 1e16), t)
-        assert sigma / (EV * 1e16) == pytest.approx(
-            4 / (3 * math.sqrt(math.pi)) * EV * tau / (0.25 * M_E), rel=MESH
-        )
+        assert sigma / (EV * 1e16) == near(4 / (3 * math.sqrt(math.pi)) * EV * tau / (0.25 * M_E), rel=MESH)
         eta = math.log(1e16 / conduction_states(0.8 * M_E, t))
-        assert seebeck == pytest.approx(-KELVIN_VOLT * (2 - eta), rel=MESH)  # e^η = 5e-10 is the next term
+        assert seebeck == near(-KELVIN_VOLT * (2 - eta), rel=MESH)  # e^η = 5e-10 is the next term
 
 
 def test_impurities_in_a_dense_cold_gas_follow_mott(make_electrons, solve):
@@ -122,8 +124,8 @@ def test_impurities_in_a_dense_cold_gas_follow_mott(make_electrons, solve):
     slope = 3 - (b / (1 + b)) ** 2 / (math.log1p(b) - b / (1 + b))
     assert eta > 80
     assert slope > 2.3
-    assert seebeck == pytest.approx(-(math.pi**2) / 3 * KELVIN_VOLT * slope / eta, rel=20 / eta**2)
-    assert lorenz == pytest.approx(math.pi**2 / 3 * KELVIN_VOLT**2, rel=20 / eta**2)
+    assert seebeck == near(-(math.pi**2) / 3 * KELVIN_VOLT * slope / eta, rel=20 / eta**2)
+    assert lorenz == near(math.pi**2 / 3 * KELVIN_VOLT**2, rel=20 / eta**2)
 
 
 def test_strongly_screened_impurities_scatter_like_point_defects(make_electrons, solve, exact_fermi):
@@ -141,9 +143,7 @@ def test_strongly_screened_impurities_scatter_like_point_defects(make_electrons,
     few = 4 / (3 * math.sqrt(math.pi)) * EV * tau / (0.25 * M_E)
     crowd = float(exact_fermi(0, eta) / exact_fermi(0.5, eta))
     assert b < 2e-3
-    assert sigma / (EV * doping) == pytest.approx(
-        few * crowd, rel=4 * b
-    )  # next term: (4/3) b ⟨ε⟩/k_B T, ⟨ε⟩ = 2 k_B T
+    assert sigma / (EV * doping) == near(few * crowd, rel=4 * b)  # next term: (4/3) b ⟨ε⟩/k_B T, ⟨ε⟩ = 2 k_B T
 
 
 def test_seebeck_has_the_sign_of_the_carrier(make_electrons, solve):
@@ -152,8 +152,8 @@ def test_seebeck_has_the_sign_of_the_carrier(make_electrons, solve):
         negative = coefficients(solve(electrons, 500.0, n), 500.0)
         positive = coefficients(solve(holes, 500.0, n), 500.0)
         assert negative[1] < 0
-        assert positive[1] == pytest.approx(-negative[1], rel=1e-12)
-        assert positive[0] == pytest.approx(negative[0], rel=1e-12)
+        assert positive[1] == near(-negative[1], rel=1e-12)
+        assert positive[0] == near(negative[0], rel=1e-12)
 
 
 @given(t=st.floats(20, 1500), log_n=st.floats(21, 28), xi=st.floats(1, 40), mass=st.floats(0.05, 3))
@@ -193,9 +193,9 @@ def test_density_of_a_parabolic_band(eta, make_electrons, exact_fermi):
     t, electrons = 500.0, make_electrons()
     exact = conduction_states(0.8 * M_E, t) * float(exact_fermi(0.5, eta))
     _, density, states = carriers._occupied(electrons, np.array(t), np.array(eta * K_B * t))
-    assert density[0] == pytest.approx(exact, rel=2e-9)
+    assert density[0] == near(exact, rel=2e-9)
     slope = conduction_states(0.8 * M_E, t) * float(exact_fermi(-0.5, eta)) / (K_B * t)
-    assert states[0] == pytest.approx(slope, rel=2e-9)
+    assert states[0] == near(slope, rel=2e-9)
 
 
 @pytest.mark.parametrize("eta", [-8.0, 0.0, 12.0])
@@ -210,7 +210,7 @@ def test_density_of_a_kane_band(eta, make_electrons):
 
     exact = piecewise(filled, eta)
     _, density, _ = carriers._occupied(make_electrons(nonparabolicity=alpha), np.array(t), np.array(eta * kt))
-    assert density[0] == pytest.approx(exact, rel=2e-9)
+    assert density[0] == near(exact, rel=2e-9)
 
 
 def test_intrinsic_density(make_electrons):
@@ -220,20 +220,20 @@ def test_intrinsic_density(make_electrons):
     pairs *= math.exp(-0.4 * EV / (2 * K_B * t))
     filling = carriers.fill(make_electrons(**TWO_BANDS), np.array(t), np.array(1e-6 * pairs))
     # degeneracy, e^η/2^(3/2) = 1e-3 at η = −5.8
-    assert filling.density == pytest.approx(pairs, rel=2e-3)
+    assert filling.density == near(pairs, rel=2e-3)
 
 
 def test_masses_grow_with_temperature_and_edges_move(make_electrons, solve):
     electrons = make_electrons(mass_exponent=0.5, mass_scale=1.2)
     dos, inertia = carriers.masses(electrons, np.array(1200.0))
-    assert dos == pytest.approx(0.8 * M_E * 1.2 * 2, rel=1e-14)
-    assert inertia == pytest.approx(0.25 * M_E * 1.2 * 2, rel=1e-14)
+    assert dos == near(0.8 * M_E * 1.2 * 2, rel=1e-14)
+    assert inertia == near(0.25 * M_E * 1.2 * 2, rel=1e-14)
     # a lone band that moves takes its chemical potential along
     still, moved = make_electrons(), make_electrons(edge=0.7 * EV, edge_alpha=4e-4 * EV, edge_beta=200.0)
-    assert solve(moved, 600.0, 1e25)[0].eta == pytest.approx(solve(still, 600.0, 1e25)[0].eta, rel=1e-12)
+    assert solve(moved, 600.0, 1e25)[0].eta == near(solve(still, 600.0, 1e25)[0].eta, rel=1e-12)
     shift = 0.7 * EV - 4e-4 * EV * 600**2 / 800
     gap = solve(moved, 600.0, 1e25)[0].chemical_potential - solve(still, 600.0, 1e25)[0].chemical_potential
-    assert gap == pytest.approx(shift, rel=1e-12)
+    assert gap == near(shift, rel=1e-12)
 
 
 # ---- the whole of it against plain quadrature
@@ -339,11 +339,12 @@ def test_transport_matches_plain_quadrature(
     electrons = make_electrons(**mixture)
     exact = by_quadrature(electrons, temperature, doping)
     found = coefficients(solve(electrons, temperature, doping), temperature)
-    assert [float(x) for x in found] == pytest.approx(exact, rel=allowed)
+    assert [float(x) for x in found] == near(exact, rel=allowed)
     # a finer, longer mesh takes the difference away: what was left was the mesh, not the physics
+    # (the 24 nodes below the onset of emission stay, and leave 6e-9 at worst)
     monkeypatch.setattr(carriers, "softplus_mesh", partial(softplus_mesh, count=300, step=0.3))
     finer = coefficients(solve(electrons, temperature, doping), temperature)
-    assert [float(x) for x in finer] == pytest.approx(exact, rel=2e-9)
+    assert [float(x) for x in finer] == near(exact, rel=1e-8)
 
 
 # ---- what each process does
@@ -376,7 +377,7 @@ def test_a_process_left_alone_is_what_plain_quadrature_says(kept, make_electrons
         alloy_fraction=electrons.alloy_fraction * alone.alloy_weight,
     )
     found = coefficients(solve(alone, 300.0, 2e25), 300.0)
-    assert [float(x) for x in found] == pytest.approx(by_quadrature(bare, 300.0, 2e25), rel=WITH_IMPURITIES)
+    assert [float(x) for x in found] == near(by_quadrature(bare, 300.0, 2e25), rel=WITH_IMPURITIES)
 
 
 def test_a_band_that_nothing_slows_is_refused(make_electrons, solve):
@@ -388,14 +389,14 @@ def test_lattice_scale_acts_on_the_majority_alone(make_electrons, solve):
     electrons = make_electrons(**(TWO_BANDS | HARD))
     _, before = solve(electrons, 700.0, 1e24)
     _, after = solve(replace(electrons, lattice_scale=2.0), 700.0, 1e24)
-    assert after.l0 / before.l0 == pytest.approx([0.5, 1.0], rel=1e-12)
+    assert after.l0 / before.l0 == near([0.5, 1.0], rel=1e-12)
 
 
 def test_heavy_doping_factor_interpolates_and_stays_level_outside(make_electrons):
     knots = ((math.log(1e24), math.log(1.0)), (math.log(1e26), math.log(4.0)))
     electrons = make_electrons(impurity_knots=knots)
     factor = electrons.heavy_doping_factor(np.array([1e20, 1e24, 1e25, 1e26, 1e28]))
-    assert factor == pytest.approx([1, 1, 2, 4, 4], rel=1e-12)
+    assert factor == near([1, 1, 2, 4, 4], rel=1e-12)
     assert np.array_equal(make_electrons().heavy_doping_factor(np.array([1e20, 1e28])), [1, 1])
 
 
@@ -405,7 +406,7 @@ def test_intervalley_scattering_fades_in_without_a_step(make_electrons, solve):
     faint = coefficients(
         solve(make_electrons(intervalley_field=1e3 * EV, intervalley_phonon=0.06 * EV), 300.0, 2e25), 300.0
     )
-    assert [float(x) for x in faint] == pytest.approx([float(x) for x in plain], rel=WITH_INTERVALLEY)
+    assert [float(x) for x in faint] == near([float(x) for x in plain], rel=WITH_INTERVALLEY)
 
 
 # ---- size
@@ -417,7 +418,7 @@ def test_large_bodies_are_bulk_and_small_ones_conduct_less(shape, make_electrons
     sizes = np.array([np.inf, 1e-2, 1e-5, 1e-7, 1e-8, 1e-9])
     _, sums = solve(electrons, 300.0, 2e25, sizes, shape)
     ratio = sums.l0[:, 0] / sums.l0[0, 0]
-    assert ratio[1] == pytest.approx(1, abs=1e-5)
+    assert ratio[1] == near(1, abs=1e-5)
     assert np.all(np.diff(ratio) < 0)
     assert ratio[-1] < 0.3
     # the sum as a whole: mean free paths of some nanometres feel a hundred nanometres by a few per cent
@@ -441,4 +442,4 @@ def test_fine_diffuse_wires_carry_ballistic_current(make_electrons, solve, exact
     n_c = conduction_states(0.8 * M_E, t)
     exact = EV**2 * d / 3 * n_c * 2 / math.sqrt(math.pi) * math.sqrt(2 / (0.25 * M_E * K_B * t)) * f0
     sigma, _, _ = coefficients(solve(electrons, t, n_c * f_half, d, "wire"), t)
-    assert sigma == pytest.approx(exact, rel=2e-3)  # ln Kn/Kn, Kn = 1e4
+    assert sigma == near(exact, rel=2e-3)  # ln Kn/Kn, Kn = 1e4

@@ -11,12 +11,16 @@ from legwright.base.reading import Table
 from legwright.candidate.number import Measure, measure
 
 Pure = Annotated[Measure, measure("1", 0)]
+Ratio = Annotated[Measure, measure("1", 0, above=True)]
+Dielectric = Annotated[Measure, measure("1", 1)]
 Fraction = Annotated[Measure, measure("1", 0, 1)]
 Signed = Annotated[Measure, measure("1")]
 Length = Annotated[Measure, measure("m", 0, above=True)]
 Volume = Annotated[Measure, measure("m^3", 0, above=True)]
 Mass = Annotated[Measure, measure("kg", 0, above=True)]
 Energy = Annotated[Measure, measure("J")]
+PhononEnergy = Annotated[Measure, measure("J", 0, above=True)]
+BarrierEnergy = Annotated[Measure, measure("J", 0)]
 EnergyPerKelvin = Annotated[Measure, measure("J/K")]
 PerEnergy = Annotated[Measure, measure("1/J", 0)]
 Kelvin = Annotated[Measure, measure("K", 0, above=True)]
@@ -73,7 +77,10 @@ class Cell(Table):
 
 
 class Band(Table):
-    """A Kane band. `edge` is its energy at 0 K; it moves by −edge_alpha T²/(T + edge_beta) (Varshni 1967)."""
+    """A Kane band. `edge` is its energy at 0 K; it moves by −edge_alpha T²/(T + edge_beta) (Varshni 1967).
+
+    `mass_ratio` is the mass along a valley over that across it; it bears on the Hall effect alone.
+    """
 
     label: str
     side: Side
@@ -83,6 +90,7 @@ class Band(Table):
     valleys: Pure
     dos_mass: Mass
     inertial_mass: Mass
+    mass_ratio: Ratio | None = None
     mass_exponent: Signed | None = None
     nonparabolicity: PerEnergy | None = None
     deformation_potential: Energy
@@ -99,18 +107,30 @@ class Band(Table):
 
 
 class Scattering(Table):
-    """What the carriers of all bands share."""
+    """What the carriers of all bands share. With `high_frequency_dielectric` they feel polar-optical phonons.
+
+    Deformation potentials fitted to mobility hold that scattering already: the two do not go together. `barrier`
+    is the height over the band edge of the majority, at every grain boundary.
+    """
 
     elastic_constant: Pressure
     dielectric_constant: Pure
+    high_frequency_dielectric: Dielectric | None = None
+    optical_phonon: PhononEnergy | None = None
     alloy_fraction: Fraction | None = None
     alloy_volume: Volume | None = None
     grain_reflection: Fraction | None = None
+    barrier: BarrierEnergy | None = None
 
     @model_validator(mode="after")
     def _paired(self) -> Scattering:
         if (self.alloy_fraction is None) != (self.alloy_volume is None):
             raise ValueError("alloy_fraction and alloy_volume go together")
+        high = self.high_frequency_dielectric
+        if high is not None and high.si >= self.dielectric_constant.si:
+            raise ValueError("high_frequency_dielectric must be below dielectric_constant")
+        if high is None and self.optical_phonon is not None:
+            raise ValueError("optical_phonon needs high_frequency_dielectric")
         return self
 
 
@@ -158,7 +178,10 @@ class Anchor(Table):
 
 
 class Doping(Table):
-    """Active densities that have been made, and the element that gives them."""
+    """Active densities that have been made, and the element that gives them.
+
+    With `solution_enthalpy` the highest density belongs to `solution_temperature` and falls below it.
+    """
 
     lowest: Density
     highest: Density
@@ -166,6 +189,14 @@ class Doping(Table):
     replaces: str
     dopant_size: Length | None = None
     host_size: Length | None = None
+    solution_enthalpy: Energy | None = None
+    solution_temperature: Kelvin | None = None
+
+    @model_validator(mode="after")
+    def _paired(self) -> Doping:
+        if (self.solution_enthalpy is None) != (self.solution_temperature is None):
+            raise ValueError("solution_enthalpy and solution_temperature go together")
+        return self
 
 
 class Service(Table):
@@ -215,6 +246,13 @@ class CandidateFile(Table):
         majority = "conduction" if self.carrier == "n" else "valence"
         if not any(band.side == majority for band in self.band):
             raise ValueError(f"carrier '{self.carrier}' needs a {majority} band")
+        if self.scattering.high_frequency_dielectric is not None:
+            for index, band in enumerate(self.band, start=1):
+                if band.deformation_potential.basis == "calibrated on bulk":
+                    raise ValueError(
+                        f"band[{index}].deformation_potential is calibrated on bulk and holds polar-optical "
+                        "scattering already: leave scattering.high_frequency_dielectric out, or take another one"
+                    )
         if self.doping.lowest.si >= self.doping.highest.si:
             raise ValueError("doping.lowest must be below doping.highest")
         hosts = {element for site in self.site for element in site.occupants}

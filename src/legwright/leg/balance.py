@@ -60,8 +60,9 @@ class Along:
 def march_down(material: LegMaterial, top: float, bottom: float, sign: int, w_top: Array, steps: int) -> Along:
     """Integrate d(w²)/dT = −2κρ − 2wT dS/dT from `top` down to `bottom` with w = ±√(w²) of the given sign.
 
-    Fourth-order Runge–Kutta in θ = √(T_top − T), in which the start from w = 0 (a temperature maximum inside
-    the leg) is smooth; the length by Simpson's rule on the same steps, an even number of them.
+    Fourth-order Runge–Kutta in θ = √(T_top − T): for w² where current flows at the top, for w itself from rest
+    (a temperature maximum inside the leg), where it is w that is smooth in θ. The length follows by Simpson's
+    rule on the same steps, an even number of them. From rest the length converges as steps^−2.5 only.
     w_top: |w| at the top (W/A), shape legs …; `w` has a first axis of steps + 1.
     """
     theta = np.sqrt(top - bottom) * np.linspace(0.0, 1.0, 2 * steps + 1)
@@ -69,9 +70,14 @@ def march_down(material: LegMaterial, top: float, bottom: float, sign: int, w_to
     kappa = material.thermal_conductivity(t)
     joule = kappa * material.resistivity(t)
     thomson = np.reshape(sign * t, (-1, *(1,) * (kappa.ndim - 1))) * material.seebeck(t, 1)
+    from_rest = not np.any(w_top)
 
     def slope(i: int, y: Array) -> Array:
-        return np.asarray(4 * theta[i] * (joule[i] + np.sqrt(np.maximum(y, 0.0)) * thomson[i]))
+        if not from_rest:
+            return np.asarray(4 * theta[i] * (joule[i] + np.sqrt(np.maximum(y, 0.0)) * thomson[i]))
+        if i == 0:
+            return np.sqrt(2 * joule[0])
+        return np.asarray(2 * theta[i] * (joule[i] / np.maximum(y, _SMALLEST_W) + thomson[i]))
 
     y = np.empty((steps + 1, *np.broadcast_shapes(kappa.shape[1:], np.shape(w_top))))
     y[0] = np.asarray(w_top, dtype=float) ** 2
@@ -82,7 +88,7 @@ def march_down(material: LegMaterial, top: float, bottom: float, sign: int, w_to
         c = slope(2 * k + 1, y[k] + 0.5 * h * b)
         d = slope(2 * k + 2, y[k] + h * c)
         y[k + 1] = y[k] + h / 6 * (a + 2 * (b + c) + d)
-    w = np.sqrt(np.maximum(y, 0.0))
+    w = y if from_rest else np.sqrt(np.maximum(y, 0.0))
     at_rest = np.sqrt(2 * kappa[0] ** 2 / joule[0])  # limit of 2θκ/w at w = 0, θ = 0
     covered = np.empty_like(w)
     covered[0] = np.where(w[0] > 0, 0.0, at_rest)

@@ -105,12 +105,27 @@ def _serving(score: Array) -> Array:
 
 
 def _best_lift(material: LegMaterial, duty: Duty) -> Array:
-    """Largest lifted heat × length over interior peak temperatures, with a parabola through the best three."""
-    peaks = duty.hot * (1 + _PEAK_RISE * np.linspace(0, 1, 25) ** 1.5)
-    lifted = np.stack([cool_past_peak(material, duty.hot, duty.cold, peak).heat_times_length for peak in peaks])
-    inner = np.clip(np.argmax(lifted, axis=0), 1, peaks.size - 2)[None]
-    left, middle, right = (np.take_along_axis(lifted, inner + step, axis=0)[0] for step in (-1, 0, 1))
-    curvature = left - 2 * middle + right
-    inside = (middle >= left) & (middle >= right) & (curvature < 0)
-    rise = np.where(inside, (right - left) ** 2 / np.where(inside, -8 * curvature, 1.0), 0.0)
-    return np.asarray(np.max(lifted, axis=0) + rise)
+    """Largest lifted heat × length over interior peak temperatures.
+
+    Smooth in √(T_peak − T_h), and so is its maximum between the best three of an even grid of that: their
+    parabola, moved by the fourth-order term of the best five.
+    """
+    rise = _PEAK_RISE * duty.hot * np.linspace(0, 1, _PEAKS) ** 2
+    lifted = np.stack(
+        [cool_past_peak(material, duty.hot, duty.cold, duty.hot + up).heat_times_length for up in rise]
+    )
+    centre = np.clip(np.argmax(lifted, axis=0), 2, _PEAKS - 3)[None]
+    five = np.stack([np.take_along_axis(lifted, centre + step, axis=0)[0] for step in range(-2, 3)])
+    coefficients = np.tensordot(_QUARTIC, five, axes=1)
+    x = np.zeros(five.shape[1:])
+    for _ in range(4):  # Newton on the quartic's slope, from the middle point
+        slope = sum(k * coefficients[k] * x ** (k - 1) for k in range(1, 5))
+        bend = sum(k * (k - 1) * coefficients[k] * x ** (k - 2) for k in range(2, 5))
+        x = np.clip(x - np.where(bend < 0, slope / np.where(bend < 0, bend, 1.0), 0.0), -2.0, 2.0)
+    top = sum(coefficients[k] * x**k for k in range(5))
+    return np.asarray(np.maximum(np.max(lifted, axis=0), top))
+
+
+_PEAKS = 25
+#: coefficients of the quartic through five even points −2 … 2
+_QUARTIC = np.linalg.inv(np.vander(np.arange(-2.0, 3.0), increasing=True))

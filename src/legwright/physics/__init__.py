@@ -9,6 +9,7 @@ from legwright.physics.bands import (
     velocity_squared,
     wave_number_squared,
 )
+from legwright.physics.barriers import barrier_conductance, barrier_suppression
 from legwright.physics.boundaries import (
     film_suppression,
     grain_mean_free_path,
@@ -20,9 +21,11 @@ from legwright.physics.carrier_scattering import (
     alloy_rate,
     intervalley_rate,
     ionised_impurity_rate,
+    polar_rate,
     screening_wave_number_squared,
 )
 from legwright.physics.fermi import fermi_dirac_integral
+from legwright.physics.hall import hall_anisotropy, hall_coefficient, hall_factor
 from legwright.physics.moments import bipolar_heat, conductivity, electronic_heat, mobility, seebeck
 from legwright.physics.phonon_scattering import (
     anharmonic_strength,
@@ -32,12 +35,19 @@ from legwright.physics.phonon_scattering import (
     umklapp_rate,
 )
 from legwright.physics.quanta import conductance_quantum_per_spin, thermal_conductance_quantum
+from legwright.physics.short_legs import modes_per_area, short_leg_conductance, short_leg_suppression
+from legwright.physics.solubility import active_density, active_limit, atomic_percent, solubility
 
 __all__ = [
     "acoustic_rate",
+    "active_density",
+    "active_limit",
     "alloy_rate",
     "anharmonic_strength",
+    "atomic_percent",
     "band_edge",
+    "barrier_conductance",
+    "barrier_suppression",
     "bipolar_heat",
     "carrier_rate",
     "conductance_quantum_per_spin",
@@ -48,15 +58,23 @@ __all__ = [
     "film_suppression",
     "grain_mean_free_path",
     "grain_suppression",
+    "hall_anisotropy",
+    "hall_coefficient",
+    "hall_factor",
     "intervalley_rate",
     "ionised_impurity_rate",
     "kane_gamma",
     "kane_slope",
     "mobility",
+    "modes_per_area",
     "normal_rate",
     "point_defect_rate",
+    "polar_rate",
     "screening_wave_number_squared",
     "seebeck",
+    "short_leg_conductance",
+    "short_leg_suppression",
+    "solubility",
     "states_below",
     "thermal_conductance_quantum",
     "umklapp_rate",

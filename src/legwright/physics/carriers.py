@@ -5,7 +5,7 @@ Axes: whatever temperature, doping and size broadcast to, then one axis of bands
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -13,8 +13,12 @@ from numpy.typing import NDArray
 from legwright.base.units import E_CHARGE, K_B
 from legwright.physics import bands as kane
 from legwright.physics import carrier_scattering as scattering
+from legwright.physics.barriers import barrier_conductance, barrier_suppression
 from legwright.physics.boundaries import film_suppression, grain_suppression, wire_suppression
 from legwright.physics.fermi import softplus_mesh
+from legwright.physics.hall import hall_anisotropy
+from legwright.physics.moments import conductivity
+from legwright.physics.short_legs import short_leg_suppression
 from legwright.physics.spectra import PathMesh, through
 
 Array = NDArray[np.float64]
@@ -27,7 +31,8 @@ class Electrons:
     """Bands and scatterers in SI; one entry of each array a band.
 
     side: +1 conduction, −1 valence. `lattice_scale` multiplies acoustic and intervalley rates of the majority
-    bands and `mass_scale` their masses; `impurity_knots` are ln(doping) and ln(heavy-doping factor).
+    bands and `mass_scale` their masses; `impurity_knots` are ln(doping) and ln(heavy-doping factor). Without a
+    `high_frequency_permittivity` there is no polar-optical scattering.
     """
 
     carrier: int
@@ -56,7 +61,12 @@ class Electrons:
     intervalley_weight: float = 1.0
     alloy_weight: float = 1.0
     impurity_weight: float = 1.0
+    polar_weight: float = 1.0
     impurity_knots: tuple[tuple[float, float], ...] = ()
+    mass_ratio: Array = field(default_factory=lambda: np.ones(1))
+    high_frequency_permittivity: float | None = None
+    optical_phonon: float = 0.0
+    barrier: float = 0.0
 
     @property
     def majority(self) -> NDArray[np.bool_]:
@@ -88,6 +98,10 @@ class Integrals:
     l0: Array
     l1: Array
     l2: Array
+
+    def times(self, share: Array) -> Integrals:
+        """Every energy held back alike."""
+        return Integrals(self.l0 * share, self.l1 * share, self.l2 * share)
 
     def over(self, bands: NDArray[np.bool_]) -> Integrals:
         """Summed over the chosen bands."""
@@ -132,7 +146,7 @@ def fill(electrons: Electrons, temperature: Array, doping: Array) -> Filling:
     The root is sought in ln(majority) − ln(minority + N), nearly straight in µ whether doping or pairs rule,
     by Newton steps that fall back to halving the bracket. Each point stops by its own step, so it does not
     matter which points are solved together.
-    Raises ArithmeticError where there is no root within 3 eV of the bands.
+    Raises ArithmeticError where there is no root within 30 eV of the bands.
     """
     t, n = (np.asarray(a, dtype=float) for a in np.broadcast_arrays(temperature, doping))
     sign, majority = electrons.carrier, electrons.majority
@@ -140,6 +154,7 @@ def fill(electrons: Electrons, temperature: Array, doping: Array) -> Filling:
     low, high = np.min(edges, axis=-1) - _REACH, np.max(edges, axis=-1) + _REACH
     level, last = np.min(edges[..., majority], axis=-1), high - low
     settled = np.zeros(t.shape, dtype=bool)
+    finest = _FEW_ROUNDINGS * np.max(np.abs(edges), axis=-1)
     for _ in range(_MOST_STEPS):
         _, density, states = _occupied(electrons, t, sign * level)
         many, few = np.sum(density[..., majority], axis=-1), np.sum(density[..., ~majority], axis=-1)
@@ -150,20 +165,22 @@ def fill(electrons: Electrons, temperature: Array, doping: Array) -> Filling:
         trusted = (level + step >= low) & (level + step <= high) & (np.abs(step) < last)
         step = np.where(settled, 0.0, np.where(trusted, step, 0.5 * (low + high) - level))
         level, last = level + step, np.abs(step)
-        settled = settled | (last < _SETTLED * K_B * t)
+        settled = settled | (last < np.maximum(_SETTLED * K_B * t, finest + _FEW_ROUNDINGS * np.abs(level)))
         if np.all(settled):
             break
     else:
-        raise ArithmeticError("charge neutrality has no root within 3 eV of the bands")
+        raise ArithmeticError("charge neutrality has no root within 30 eV of the bands")
     mu = sign * level
     eta, density, states = _occupied(electrons, t, mu)
     return Filling(mu, eta, density, states)
 
 
-_REACH = 3.0 * E_CHARGE
+_REACH = 30.0 * E_CHARGE
 _MOST_STEPS = 80
 #: steps below this share of k_B T no longer change a digit of the density
 _SETTLED = 1e-13
+#: nor, when it is cold, do those that µ and the edges cannot show
+_FEW_ROUNDINGS = 4 * float(np.finfo(float).eps)
 
 
 def _energy_mesh(electrons: Electrons, eta: Array, kt: Array) -> tuple[Array, Array]:
@@ -184,11 +201,12 @@ def _energy_mesh(electrons: Electrons, eta: Array, kt: Array) -> tuple[Array, Ar
 
 @dataclass(frozen=True)
 class Flow:
-    """Bulk transport on the mesh at each (T, doping): spectral conductivity, mean free path, E − µ, weight."""
+    """Bulk transport on the mesh at each (T, doping): weighted g v_x² τ, free path, E − µ, energy from the edge."""
 
     spectral: Array
     mean_free_path: Array
     excess: Array
+    energy: Array
 
 
 def bulk_flow(electrons: Electrons, temperature: Array, doping: Array, filling: Filling) -> Flow:
@@ -229,6 +247,17 @@ def bulk_flow(electrons: Electrons, temperature: Array, doping: Array, filling: 
     centres = n * electrons.heavy_doping_factor(n) * electrons.impurity_weight
     wave2 = kane.wave_number_squared(energy, mass / valleys ** (2 / 3), alpha)
     rate = rate + scattering.ionised_impurity_rate(valley_states, wave2, screening, centres, electrons.permittivity)
+    if electrons.high_frequency_permittivity is not None:
+        rate = rate + electrons.polar_weight * scattering.polar_rate(
+            valley_states,
+            slope,
+            wave2,
+            t,
+            electrons.permittivity,
+            electrons.high_frequency_permittivity,
+            screening * electrons.permittivity / electrons.high_frequency_permittivity,
+            electrons.optical_phonon,
+        )
     if not np.all(rate > 0):
         raise ArithmeticError("a band has no scattering: its conductivity would be infinite")
     velocity2 = kane.velocity_squared(energy, inertia, alpha)
@@ -237,6 +266,7 @@ def bulk_flow(electrons: Electrons, temperature: Array, doping: Array, filling: 
         spectral=states * velocity2 / rate * window,
         mean_free_path=np.sqrt(3 * velocity2) / rate,
         excess=electrons.side[:, None] * (z - filling.eta[..., None]) * kt,
+        energy=energy,
     )
 
 
@@ -254,21 +284,35 @@ def transport_integrals(flow: Flow, size: Array, shape: str, reflection: float) 
     return Integrals(np.sum(flowing, axis=-1), np.sum(first, axis=-1), np.sum(first * flow.excess, axis=-1))
 
 
+def short_leg_integrals(flow: Flow, length: Array) -> Integrals:
+    """L_0, L_1, L_2 per band of a leg of `length` (m) between two contacts; e² L_0/length is its G per area.
+
+    Every energy goes from diffusive to ballistic by itself (`short_legs`); length broadcasts with (T, doping).
+    """
+    flowing = flow.spectral * short_leg_suppression(flow.mean_free_path, length[..., None, None])
+    first = flowing * flow.excess
+    return Integrals(np.sum(flowing, axis=-1), np.sum(first, axis=-1), np.sum(first * flow.excess, axis=-1))
+
+
 #: mean free paths that carriers of any candidate may have
 PATHS = PathMesh(1e-11, 1e-4, 10)
 
 
 def path_spectrum(electrons: Electrons, flow: Flow) -> Array:
     """L_0, L_1, L_2 of the conduction and then of the valence bands by mean free path: (..., 6, paths)."""
+    first = flow.spectral * flow.excess
+    return _by_path(electrons, flow, flow.spectral, first, first * flow.excess)
+
+
+def _by_path(electrons: Electrons, flow: Flow, *parts: Array) -> Array:
+    """Parts on the energy mesh by mean free path, all of the conduction bands and then of the valence bands."""
     sides = []
     for side in (1.0, -1.0):
         bands = electrons.side == side
-        spectral, excess, path = (
-            part[..., bands, :].reshape(*part.shape[:-2], -1)
-            for part in (flow.spectral, flow.excess, flow.mean_free_path)
+        path, *values = (
+            part[..., bands, :].reshape(*part.shape[:-2], -1) for part in (flow.mean_free_path, *parts)
         )
-        first = spectral * excess
-        sides.append(PATHS.gather(path, np.stack([spectral, first, first * excess], axis=-2)))
+        sides.append(PATHS.gather(path, np.stack(values, axis=-2)))
     return np.concatenate(sides, axis=-2)
 
 
@@ -277,6 +321,45 @@ def integrals_at(spectrum: Array, size: Array, shape: str, reflection: float) ->
     sums = through(spectrum, _held_back(PATHS.paths, size[..., None], shape, reflection))
     up, down = (Integrals(*np.moveaxis(sums[..., part], -1, 0)) for part in (slice(0, 3), slice(3, 6)))
     return up, down
+
+
+def past_barriers(electrons: Electrons, temperature: Array, filling: Filling, l0: Array, size: Array) -> Array:
+    """Share of the majority's L_0 that barriers between the grains leave: `l0` broadcasts with the size."""
+    most = electrons.majority
+    mass, inertia = (part[..., most] for part in masses(electrons, temperature))
+    band = (temperature[..., None], filling.eta[..., most], mass, inertia, electrons.nonparabolicity[most])
+    over, without = (np.sum(barrier_conductance(height, *band), axis=-1) for height in (electrons.barrier, 0.0))
+    return barrier_suppression(conductivity(l0), size, over, without)
+
+
+def _deflected(electrons: Electrons, temperature: Array, flow: Flow) -> Array:
+    """Weighted g v_x² τ²/(m_I (1 + 2αε)) on the energy mesh: the flow times Λ over the crystal momentum."""
+    _, inertia = masses(electrons, temperature)
+    gamma = kane.kane_gamma(flow.energy, electrons.nonparabolicity[:, None])
+    long_valleys = hall_anisotropy(electrons.mass_ratio)[:, None]
+    return np.asarray(flow.spectral * flow.mean_free_path * long_valleys / np.sqrt(2 * inertia[..., None] * gamma))
+
+
+def hall_integrals(electrons: Electrons, temperature: Array, flow: Flow, size: Array, shape: str) -> Array:
+    """K = ∫ g v_x² τ²/(m_I (1 + 2αε)) (−∂f/∂E) dE per band, 1/(J kg m); boundaries act on each τ.
+
+    Energy by energy, as `transport_integrals`. In wires and films this takes the boundary's mean effect on τ
+    at an energy for its effect on each carrier: exact for grains and for many carriers in wide bodies; the
+    Hall coefficient of a film far thinner than Λ is larger (Sondheimer, Physical Review 80, 401 (1950)).
+    """
+    held = _held_back(flow.mean_free_path, size[..., None, None], shape, electrons.reflection)
+    return np.asarray(np.sum(_deflected(electrons, temperature, flow) * held**2, axis=-1))
+
+
+def hall_spectrum(electrons: Electrons, temperature: Array, flow: Flow) -> Array:
+    """K of the conduction and then of the valence bands by mean free path: (..., 2, paths)."""
+    return _by_path(electrons, flow, _deflected(electrons, temperature, flow))
+
+
+def hall_at(spectrum: Array, size: Array, shape: str, reflection: float) -> tuple[Array, Array]:
+    """K of the conduction and of the valence bands at each size, from a Hall spectrum."""
+    sums = through(spectrum, _held_back(PATHS.paths, size[..., None], shape, reflection) ** 2)
+    return sums[..., 0], sums[..., 1]
 
 
 def _held_back(mean_free_path: Array, size: Array, shape: str, reflection: float) -> Array:

@@ -67,6 +67,7 @@ def _electrons(candidate: Candidate) -> Electrons:
         factor = PUBLISHED_ALLOY_RATIO**0.5 if band.alloy_form != "golden rule" else 1.0
         return _si(band.alloy_potential) * factor
 
+    high = shared.high_frequency_dielectric
     reflection = shared.grain_reflection or load_priors().reflection.electrons
     return Electrons(
         carrier=-1 if data.carrier == "p" else 1,
@@ -78,6 +79,7 @@ def _electrons(candidate: Candidate) -> Electrons:
         dos_mass=each(lambda b: b.dos_mass.si),
         inertial_mass=each(lambda b: b.inertial_mass.si),
         mass_exponent=each(lambda b: _si(b.mass_exponent)),
+        mass_ratio=each(lambda b: _si(b.mass_ratio, 1.0)),
         nonparabolicity=each(lambda b: _si(b.nonparabolicity)),
         deformation_potential=each(lambda b: b.deformation_potential.si),
         intervalley_field=each(lambda b: _si(b.intervalley_field)),
@@ -89,6 +91,9 @@ def _electrons(candidate: Candidate) -> Electrons:
         density=_density(candidate),
         permittivity=shared.dielectric_constant.si * EPS_0,
         reflection=reflection.si,
+        high_frequency_permittivity=high.si * EPS_0 if high else None,
+        optical_phonon=_si(shared.optical_phonon),
+        barrier=_si(shared.barrier),
     )
 
 

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from functools import cached_property
 from typing import TYPE_CHECKING, Literal, get_args
 
 import numpy as np
@@ -12,8 +14,21 @@ from legwright.base.errors import InputError, nearest
 from legwright.base.units import CM2, MICRO, NM, PER_CM3
 from legwright.candidate.library import Candidate
 from legwright.physics import moments
-from legwright.physics.carriers import bulk_flow, fill, integrals_at, path_spectrum
+from legwright.physics.carriers import (
+    Electrons,
+    Filling,
+    Flow,
+    Integrals,
+    bulk_flow,
+    fill,
+    hall_at,
+    hall_spectrum,
+    integrals_at,
+    past_barriers,
+    path_spectrum,
+)
 from legwright.physics.crystal import Crystal, crystal, majority_carriers
+from legwright.physics.hall import hall_coefficient, hall_factor
 from legwright.physics.lattice import (
     amorphous_minimum,
     conductivity_at,
@@ -54,6 +69,7 @@ class Properties:
     lattice_thermal_conductivity: Array
     amorphous_minimum: Array
     mobility: Array
+    crystal: Crystal = field(repr=False, compare=False)
 
     @property
     def thermal_conductivity(self) -> Array:
@@ -75,6 +91,28 @@ class Properties:
         """Figure of merit S²σT/κ (Ioffe 1957)."""
         return self.power_factor * self.temperature / self.thermal_conductivity
 
+    @property
+    def hall_coefficient(self) -> Array:
+        """Hall coefficient in a weak field, m³/C: negative for electrons, zero where both kinds deflect alike."""
+        return self._hall["hall_coefficient"]
+
+    @property
+    def hall_factor(self) -> Array:
+        """Hall mobility over drift mobility of the majority carriers alone, dimensionless."""
+        return self._hall["hall_factor"]
+
+    @property
+    def hall_mobility(self) -> Array:
+        """|R_H| σ, m²/(V s), as a Hall bar gives it."""
+        return np.abs(self.hall_coefficient) * self.electrical_conductivity
+
+    @cached_property
+    def _hall(self) -> dict[str, Array]:
+        """Worked out when first asked for: maps and ranks do without."""
+        t, n, d = (_one_of_equals(a) for a in (self.temperature, self.doping, self.size))
+        parts = _evaluate_blocks(self.crystal, t, n, d, self.shape, _hall_block)
+        return {name: np.broadcast_to(part, self.size.shape) for name, part in parts.items()}
+
     def to_frame(self) -> pd.DataFrame:
         """One row a design point, in trade units that each column names."""
         import pandas as pd
@@ -86,6 +124,8 @@ class Properties:
             "electrical conductivity [S/m]": self.electrical_conductivity,
             "seebeck [uV/K]": self.seebeck / MICRO,
             "mobility [cm^2/V/s]": self.mobility / CM2,
+            "hall coefficient [cm^3/C]": self.hall_coefficient * PER_CM3,
+            "hall mobility [cm^2/V/s]": self.hall_mobility / CM2,
             "electronic thermal conductivity [W/m/K]": self.electronic_thermal_conductivity,
             "bipolar thermal conductivity [W/m/K]": self.bipolar_thermal_conductivity,
             "lattice thermal conductivity [W/m/K]": self.lattice_thermal_conductivity,
@@ -121,10 +161,11 @@ def evaluate(
     d = _within(size, "size", SMALLEST, LARGEST, "m", infinite=True)
     rank = max(t.ndim, n.ndim, d.ndim)
     t, n, d = (np.reshape(a, (1,) * (rank - a.ndim) + a.shape) for a in (t, n, d))
-    parts = _evaluate_blocks(crystal(candidate), t, n, d, shape)
+    one = crystal(candidate)
+    parts = _evaluate_blocks(one, t, n, d, shape, _evaluate_block)
     whole = np.broadcast_shapes(t.shape, n.shape, d.shape)
     t, n, d = (np.broadcast_to(a, whole) for a in (t, n, d))
-    return Properties(t, n, d, shape, **parts)
+    return Properties(t, n, d, shape, **parts, crystal=one)
 
 
 def _within(value: ArrayLike, key: str, low: float, high: float, unit: str, *, infinite: bool = False) -> Array:
@@ -137,7 +178,15 @@ def _within(value: ArrayLike, key: str, low: float, high: float, unit: str, *, i
     return array
 
 
-def _evaluate_blocks(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> dict[str, Array]:
+def _one_of_equals(array: Array) -> Array:
+    """Each broadcast axis, along which an array only repeats itself, back to length 1."""
+    return array[tuple(slice(None) if step else slice(1) for step in array.strides)]
+
+
+_Block = Callable[[Crystal, Array, Array, Array, str], dict[str, Array]]
+
+
+def _evaluate_blocks(one: Crystal, t: Array, n: Array, d: Array, shape: str, block: _Block) -> dict[str, Array]:
     """Split the longest axis until a block is small; each point's sums do not depend on the split."""
     states = np.broadcast_shapes(t.shape, n.shape)
     whole = np.broadcast_shapes(states, d.shape)
@@ -146,7 +195,7 @@ def _evaluate_blocks(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> 
     elif int(np.prod(whole)) > _POINTS:
         axis = int(np.argmax(whole))
     else:
-        return _evaluate_block(one, t, n, d, shape)
+        return block(one, t, n, d, shape)
     middle = whole[axis] // 2
 
     def half(a: Array, part: slice) -> Array:
@@ -155,7 +204,7 @@ def _evaluate_blocks(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> 
         return a[tuple(index)]
 
     halves = [
-        _evaluate_blocks(one, half(t, part), half(n, part), half(d, part), shape)
+        _evaluate_blocks(one, half(t, part), half(n, part), half(d, part), shape, block)
         for part in (slice(None, middle), slice(middle, None))
     ]
     return {name: np.concatenate([half[name] for half in halves], axis=axis) for name in halves[0]}
@@ -165,8 +214,8 @@ def _evaluate_block(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> d
     electrons, phonons = one.electrons, one.phonons
     filled_t, filled_n = np.broadcast_arrays(t, n)
     filling = fill(electrons, filled_t, filled_n)
-    spectrum = path_spectrum(electrons, bulk_flow(electrons, filled_t, filled_n, filling))
-    up, down = integrals_at(spectrum, d, shape, electrons.reflection)
+    flow = bulk_flow(electrons, filled_t, filled_n, filling)
+    up, down, _ = _both_kinds(electrons, filled_t, filling, flow, d, shape)
     bipolar = moments.bipolar_heat(up.l0, up.l1, down.l0, down.l1, t)
     one_sided = [moments.electronic_heat(part.l0, part.l1, part.l2, t) for part in (up, down)]
     mesh = modes(phonons)
@@ -181,6 +230,38 @@ def _evaluate_block(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> d
         "lattice_thermal_conductivity": acoustic + optical_conductivity(phonons, t),
         "amorphous_minimum": amorphous_minimum(phonons, t),
         "mobility": moments.mobility(moving.l0, np.sum(filling.density[..., electrons.majority], axis=-1)),
+    }
+    whole = np.broadcast_shapes(t.shape, n.shape, d.shape)
+    return {name: np.broadcast_to(part, whole) for name, part in parts.items()}
+
+
+def _both_kinds(
+    electrons: Electrons, t: Array, filling: Filling, flow: Flow, d: Array, shape: str
+) -> tuple[Integrals, Integrals, tuple[Array | float, Array | float]]:
+    """Integrals of the conduction and of the valence bands, and the share that barriers left of each."""
+    up, down = integrals_at(path_spectrum(electrons, flow), d, shape, electrons.reflection)
+    if not electrons.barrier or shape != "grain":
+        return up, down, (1.0, 1.0)
+    if electrons.carrier > 0:
+        share = past_barriers(electrons, t, filling, up.l0, d)
+        return up.times(share), down, (share, 1.0)
+    share = past_barriers(electrons, t, filling, down.l0, d)
+    return up, down.times(share), (1.0, share)
+
+
+def _hall_block(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> dict[str, Array]:
+    electrons = one.electrons
+    filled_t, filled_n = np.broadcast_arrays(t, n)
+    filling = fill(electrons, filled_t, filled_n)
+    flow = bulk_flow(electrons, filled_t, filled_n, filling)
+    up, down, left = _both_kinds(electrons, filled_t, filling, flow, d, shape)
+    turned = hall_at(hall_spectrum(electrons, filled_t, flow), d, shape, electrons.reflection)
+    turned_up, turned_down = (part * share**2 for part, share in zip(turned, left, strict=True))
+    moving, its_turned = (up, turned_up) if electrons.carrier > 0 else (down, turned_down)
+    density = np.sum(filling.density[..., electrons.majority], axis=-1)
+    parts = {
+        "hall_coefficient": hall_coefficient(up.l0, turned_up, down.l0, turned_down),
+        "hall_factor": hall_factor(moving.l0, its_turned, density),
     }
     whole = np.broadcast_shapes(t.shape, n.shape, d.shape)
     return {name: np.broadcast_to(part, whole) for name, part in parts.items()}
