@@ -59,23 +59,23 @@ def test_sheet_has_every_agreed_key_and_its_parts_add_up(legwright):
     assert made["shape"] == "grain"
     assert isinstance(made["flags"], list)
     assert (made["temperature_K"], made["doping_per_cm3"]) == (700.0, 1e20)
-    assert made["size_nm"] == pytest.approx(50, rel=ROUNDING)
+    assert made["size_nm"] == pytest.approx(50, rel=ROUNDING, abs=0)
     electronic = made["electronic_thermal_conductivity_W_per_mK"]
     whole = made["thermal_conductivity_W_per_mK"]
     sigma, seebeck = made["electrical_conductivity_S_per_m"], made["seebeck_uV_per_K"] * 1e-6
     assert seebeck < 0, "n-type"
-    assert whole == pytest.approx(electronic + made["lattice_thermal_conductivity_W_per_mK"], rel=ROUNDING)
-    assert made["power_factor_W_per_mK2"] == pytest.approx(seebeck**2 * sigma, rel=ROUNDING)
-    assert made["zt"] == pytest.approx(made["power_factor_W_per_mK2"] * 700 / whole, rel=ROUNDING)
-    assert made["lorenz_number_W_ohm_per_K2"] == pytest.approx(electronic / sigma / 700, rel=ROUNDING)
+    assert whole == pytest.approx(electronic + made["lattice_thermal_conductivity_W_per_mK"], rel=ROUNDING, abs=0)
+    assert made["power_factor_W_per_mK2"] == pytest.approx(seebeck**2 * sigma, rel=ROUNDING, abs=0)
+    assert made["zt"] == pytest.approx(made["power_factor_W_per_mK2"] * 700 / whole, rel=ROUNDING, abs=0)
+    assert made["lorenz_number_W_ohm_per_K2"] == pytest.approx(electronic / sigma / 700, rel=ROUNDING, abs=0)
 
 
 def test_sheet_is_what_python_gives(legwright):
     """The command line and the Python way differ in units only."""
     made = legwright(*SHEET, "--json").json
     same = lw.evaluate(lw.load_candidate("sige-n"), 700.0, 1e26, 50e-9)
-    assert made["zt"] == pytest.approx(float(same.zt), rel=ROUNDING)
-    assert made["seebeck_uV_per_K"] == pytest.approx(float(same.seebeck) * 1e6, rel=ROUNDING)
+    assert made["zt"] == pytest.approx(float(same.zt), rel=ROUNDING, abs=0)
+    assert made["seebeck_uV_per_K"] == pytest.approx(float(same.seebeck) * 1e6, rel=ROUNDING, abs=0)
 
 
 def test_sheet_of_coarse_material_has_no_size(legwright):

@@ -76,7 +76,7 @@ def march_down(material: LegMaterial, top: float, bottom: float, sign: int, w_to
         if not from_rest:
             return np.asarray(4 * theta[i] * (joule[i] + np.sqrt(np.maximum(y, 0.0)) * thomson[i]))
         if i == 0:
-            return np.sqrt(2 * joule[0])
+            return np.asarray(np.sqrt(2 * joule[0]))
         return np.asarray(2 * theta[i] * (joule[i] / np.maximum(y, _SMALLEST_W) + thomson[i]))
 
     y = np.empty((steps + 1, *np.broadcast_shapes(kappa.shape[1:], np.shape(w_top))))
