@@ -63,7 +63,8 @@ def test_the_program_sees_all_the_numbers_of_the_file(name):
 @pytest.mark.parametrize("name", library_names())
 def test_units_convert_and_signed_numbers_have_an_absolute_spread(name):
     for key, number in numbers(load_candidate(name).data):
-        assert number.si == pytest.approx(number.value * si_factor(number.unit, number.si_unit), rel=1e-15, abs=0), key
+        by_hand = number.value * si_factor(number.unit, number.si_unit)
+        assert number.si == pytest.approx(by_hand, rel=1e-15, abs=0), key
         if number.value <= 0:
             assert number.spread_unit is not None, f"{key}: a share of zero or of a negative number says nothing"
         if number.spread_unit is not None:
