@@ -173,6 +173,15 @@ def test_weight_doubles_and_switches_off(make_electrons, solve):
     assert np.array_equal(none, without)
 
 
+def test_frozen_phonons_let_a_body_conduct(make_electrons, solve):
+    # every rate falls by the factor of an Einstein solid, so does the sum of them; mesh and filling are the same
+    plain = make_electrons(dos_mass=0.2 * M_E, **POLAR)
+    frozen = replace(plain, optical_phonon=0.02 * EV)
+    x = 0.02 * EV / (K_B * 120)
+    ratio = solve(plain, 120.0, 1e25)[1].l0 / solve(frozen, 120.0, 1e25)[1].l0
+    assert ratio == near(x**2 * math.exp(-x) / (1 - math.exp(-x)) ** 2, rel=1e-12)
+
+
 def test_screening_frees_carriers(make_electrons):
     rates = [
         polar_rate(1e46, 1.0, 1e18, 300.0, STATIC, HIGH, screening) for screening in (0.0, 1e17, 1e18, 1e19, 1e21)

@@ -14,7 +14,14 @@ import legwright as lw
 
 SHEET = ("sheet", "sige-n", "--temperature", "700", "--doping", "1e20", "--size", "50")
 PEAK = ("peak", "sige-n", "--temperature", "700", "--doping", "1e20")
-VERBS = {"sheet": SHEET, "peak": PEAK, "candidates": ("candidates",), "one candidate": ("candidates", "si-n")}
+WHY = ("why", *SHEET[1:])
+VERBS = {
+    "sheet": SHEET,
+    "peak": PEAK,
+    "why": WHY,
+    "candidates": ("candidates",),
+    "one candidate": ("candidates", "si-n"),
+}
 
 SHEET_FLOATS = {
     "temperature_K",
@@ -158,11 +165,12 @@ def test_markdown_is_a_table(arguments, legwright):
     assert said.code == 0
     lines = [line.strip() for line in said.out.splitlines()]
     rules = [i for i, line in enumerate(lines) if re.fullmatch(r"\|([-:]+\|)+", line)]
-    assert len(rules) == 1
-    columns = lines[rules[0]].count("|")
-    table = [line for line in lines if line.startswith("|")]
-    assert len(table) > 2
-    assert {line.count("|") for line in table} == {columns}
+    assert len(rules) == (3 if arguments[0] == "why" else 1)
+    starts = [rule - 1 for rule in rules]
+    for start, stop in zip(starts, [*starts[1:], len(lines)], strict=True):
+        table = [line for line in lines[start:stop] if line.startswith("|")]
+        assert len(table) > 2
+        assert {line.count("|") for line in table} == {table[1].count("|")}
 
 
 def shown_on_a_terminal(tmp_path: Path, **extra: str) -> str:
@@ -218,11 +226,36 @@ def test_a_reader_that_stops_early_is_no_fault(tmp_path):
     assert b"fault" not in said
 
 
-@pytest.mark.parametrize("verb", ["", "rank", "peak", "sheet", "candidates"])
+@pytest.mark.parametrize("verb", ["", "rank", "peak", "sheet", "why", "candidates"])
 def test_help_names_every_option(verb, legwright):
     said = legwright(*([verb] if verb else []), "--help")
     assert said.code == 0
     assert said.err == ""
     assert "Usage: legwright" in said.out
-    for option in ("--json", "--csv", "--markdown") if verb else ("rank", "peak", "sheet", "candidates"):
+    for option in ("--json", "--csv", "--markdown") if verb else ("rank", "peak", "sheet", "why", "candidates"):
         assert option in said.out
+
+
+def test_why_over_a_brief_looks_at_its_best_design(legwright, brief):
+    path = brief()
+    ranked = {row["candidate"]: row for row in legwright("rank", path, "--json").json["rows"]}
+    found = legwright("why", "sige-n", "--brief", path, "--json").json
+    assert found["size_nm"] == ranked["sige-n"]["size_nm"]
+    assert found["doping_per_cm3"] == ranked["sige-n"]["doping_per_cm3"]
+    assert (found["temperatures_K"][0], found["temperatures_K"][-1]) == (400, 700)
+    for shares in ("electrical_resistance_shares", "thermal_resistance_shares"):
+        assert sum(found[shares].values()) == pytest.approx(1, abs=1e-12)
+
+
+@pytest.mark.parametrize(
+    ("words", "said"),
+    [
+        ((), "--temperature or --brief"),
+        (("--temperature", "300"), "--doping and --size"),
+        (("--temperature", "300", "--doping", "1e20", "--size", "bulk"), "'bulk'"),
+    ],
+)
+def test_why_without_a_point_is_refused(words, said, legwright):
+    answer = legwright("why", "si-n", *words, "--json")
+    assert (answer.code, answer.out, answer.err.count("\n")) == (2, "", 1)
+    assert said in answer.err

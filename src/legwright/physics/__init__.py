@@ -37,8 +37,17 @@ from legwright.physics.phonon_scattering import (
 from legwright.physics.quanta import conductance_quantum_per_spin, thermal_conductance_quantum
 from legwright.physics.short_legs import modes_per_area, short_leg_conductance, short_leg_suppression
 from legwright.physics.solubility import active_density, active_limit, atomic_percent, solubility
+from legwright.physics.subbands import (
+    WireBand,
+    subband_density,
+    subband_edges,
+    subband_integrals,
+    subband_level,
+    thin_wire_diameter,
+)
 
 __all__ = [
+    "WireBand",
     "acoustic_rate",
     "active_density",
     "active_limit",
@@ -76,7 +85,12 @@ __all__ = [
     "short_leg_suppression",
     "solubility",
     "states_below",
+    "subband_density",
+    "subband_edges",
+    "subband_integrals",
+    "subband_level",
     "thermal_conductance_quantum",
+    "thin_wire_diameter",
     "umklapp_rate",
     "velocity_squared",
     "wave_number_squared",

@@ -201,12 +201,14 @@ def _energy_mesh(electrons: Electrons, eta: Array, kt: Array) -> tuple[Array, Ar
 
 @dataclass(frozen=True)
 class Flow:
-    """Bulk transport on the mesh at each (T, doping): weighted g v_x² τ, free path, E − µ, energy from the edge."""
+    """Bulk transport on the mesh at each (T, doping): weighted g v_x² τ, free path, E − µ, energy from the edge,
+    and the rate of each process, which add up to v/Λ."""
 
     spectral: Array
     mean_free_path: Array
     excess: Array
     energy: Array
+    rates: dict[str, Array] = field(default_factory=dict)
 
 
 def bulk_flow(electrons: Electrons, temperature: Array, doping: Array, filling: Filling) -> Flow:
@@ -223,19 +225,23 @@ def bulk_flow(electrons: Electrons, temperature: Array, doping: Array, filling: 
     valley_states = states / valleys
     scale = np.where(electrons.majority, electrons.lattice_scale, 1.0)[:, None]
 
-    rate = electrons.acoustic_weight * scale * scattering.acoustic_rate(
-        valley_states, slope, t, electrons.deformation_potential[:, None], electrons.elastic_constant
-    )  # fmt: skip
+    rates = {
+        "acoustic phonons": electrons.acoustic_weight
+        * scale
+        * scattering.acoustic_rate(
+            valley_states, slope, t, electrons.deformation_potential[:, None], electrons.elastic_constant
+        )
+    }
     if np.any(electrons.intervalley_field):
         phonon = np.where(electrons.intervalley_field > 0, electrons.intervalley_phonon, E_CHARGE)[:, None]
         after = kane.density_of_states(energy + phonon, mass, alpha) / valleys
         left = np.maximum(energy - phonon, 0.0)
         before = kane.density_of_states(left, mass, alpha) / valleys
-        rate = rate + electrons.intervalley_weight * scale * scattering.intervalley_rate(
-            after, before, t, electrons.intervalley_field[:, None], phonon, electrons.density
-        )
+        coupling = electrons.intervalley_field[:, None]
+        between = scattering.intervalley_rate(after, before, t, coupling, phonon, electrons.density)
+        rates["intervalley phonons"] = electrons.intervalley_weight * scale * between
     if electrons.alloy_fraction:
-        rate = rate + electrons.alloy_weight * scattering.alloy_rate(
+        rates["alloy disorder"] = electrons.alloy_weight * scattering.alloy_rate(
             valley_states,
             electrons.alloy_fraction,
             electrons.alloy_volume,
@@ -246,9 +252,11 @@ def bulk_flow(electrons: Electrons, temperature: Array, doping: Array, filling: 
     )[..., None, None]
     centres = n * electrons.heavy_doping_factor(n) * electrons.impurity_weight
     wave2 = kane.wave_number_squared(energy, mass / valleys ** (2 / 3), alpha)
-    rate = rate + scattering.ionised_impurity_rate(valley_states, wave2, screening, centres, electrons.permittivity)
+    rates["ionised impurities"] = scattering.ionised_impurity_rate(
+        valley_states, wave2, screening, centres, electrons.permittivity
+    )
     if electrons.high_frequency_permittivity is not None:
-        rate = rate + electrons.polar_weight * scattering.polar_rate(
+        rates["polar optical phonons"] = electrons.polar_weight * scattering.polar_rate(
             valley_states,
             slope,
             wave2,
@@ -258,6 +266,7 @@ def bulk_flow(electrons: Electrons, temperature: Array, doping: Array, filling: 
             screening * electrons.permittivity / electrons.high_frequency_permittivity,
             electrons.optical_phonon,
         )
+    rate = sum(rates.values(), start=np.zeros(1))
     if not np.all(rate > 0):
         raise ArithmeticError("a band has no scattering: its conductivity would be infinite")
     velocity2 = kane.velocity_squared(energy, inertia, alpha)
@@ -267,6 +276,7 @@ def bulk_flow(electrons: Electrons, temperature: Array, doping: Array, filling: 
         mean_free_path=np.sqrt(3 * velocity2) / rate,
         excess=electrons.side[:, None] * (z - filling.eta[..., None]) * kt,
         energy=energy,
+        rates=rates,
     )
 
 
@@ -277,7 +287,7 @@ def transport_integrals(flow: Flow, size: Array, shape: str, reflection: float) 
     """
     d = size[..., None, None]
     if not np.all(np.isinf(size)):
-        flowing = flow.spectral * _held_back(flow.mean_free_path, d, shape, reflection)
+        flowing = flow.spectral * held_back(flow.mean_free_path, d, shape, reflection)
     else:
         flowing = np.broadcast_to(flow.spectral, np.broadcast_shapes(flow.spectral.shape, d.shape))
     first = flowing * flow.excess
@@ -318,7 +328,7 @@ def _by_path(electrons: Electrons, flow: Flow, *parts: Array) -> Array:
 
 def integrals_at(spectrum: Array, size: Array, shape: str, reflection: float) -> tuple[Integrals, Integrals]:
     """Transport integrals of the conduction and of the valence bands at each size, from a path spectrum."""
-    sums = through(spectrum, _held_back(PATHS.paths, size[..., None], shape, reflection))
+    sums = through(spectrum, held_back(PATHS.paths, size[..., None], shape, reflection))
     up, down = (Integrals(*np.moveaxis(sums[..., part], -1, 0)) for part in (slice(0, 3), slice(3, 6)))
     return up, down
 
@@ -347,7 +357,7 @@ def hall_integrals(electrons: Electrons, temperature: Array, flow: Flow, size: A
     at an energy for its effect on each carrier: exact for grains and for many carriers in wide bodies; the
     Hall coefficient of a film far thinner than Λ is larger (Sondheimer, Physical Review 80, 401 (1950)).
     """
-    held = _held_back(flow.mean_free_path, size[..., None, None], shape, electrons.reflection)
+    held = held_back(flow.mean_free_path, size[..., None, None], shape, electrons.reflection)
     return np.asarray(np.sum(_deflected(electrons, temperature, flow) * held**2, axis=-1))
 
 
@@ -358,11 +368,12 @@ def hall_spectrum(electrons: Electrons, temperature: Array, flow: Flow) -> Array
 
 def hall_at(spectrum: Array, size: Array, shape: str, reflection: float) -> tuple[Array, Array]:
     """K of the conduction and of the valence bands at each size, from a Hall spectrum."""
-    sums = through(spectrum, _held_back(PATHS.paths, size[..., None], shape, reflection) ** 2)
+    sums = through(spectrum, held_back(PATHS.paths, size[..., None], shape, reflection) ** 2)
     return sums[..., 0], sums[..., 1]
 
 
-def _held_back(mean_free_path: Array, size: Array, shape: str, reflection: float) -> Array:
+def held_back(mean_free_path: Array, size: Array, shape: str, reflection: float) -> Array:
+    """Conductivity over that of unbounded material, for each mean free path: grains, a wire or a film."""
     if shape == "grain":
         return grain_suppression(mean_free_path, size, reflection)
     return (wire_suppression if shape == "wire" else film_suppression)(mean_free_path / size)

@@ -143,8 +143,8 @@ def evaluate(
 ) -> Properties:
     """All transport properties of a candidate, in SI.
 
-    temperature T (K, > 0), doping: net active density (1/m³, > 0; its sign is the candidate's carrier),
-    size d (m, > 0; inf for coarse material) of grain, wire or film by `shape`; all broadcast.
+    temperature T (2 to 3000 K), doping: net active density (1/m³; its sign is the candidate's carrier),
+    size d (m; inf for coarse material) of grain, wire or film by `shape`; all broadcast.
     σ = e²L_0, S = −L_1/(eTL_0), κ_e = (L_2 − L_1²/L_0)/T over all bands on one energy axis (Ravich, Efimova &
     Smirnov 1970); bipolar = κ_e − κ_e(conduction alone) − κ_e(valence alone) (Goldsmid 2010); lattice after
     Callaway (1959). Raises InputError for a value that physics does not allow, naming it.
@@ -154,6 +154,13 @@ def evaluate(
     >>> bool(made.lattice_thermal_conductivity[0] < 0.2 * made.lattice_thermal_conductivity[1])
     True
     """
+    return evaluate_crystal(crystal(candidate), temperature, doping, size, shape)
+
+
+def evaluate_crystal(
+    one: Crystal, temperature: ArrayLike, doping: ArrayLike, size: ArrayLike, shape: str = "grain"
+) -> Properties:
+    """`evaluate` for a crystal in hand, whose numbers may have been changed."""
     if shape not in SHAPES:
         raise InputError(f"value '{shape}' is not allowed; {nearest(shape, SHAPES)}", key="shape")
     t = _within(temperature, "temperature", COLDEST, HOTTEST, "K")
@@ -161,7 +168,6 @@ def evaluate(
     d = _within(size, "size", SMALLEST, LARGEST, "m", infinite=True)
     rank = max(t.ndim, n.ndim, d.ndim)
     t, n, d = (np.reshape(a, (1,) * (rank - a.ndim) + a.shape) for a in (t, n, d))
-    one = crystal(candidate)
     parts = _evaluate_blocks(one, t, n, d, shape, _evaluate_block)
     whole = np.broadcast_shapes(t.shape, n.shape, d.shape)
     t, n, d = (np.broadcast_to(a, whole) for a in (t, n, d))

@@ -16,6 +16,7 @@ from legwright.candidate.model import numbers
 from legwright.candidate.sources import bibliography
 from legwright.decide.peak import Peak
 from legwright.decide.rank import Row
+from legwright.decide.why import Why
 from legwright.physics.properties import Properties
 
 SCHEMA = 1
@@ -85,6 +86,31 @@ def sheet_record(candidate: Candidate, made: Properties, flags: tuple[str, ...])
         "mobility_cm2_per_Vs": float(made.mobility) / CM2,
         "amorphous_minimum_W_per_mK": float(made.amorphous_minimum),
         "flags": list(flags),
+    }
+
+
+def why_record(found: Why) -> Record:
+    """The whole of `why`."""
+    law = found.zt_grain_law
+    return {
+        "candidate": found.candidate.name,
+        "temperatures_K": list(found.temperatures),
+        "doping_per_cm3": found.doping / PER_CM3,
+        "size_nm": nanometres(found.size),
+        "shape": found.shape,
+        "verdict": found.verdict,
+        "zt": found.zt,
+        "zt_coarse": found.zt_coarse,
+        "zt_grey_grain_law": None if law is None else law[0],
+        "zt_grain_law_by_wavelength": None if law is None else law[1],
+        "electrons_pay_below_nm": nanometres(found.electrons_pay_below),
+        "electrical_resistance_shares": found.electrical_shares,
+        "thermal_resistance_shares": found.thermal_shares,
+        "free_paths": [
+            {"path_nm": float(path) / NM, "electrons_within": float(e), "phonons_within": float(p)}
+            for path, e, p in zip(found.paths, found.electrons_within, found.phonons_within, strict=True)
+        ],
+        "flags": list(found.flags),
     }
 
 

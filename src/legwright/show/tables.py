@@ -112,6 +112,36 @@ def pairs_table(title: str, pairs: Iterable[tuple[str, str]], markdown: bool) ->
     return draw(title, ("property", "value"), pairs, markdown)
 
 
+def why_tables(found: Record, markdown: bool) -> list[Table]:
+    """Shares of the two resistances, and the flow by free path, coarse."""
+    shares = [
+        draw(
+            f"Shares of the {kind} resistance",
+            ("process", "share"),
+            ((name, f"{100 * share:.1f} %") for name, share in sorted(parts.items(), key=lambda p: -p[1])),
+            markdown,
+        )
+        for kind, parts in (
+            ("electrical", found["electrical_resistance_shares"]),
+            ("lattice thermal", found["thermal_resistance_shares"]),
+        )
+    ]
+    paths = draw(
+        "Carried inside a grain on free paths up to",
+        ("free path [nm]", "charge", "lattice heat"),
+        (
+            (
+                figure(row["path_nm"]),
+                f"{100 * row['electrons_within']:.0f} %",
+                f"{100 * row['phonons_within']:.0f} %",
+            )
+            for row in found["free_paths"][::5]
+        ),
+        markdown,
+    )
+    return [*shares, paths]
+
+
 _BASES = ("measured", "published model", "calibrated on bulk", "common practice", "from memory")
 
 
