@@ -8,13 +8,15 @@ import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from scipy.integrate import dblquad
+from scipy.integrate import dblquad, quad
 
 from legwright.physics.boundaries import (
     film_suppression,
+    film_suppression_rough,
     grain_mean_free_path,
     grain_suppression,
     wire_suppression,
+    wire_suppression_rough,
 )
 
 #: pytest adds an absolute 1e-12 of its own, which is large among SI figures
@@ -249,3 +251,48 @@ def test_grain_boundary_path_grows_with_wavelength(exponent, growth):
     assert long / short == near(growth, rel=1e-14)
     assert grain_mean_free_path(80e-9, 1.0, exponent, 0.7) == near(56e-9, rel=1e-14)
     assert grain_mean_free_path(np.inf, 0.1, exponent) == np.inf
+
+
+# ---- rough walls: p(θ) = exp(−4 q²η² cos²θ) inside the integral (Ziman 1960; Soffer 1967)
+
+ROUGH = {"film": (film_suppression_rough, film_suppression), "wire": (wire_suppression_rough, wire_suppression)}
+
+
+@pytest.mark.parametrize("which", ROUGH)
+@pytest.mark.parametrize("knudsen", [0.01, 1.0, 100.0])
+def test_rough_walls_between_mirror_and_diffuse(which, knudsen):
+    rough, plain = ROUGH[which]
+    factors = rough(knudsen, [0.0, 1e-4, 0.03, 0.3, 1.0, 3.0, 1e4])
+    assert factors[0] == near(1, rel=1e-12)
+    assert np.all(np.diff(factors) < 0)
+    assert factors[-1] > plain(knudsen)
+    # grazing waves, cos²θ < 1e-8, are still mirrored at qη = 1e4: a share of about cos θ
+    assert factors[-1] == near(plain(knudsen), rel=2e-2)
+
+
+@pytest.mark.parametrize("q_eta", [0.2, 1.0])
+def test_rough_film_matches_plain_quadrature(q_eta):
+    knudsen = 3.0
+
+    def inner(mu: float) -> float:
+        p, fall = math.exp(-4 * q_eta**2 * mu**2), math.exp(-1 / (knudsen * mu))
+        return 1.5 * (1 - mu**2) * (1 - knudsen * mu * (1 - p) * (1 - fall) / (1 - p * fall))
+
+    exact = quad(inner, 0, 1, epsabs=0, epsrel=1e-12, limit=400)[0]
+    assert film_suppression_rough(knudsen, q_eta) == near(exact, rel=1e-10)  # quad's own 1e-12, with room
+
+
+@pytest.mark.parametrize("which", ROUGH)
+def test_averaging_the_mirror_share_first_is_far_off(which):
+    """At qη = 1 in a thin wire or film the averaged p gives about half (trap of the Ziman form)."""
+    rough, plain = ROUGH[which]
+    mu = np.linspace(0, 1, 20001)
+    averaged = float(np.trapezoid(2 * mu * np.exp(-4 * mu**2), mu))  # weighed by what meets the wall
+    assert rough(100.0, 1.0) > 1.5 * plain(100.0, averaged)
+
+
+@pytest.mark.parametrize("bad", [(-1.0, 1.0), (1.0, -1.0), (math.nan, 1.0)])
+@pytest.mark.parametrize("which", ROUGH)
+def test_rough_walls_refuse_what_cannot_be(which, bad):
+    with pytest.raises(ValueError, match="must be ≥ 0"):
+        ROUGH[which][0](*bad)

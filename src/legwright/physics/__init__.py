@@ -12,9 +12,11 @@ from legwright.physics.bands import (
 from legwright.physics.barriers import barrier_conductance, barrier_suppression
 from legwright.physics.boundaries import (
     film_suppression,
+    film_suppression_rough,
     grain_mean_free_path,
     grain_suppression,
     wire_suppression,
+    wire_suppression_rough,
 )
 from legwright.physics.carrier_scattering import (
     acoustic_rate,
@@ -65,6 +67,7 @@ __all__ = [
     "electronic_heat",
     "fermi_dirac_integral",
     "film_suppression",
+    "film_suppression_rough",
     "grain_mean_free_path",
     "grain_suppression",
     "hall_anisotropy",
@@ -95,4 +98,5 @@ __all__ = [
     "velocity_squared",
     "wave_number_squared",
     "wire_suppression",
+    "wire_suppression_rough",
 ]
