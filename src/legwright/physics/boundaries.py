@@ -106,7 +106,7 @@ def film_suppression_rough(mfp_over_thickness: ArrayLike, roughness: ArrayLike) 
     38, 1710 (1967).
 
     >>> round(float(film_suppression_rough(1.0, 1e3)), 4)
-    0.684
+    0.6839
     """
     return _rough(_film_paths, mfp_over_thickness, roughness)
 
