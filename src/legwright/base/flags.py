@@ -39,6 +39,9 @@ MEANINGS: dict[str, str] = {
         "Sintered bodies of this alloy have behaved as if the boundary length were about a tenth of the grain "
         "(subgrains, defects): real lattice conductivity may be lower, and mobility too, than at the stated grain."
     ),
+    "porous": (
+        "The figures are for a body with the porosity in the candidate's file, which lowers both conductivities."
+    ),
     "mixed-minority-carriers": (
         "Minority carriers carry more than a tenth of the electronic heat at the hot end (bipolar conduction)."
     ),

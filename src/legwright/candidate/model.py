@@ -209,12 +209,18 @@ class Service(Table):
 
 
 class Making(Table):
-    """What can be made, and how."""
+    """What can be made, and how.
+
+    `size_spread`: standard deviation of ln d; the size asked for is then the median grain. `porosity`: share of
+    volume that is pores in what will be made; the anchors count as dense.
+    """
 
     smallest_grain: Length
     smallest_wire: Length | None = None
     smallest_film: Length | None = None
     route: str
+    size_spread: Pure | None = None
+    porosity: Annotated[Measure, measure("1", 0, 0.9)] | None = None
     sintered_like_finer: bool = False
 
     def smallest(self, shape: str) -> float:

@@ -25,6 +25,8 @@ def point_flags(candidate: Candidate, made: Properties, shape: str) -> list[str]
         flags.append("lattice-below-amorphous-minimum")
     if np.any(made.bipolar_thermal_conductivity > 0.1 * made.electronic_thermal_conductivity):
         flags.append("mixed-minority-carriers")
+    if data.making.porosity is not None and data.making.porosity.si > 0:
+        flags.append("porous")
     if shape == "grain" and data.making.sintered_like_finer and np.any(np.isfinite(made.size)):
         flags.append("sintered-boundaries")
     if not data.direction.startswith("isotropic"):

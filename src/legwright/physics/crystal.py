@@ -27,6 +27,7 @@ from legwright.physics.lattice import (
     optical_conductivity,
 )
 from legwright.physics.moments import mobility, seebeck
+from legwright.physics.texture import effective_size_ratio, porous_share
 
 Array = NDArray[np.float64]
 
@@ -36,10 +37,16 @@ PUBLISHED_ALLOY_RATIO = 3 * np.pi**2 / 8
 
 @dataclass(frozen=True)
 class Crystal:
-    """Electrons and phonons of one candidate."""
+    """Electrons and phonons of one candidate; what its grains' spread and its pores do (1: nothing)."""
 
     electrons: Electrons
     phonons: Phonons
+    size_ratio: float = 1.0
+    dense_share: float = 1.0
+
+    def acting_size(self, size: Array, shape: str) -> Array:
+        """The one size that acts as the body's do: grains of a given median may be spread."""
+        return size * self.size_ratio if shape == "grain" else size
 
 
 @cache
@@ -50,7 +57,13 @@ def crystal(candidate: Candidate) -> Crystal:
     """
     bare = Crystal(_electrons(candidate), _phonons(candidate))
     electrons = _fix_electrons(candidate, bare.electrons)
-    return Crystal(electrons, _fix_phonons(candidate, replace(bare, electrons=electrons)))
+    making = candidate.data.making
+    return Crystal(
+        electrons,
+        _fix_phonons(candidate, replace(bare, electrons=electrons)),
+        size_ratio=float(effective_size_ratio(_si(making.size_spread))),
+        dense_share=float(porous_share(_si(making.porosity))),
+    )
 
 
 def _si(number: Measure | None, otherwise: float = 0.0) -> float:

@@ -110,7 +110,8 @@ class Properties:
     def _hall(self) -> dict[str, Array]:
         """Worked out when first asked for: maps and ranks do without."""
         t, n, d = (_one_of_equals(a) for a in (self.temperature, self.doping, self.size))
-        parts = _evaluate_blocks(self.crystal, t, n, d, self.shape, _hall_block)
+        acting = self.crystal.acting_size(d, self.shape)
+        parts = _evaluate_blocks(self.crystal, t, n, acting, self.shape, _hall_block)
         return {name: np.broadcast_to(part, self.size.shape) for name, part in parts.items()}
 
     def to_frame(self) -> pd.DataFrame:
@@ -168,7 +169,7 @@ def evaluate_crystal(
     d = _within(size, "size", SMALLEST, LARGEST, "m", infinite=True)
     rank = max(t.ndim, n.ndim, d.ndim)
     t, n, d = (np.reshape(a, (1,) * (rank - a.ndim) + a.shape) for a in (t, n, d))
-    parts = _evaluate_blocks(one, t, n, d, shape, _evaluate_block)
+    parts = _evaluate_blocks(one, t, n, one.acting_size(d, shape), shape, _evaluate_block)
     whole = np.broadcast_shapes(t.shape, n.shape, d.shape)
     t, n, d = (np.broadcast_to(a, whole) for a in (t, n, d))
     return Properties(t, n, d, shape, **parts, crystal=one)
@@ -217,7 +218,7 @@ def _evaluate_blocks(one: Crystal, t: Array, n: Array, d: Array, shape: str, blo
 
 
 def _evaluate_block(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> dict[str, Array]:
-    electrons, phonons = one.electrons, one.phonons
+    electrons, phonons, dense = one.electrons, one.phonons, one.dense_share
     filled_t, filled_n = np.broadcast_arrays(t, n)
     filling = fill(electrons, filled_t, filled_n)
     flow = bulk_flow(electrons, filled_t, filled_n, filling)
@@ -229,13 +230,13 @@ def _evaluate_block(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> d
     acoustic = conductivity_at(heat_spectrum(phonons, mesh, rates, filled_t, shape), d, shape)
     moving = up if electrons.carrier > 0 else down
     parts = {
-        "electrical_conductivity": moments.conductivity(up.l0 + down.l0),
+        "electrical_conductivity": dense * moments.conductivity(up.l0 + down.l0),
         "seebeck": moments.seebeck(up.l0 + down.l0, up.l1 + down.l1, t),
-        "electronic_thermal_conductivity": one_sided[0] + one_sided[1] + bipolar,
-        "bipolar_thermal_conductivity": bipolar,
-        "lattice_thermal_conductivity": acoustic + optical_conductivity(phonons, t),
+        "electronic_thermal_conductivity": dense * (one_sided[0] + one_sided[1] + bipolar),
+        "bipolar_thermal_conductivity": dense * bipolar,
+        "lattice_thermal_conductivity": dense * (acoustic + optical_conductivity(phonons, t)),
         "amorphous_minimum": amorphous_minimum(phonons, t),
-        "mobility": moments.mobility(moving.l0, np.sum(filling.density[..., electrons.majority], axis=-1)),
+        "mobility": dense * moments.mobility(moving.l0, np.sum(filling.density[..., electrons.majority], axis=-1)),
     }
     whole = np.broadcast_shapes(t.shape, n.shape, d.shape)
     return {name: np.broadcast_to(part, whole) for name, part in parts.items()}

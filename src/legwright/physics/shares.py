@@ -41,7 +41,8 @@ def electrical_limits(one: Crystal, temperature: float, doping: float, size: flo
     """
     electrons, t, n = one.electrons, np.array(temperature), np.array(doping)
     flow = bulk_flow(electrons, t, n, fill(electrons, t, n))
-    kept = held_back(flow.mean_free_path, np.array(size), shape, electrons.reflection)
+    acting = one.acting_size(np.array(size), shape)
+    kept = held_back(flow.mean_free_path, acting, shape, electrons.reflection)
     conducted = flow.spectral * kept
     rates = {name: np.broadcast_to(rate, conducted.shape) for name, rate in flow.rates.items()}
     rates[_boundary(shape)] = sum(rates.values()) * (1 / kept - 1)
@@ -61,7 +62,8 @@ def thermal_limits(one: Crystal, temperature: float, doping: float, size: float,
     path = mesh.velocity * lifetime
     if shape == "grain":
         ratio = mesh.omega / phonons.top_frequency[:, None]
-        reach = grain_mean_free_path(size, ratio, phonons.grain_exponent, phonons.grain_prefactor)
+        acting = one.acting_size(np.array(size), shape)
+        reach = grain_mean_free_path(acting, ratio, phonons.grain_exponent, phonons.grain_prefactor)
         boundary = mesh.velocity / reach
     else:
         kept = (wire_suppression if shape == "wire" else film_suppression)(path / size)
