@@ -30,6 +30,8 @@ Mobility = Annotated[Measure, measure("m^2/V/s", 0, above=True)]
 Seebeck = Annotated[Measure, measure("V/K")]
 Conductivity = Annotated[Measure, measure("W/m/K", 0, above=True)]
 Density = Annotated[Measure, measure("1/m^3", 0, above=True)]
+PerArea = Annotated[Measure, measure("1/m^2", 0)]
+MassDensity = Annotated[Measure, measure("kg/m^3", 0, above=True)]
 PhononField = Annotated[Measure, measure("J/m", 0, above=True)]
 
 Carrier = Literal["n", "p"]
@@ -134,6 +136,36 @@ class Scattering(Table):
         return self
 
 
+class Vacancies(Table):
+    """Missing atoms: `share` of all atomic sites, from which atoms of `element` are gone.
+
+    `in_anchors` here and below: the samples of the lattice anchors hold these defects too, so that their effect is
+    not in the prefactors. Otherwise they come on top, brought in by the making.
+    """
+
+    share: Annotated[Measure, measure("1", 0, 0.3)]
+    element: str
+    in_anchors: bool
+
+
+class Dislocations(Table):
+    """Dislocation lines at random angles: their length per volume and Burgers vector."""
+
+    density: PerArea
+    burgers_vector: Length
+    in_anchors: bool
+
+
+class Precipitates(Table):
+    """Round inclusions: share of the volume, median radius, spread of ln R (none: all alike), mass density."""
+
+    volume_share: Annotated[Measure, measure("1", 0, 0.3)]
+    radius: Length
+    radius_spread: Annotated[Measure, measure("1", 0, 1.5)] | None = None
+    mass_density: MassDensity
+    in_anchors: bool
+
+
 class Lattice(Table):
     """One longitudinal and two transverse branches, and what scatters them."""
 
@@ -145,6 +177,9 @@ class Lattice(Table):
     normal_ratio: Pure
     strain_parameter: Pure
     carrier_deformation_potential: Energy
+    vacancies: Vacancies | None = None
+    dislocations: Dislocations | None = None
+    precipitates: Precipitates | None = None
 
 
 class Anchor(Table):
@@ -212,7 +247,8 @@ class Making(Table):
     """What can be made, and how.
 
     `size_spread`: standard deviation of ln d; the size asked for is then the median grain. `porosity`: share of
-    volume that is pores in what will be made; the anchors count as dense.
+    volume that is pores in what will be made; the anchors count as dense. `wall_roughness`: root mean square height
+    of the walls of wires and films, for phonons; without it all that meets a wall is scattered.
     """
 
     smallest_grain: Length
@@ -221,6 +257,7 @@ class Making(Table):
     route: str
     size_spread: Pure | None = None
     porosity: Annotated[Measure, measure("1", 0, 0.9)] | None = None
+    wall_roughness: Length | None = None
     sintered_like_finer: bool = False
 
     def smallest(self, shape: str) -> float:
@@ -264,6 +301,9 @@ class CandidateFile(Table):
         hosts = {element for site in self.site for element in site.occupants}
         if self.doping.replaces not in hosts:
             raise ValueError(f"doping.replaces '{self.doping.replaces}' is not in the formula")
+        missing = self.lattice.vacancies
+        if missing is not None and missing.element not in hosts:
+            raise ValueError(f"lattice.vacancies.element '{missing.element}' is not in the formula")
         return self
 
 

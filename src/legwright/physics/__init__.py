@@ -32,11 +32,19 @@ from legwright.physics.moments import bipolar_heat, conductivity, electronic_hea
 from legwright.physics.phonon_scattering import (
     anharmonic_strength,
     carrier_rate,
+    dislocation_core_rate,
+    dislocation_strain_rate,
     normal_rate,
     point_defect_rate,
+    precipitate_rate,
     umklapp_rate,
+    vacancy_disorder,
 )
-from legwright.physics.quanta import conductance_quantum_per_spin, thermal_conductance_quantum
+from legwright.physics.quanta import (
+    ballistic_wire_conductance,
+    conductance_quantum_per_spin,
+    thermal_conductance_quantum,
+)
 from legwright.physics.short_legs import modes_per_area, short_leg_conductance, short_leg_suppression
 from legwright.physics.solubility import active_density, active_limit, atomic_percent, solubility
 from legwright.physics.subbands import (
@@ -56,6 +64,7 @@ __all__ = [
     "alloy_rate",
     "anharmonic_strength",
     "atomic_percent",
+    "ballistic_wire_conductance",
     "band_edge",
     "barrier_conductance",
     "barrier_suppression",
@@ -64,6 +73,8 @@ __all__ = [
     "conductance_quantum_per_spin",
     "conductivity",
     "density_of_states",
+    "dislocation_core_rate",
+    "dislocation_strain_rate",
     "electronic_heat",
     "fermi_dirac_integral",
     "film_suppression",
@@ -82,6 +93,7 @@ __all__ = [
     "normal_rate",
     "point_defect_rate",
     "polar_rate",
+    "precipitate_rate",
     "screening_wave_number_squared",
     "seebeck",
     "short_leg_conductance",
@@ -95,6 +107,7 @@ __all__ = [
     "thermal_conductance_quantum",
     "thin_wire_diameter",
     "umklapp_rate",
+    "vacancy_disorder",
     "velocity_squared",
     "wave_number_squared",
     "wire_suppression",

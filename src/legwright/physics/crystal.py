@@ -12,7 +12,7 @@ from scipy.optimize import least_squares
 
 from legwright.base.errors import InputError
 from legwright.base.units import EPS_0
-from legwright.candidate.composition import dopant_disorder
+from legwright.candidate.composition import atomic_mass, dopant_disorder
 from legwright.candidate.library import Candidate
 from legwright.candidate.model import Anchor, Band
 from legwright.candidate.number import Measure
@@ -27,6 +27,7 @@ from legwright.physics.lattice import (
     optical_conductivity,
 )
 from legwright.physics.moments import mobility, seebeck
+from legwright.physics.phonon_scattering import vacancy_disorder
 from legwright.physics.texture import effective_size_ratio, porous_share
 
 Array = NDArray[np.float64]
@@ -57,10 +58,12 @@ def crystal(candidate: Candidate) -> Crystal:
     """
     bare = Crystal(_electrons(candidate), _phonons(candidate))
     electrons = _fix_electrons(candidate, bare.electrons)
-    making = candidate.data.making
+    making, brought = candidate.data.making, _brought_by_making(candidate)
+    as_anchored = _weighing(bare.phonons, brought, 0.0)
+    phonons = _fix_phonons(candidate, Crystal(electrons, as_anchored))
     return Crystal(
         electrons,
-        _fix_phonons(candidate, replace(bare, electrons=electrons)),
+        _weighing(phonons, brought, 1.0),
         size_ratio=float(effective_size_ratio(_si(making.size_spread))),
         dense_share=float(porous_share(_si(making.porosity))),
     )
@@ -118,6 +121,7 @@ def _phonons(candidate: Candidate) -> Phonons:
     data, disorder = candidate.data, candidate.disorder
     lattice, law = data.lattice, load_priors().grain_law
     dopant = dopant_disorder(data.doping, disorder.mean_mass)
+    roughness = data.making.wall_roughness
     return Phonons(
         speed=np.array([lattice.sound_longitudinal.si, lattice.sound_transverse.si]),
         grueneisen=np.array([lattice.grueneisen_longitudinal.si, lattice.grueneisen_transverse.si]),
@@ -135,7 +139,43 @@ def _phonons(candidate: Candidate) -> Phonons:
         density=_density(candidate),
         grain_exponent=law.exponent.si,
         grain_prefactor=law.prefactor.si,
+        wall_roughness=roughness.si if roughness else None,
+        **_defects(candidate),
     )
+
+
+def _defects(candidate: Candidate) -> dict[str, float]:
+    """Fields of Phonons that the optional tables of defects fill."""
+    lattice, mean_mass = candidate.data.lattice, candidate.disorder.mean_mass
+    made: dict[str, float] = {}
+    if missing := lattice.vacancies:
+        mass = atomic_mass(missing.element)
+        made["vacancy_disorder"] = float(vacancy_disorder(missing.share.si, mass, mean_mass))
+    if lines := lattice.dislocations:
+        made |= {"dislocation_density": lines.density.si, "burgers_vector": lines.burgers_vector.si}
+    if inclusions := lattice.precipitates:
+        made |= {
+            "precipitate_share": inclusions.volume_share.si,
+            "precipitate_radius": inclusions.radius.si,
+            "precipitate_spread": _si(inclusions.radius_spread),
+            "precipitate_contrast": inclusions.mass_density.si / _density(candidate) - 1,
+        }
+    return made
+
+
+def _weighing(phonons: Phonons, names: list[str], weight: float) -> Phonons:
+    return replace(phonons, **dict.fromkeys(names, weight))  # type: ignore[arg-type]
+
+
+def _brought_by_making(candidate: Candidate) -> list[str]:
+    """Weights of the defects that the anchors' samples do not hold."""
+    lattice = candidate.data.lattice
+    tables = {
+        "vacancy_weight": lattice.vacancies,
+        "dislocation_weight": lattice.dislocations,
+        "precipitate_weight": lattice.precipitates,
+    }
+    return [weight for weight, table in tables.items() if table is not None and not table.in_anchors]
 
 
 _BULK = np.array(np.inf)

@@ -5,6 +5,7 @@ Axes: whatever temperature, doping and size broadcast to, then branches (longitu
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cache
 
@@ -14,6 +15,7 @@ from numpy.typing import NDArray
 from legwright.base.units import HBAR, K_B
 from legwright.physics import phonon_scattering as scattering
 from legwright.physics.boundaries import film_suppression, grain_mean_free_path, wire_suppression
+from legwright.physics.rough_walls import rough_walls
 from legwright.physics.short_legs import short_leg_suppression
 from legwright.physics.spectra import PathMesh, through
 
@@ -29,7 +31,8 @@ class Phonons:
     """Branches and scatterers in SI; arrays are (longitudinal, transverse).
 
     `anharmonic_scale` multiplies Umklapp and normal rates, `strain_scale` the strain parameter;
-    the weights switch processes for tests and explanations.
+    the weights switch processes for tests and explanations. `wall_roughness` (m): root mean square height of the
+    walls of wires and films; None: they scatter every wave.
     """
 
     speed: Array
@@ -48,12 +51,23 @@ class Phonons:
     density: float
     grain_exponent: float
     grain_prefactor: float
+    wall_roughness: float | None = None
+    vacancy_disorder: float = 0.0
+    dislocation_density: float = 0.0
+    burgers_vector: float = 0.0
+    precipitate_share: float = 0.0
+    precipitate_radius: float = 0.0
+    precipitate_spread: float = 0.0
+    precipitate_contrast: float = 0.0
     anharmonic_scale: float = 1.0
     strain_scale: float = 1.0
     umklapp_weight: float = 1.0
     normal_weight: float = 1.0
     defect_weight: float = 1.0
     carrier_weight: float = 1.0
+    vacancy_weight: float = 1.0
+    dislocation_weight: float = 1.0
+    precipitate_weight: float = 1.0
 
     @property
     def zone_edge(self) -> float:
@@ -129,17 +143,26 @@ def mode_heat(omega: Array, temperature: Array) -> Array:
 
 @dataclass(frozen=True)
 class Rates:
-    """Rates inside an unbounded crystal at each (T, doping): those that resist, and normal processes."""
+    """Rates inside an unbounded crystal at each (T, doping): those that resist, and normal processes.
+
+    `defects` are point defects with vacancies; None: the crystal has none of these.
+    """
 
     umklapp: Array
     defects: Array
     carriers: Array
     normal: Array
+    dislocations: Array | None = None
+    precipitates: Array | None = None
 
     @property
     def resistive(self) -> Array:
         """All that destroys crystal momentum."""
-        return self.umklapp + self.defects + self.carriers
+        total = self.umklapp + self.defects + self.carriers
+        for extended in (self.dislocations, self.precipitates):
+            if extended is not None:
+                total = total + extended
+        return total
 
 
 def crystal_rates(
@@ -157,6 +180,7 @@ def crystal_rates(
         phonons.mass_variance
         + strain * phonons.size_variance
         + per_atom * (phonons.dopant_mass_variance + strain * phonons.dopant_size_variance)
+        + phonons.vacancy_weight * phonons.vacancy_disorder
     )
     umklapp = scattering.umklapp_rate(mesh.omega, t, strength, theta[:, None], phonons.umklapp_divisor)
     normal = scattering.normal_rate(mesh.omega, t, strength, phonons.normal_ratio)
@@ -179,7 +203,37 @@ def crystal_rates(
         phonons.defect_weight * defects,
         by_carriers,
         phonons.normal_weight * normal,
+        *_extended_defects(phonons, mesh),
     )
+
+
+def _extended_defects(phonons: Phonons, mesh: Modes) -> tuple[Array | None, Array | None]:
+    """Rates of dislocations, cores and strain together, and of precipitates; None where there are none."""
+    lines = inclusions = None
+    if phonons.dislocation_density:
+        density, speed = phonons.dislocation_density, phonons.speed[:, None]
+        cores = scattering.dislocation_core_rate(mesh.omega, speed, density, phonons.volume_per_atom)
+        strain = scattering.dislocation_strain_rate(
+            mesh.omega, density, phonons.burgers_vector, phonons.grueneisen[:, None]
+        )
+        lines = phonons.dislocation_weight * (cores + strain)
+    if phonons.precipitate_share:
+        inclusions = phonons.precipitate_weight * scattering.precipitate_rate(
+            mesh.q,
+            mesh.velocity,
+            phonons.precipitate_share,
+            phonons.precipitate_radius,
+            phonons.precipitate_contrast,
+            phonons.precipitate_spread,
+        )
+    return lines, inclusions
+
+
+def wall_suppression(phonons: Phonons, mesh: Modes, shape: str) -> Callable[[Array], Array]:
+    """What the wall of a wire or film leaves of each mode, as a function of path over size (..., modes)."""
+    if phonons.wall_roughness is None:
+        return wire_suppression if shape == "wire" else film_suppression
+    return rough_walls(shape, tuple((mesh.q * phonons.wall_roughness).tolist()))
 
 
 def acoustic_conductivity(
@@ -189,7 +243,8 @@ def acoustic_conductivity(
 
     κ = Σ∫ w C v² τ_C + [Σ∫ w C (v q/ω) τ_C/τ_N]²/Σ∫ w C (q/ω)² τ_C/(τ_N τ_R),  w = q² dq/6π²,
     1/τ_C = 1/τ_N + 1/τ_R; one drift velocity is shared by the branches. Grains add v/Λ_gb to 1/τ_R; walls
-    of wires and films multiply τ_C by the exact kinetic factor, and 1/τ_R is what then is left of 1/τ_C.
+    of wires and films multiply τ_C by the exact kinetic factor (with `wall_roughness`, that of the mode's wave
+    number), and 1/τ_R is what then is left of 1/τ_C.
     Sources: Callaway, Physical Review 113, 1046 (1959); Allen, Physical Review B 88, 144302 (2013).
     """
     heat = mesh.weight * mode_heat(mesh.omega, temperature[..., None, None])
@@ -202,8 +257,7 @@ def acoustic_conductivity(
         combined = 1 / (resistive + normal)
     else:
         bulk = 1 / (resistive + normal)
-        suppress = wire_suppression if shape == "wire" else film_suppression
-        combined = bulk * suppress(mesh.velocity * bulk / d)
+        combined = bulk * wall_suppression(phonons, mesh, shape)(mesh.velocity * bulk / d)
         resistive = 1 / combined - normal
     direct = np.sum(heat * mesh.velocity**2 * combined, axis=(-2, -1))
     slowness = mesh.q / mesh.omega
@@ -281,7 +335,7 @@ def heat_spectrum(phonons: Phonons, mesh: Modes, rates: Rates, temperature: Arra
 
 
 def conductivity_at(spectrum: HeatSpectrum, size: Array, shape: str) -> Array:
-    """`acoustic_conductivity` at each size, W/(m K), from a heat spectrum."""
+    """`acoustic_conductivity` at each size, W/(m K), from a heat spectrum; walls scatter every wave."""
     crossed = PATHS.paths / size[..., None]
     if shape == "grain":
         kept = 1 / (1 + crossed)
@@ -291,6 +345,15 @@ def conductivity_at(spectrum: HeatSpectrum, size: Array, shape: str) -> Array:
     lost = spectrum.untouched - held
     carried = np.divide(drift**2, lost, out=np.zeros_like(direct), where=(drift > 0) & (lost > 0))
     return np.asarray(direct + carried)
+
+
+def conductivity_by_size(
+    phonons: Phonons, mesh: Modes, rates: Rates, temperature: Array, size: Array, shape: str
+) -> Array:
+    """`acoustic_conductivity` by the quickest way: through the spectrum where a boundary acts by path alone."""
+    if phonons.wall_roughness is not None and shape != "grain":
+        return acoustic_conductivity(phonons, mesh, rates, temperature, size, shape)
+    return conductivity_at(heat_spectrum(phonons, mesh, rates, temperature, shape), size, shape)
 
 
 def _glass_integral(phonons: Phonons, temperature: Array, from_share: float) -> Array:

@@ -31,9 +31,8 @@ from legwright.physics.crystal import Crystal, crystal, majority_carriers
 from legwright.physics.hall import hall_coefficient, hall_factor
 from legwright.physics.lattice import (
     amorphous_minimum,
-    conductivity_at,
+    conductivity_by_size,
     crystal_rates,
-    heat_spectrum,
     modes,
     optical_conductivity,
 )
@@ -50,8 +49,9 @@ COLDEST, HOTTEST = 2.0, 3000.0
 THINNEST, DENSEST = 1e12, 1e29
 SMALLEST, LARGEST = 1e-10, 1.0
 
-#: states (T, doping) and design points of one block: memory grows with the block, not with the map
-_STATES, _POINTS = 256, 400_000
+#: states (T, doping) and design points of one block: memory grows with the block, not with the map; rough walls
+#: act on each mode by itself
+_STATES, _POINTS, _POINTS_BY_MODE = 256, 400_000, 4_000
 
 
 @dataclass(frozen=True)
@@ -197,9 +197,10 @@ def _evaluate_blocks(one: Crystal, t: Array, n: Array, d: Array, shape: str, blo
     """Split the longest axis until a block is small; each point's sums do not depend on the split."""
     states = np.broadcast_shapes(t.shape, n.shape)
     whole = np.broadcast_shapes(states, d.shape)
+    points = _POINTS if one.phonons.wall_roughness is None else _POINTS_BY_MODE
     if int(np.prod(states)) > _STATES:
         axis = int(np.argmax(states))
-    elif int(np.prod(whole)) > _POINTS:
+    elif int(np.prod(whole)) > points:
         axis = int(np.argmax(whole))
     else:
         return block(one, t, n, d, shape)
@@ -227,7 +228,7 @@ def _evaluate_block(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> d
     one_sided = [moments.electronic_heat(part.l0, part.l1, part.l2, t) for part in (up, down)]
     mesh = modes(phonons)
     rates = crystal_rates(phonons, mesh, t, n, majority_carriers(electrons, filled_t, filling.eta))
-    acoustic = conductivity_at(heat_spectrum(phonons, mesh, rates, filled_t, shape), d, shape)
+    acoustic = conductivity_by_size(phonons, mesh, rates, filled_t, d, shape)
     moving = up if electrons.carrier > 0 else down
     parts = {
         "electrical_conductivity": dense * moments.conductivity(up.l0 + down.l0),
@@ -235,7 +236,7 @@ def _evaluate_block(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> d
         "electronic_thermal_conductivity": dense * (one_sided[0] + one_sided[1] + bipolar),
         "bipolar_thermal_conductivity": dense * bipolar,
         "lattice_thermal_conductivity": dense * (acoustic + optical_conductivity(phonons, t)),
-        "amorphous_minimum": amorphous_minimum(phonons, t),
+        "amorphous_minimum": dense * amorphous_minimum(phonons, t),
         "mobility": dense * moments.mobility(moving.l0, np.sum(filling.density[..., electrons.majority], axis=-1)),
     }
     whole = np.broadcast_shapes(t.shape, n.shape, d.shape)

@@ -7,10 +7,10 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from legwright.physics.boundaries import film_suppression, grain_mean_free_path, wire_suppression
+from legwright.physics.boundaries import grain_mean_free_path
 from legwright.physics.carriers import bulk_flow, fill, held_back
 from legwright.physics.crystal import Crystal, majority_carriers
-from legwright.physics.lattice import crystal_rates, mode_heat, modes
+from legwright.physics.lattice import crystal_rates, mode_heat, modes, wall_suppression
 
 Array = NDArray[np.float64]
 
@@ -66,7 +66,7 @@ def thermal_limits(one: Crystal, temperature: float, doping: float, size: float,
         reach = grain_mean_free_path(acting, ratio, phonons.grain_exponent, phonons.grain_prefactor)
         boundary = mesh.velocity / reach
     else:
-        kept = (wire_suppression if shape == "wire" else film_suppression)(path / size)
+        kept = wall_suppression(phonons, mesh, shape)(path / size)
         boundary = (1 / kept - 1) / lifetime
     rates = {
         "Umklapp": inside.umklapp,
@@ -74,6 +74,9 @@ def thermal_limits(one: Crystal, temperature: float, doping: float, size: float,
         "carriers": np.broadcast_to(inside.carriers, path.shape),
         _boundary(shape): boundary,
     }
+    for name, rate in (("dislocations", inside.dislocations), ("precipitates", inside.precipitates)):
+        if rate is not None:
+            rates[name] = rate
     heat = mesh.weight * mode_heat(mesh.omega, t) * mesh.velocity**2
     return _limits(rates, heat / (1 / lifetime + boundary), path, heat * lifetime)
 
