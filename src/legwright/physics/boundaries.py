@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from legwright.physics.pieces import Pieces
-from legwright.physics.rough_walls import rough_suppression
+from legwright.physics.rough_walls import flight, rough_suppression
 
 Array = NDArray[np.float64]
 
@@ -127,16 +127,9 @@ def wire_suppression_rough(mfp_over_diameter: ArrayLike, roughness: ArrayLike) -
 
 def _path_kept(x: Array, p: ArrayLike) -> Array:
     """B(x, p) = 1 − (1 − p)(1 − e⁻ˣ)/(x (1 − p e⁻ˣ)): mean share of a mean free path kept, wall to wall x."""
-    p = np.asarray(p, dtype=float)
-    x = np.maximum(x, 1e-300)
-    fall = -np.expm1(-x)
-    direct = 1 - (1 - p) * fall / (x * (1 - p + p * fall))
-    # below 1e-2 the difference cancels; numerator and denominator are expanded instead
-    short = x < 1e-2
-    y = np.where(short, x, 0.0)
-    lack = y * (1 / 2 - y * (1 / 6 - y * (1 / 24 - y * (1 / 120 - y / 720))))  # 1 − (1 − e⁻ʸ)/y
-    near = (p * y * (1 - lack) + (1 - p) * lack) / np.maximum(1 - p + p * y * (1 - lack), 1e-300)
-    return np.where(short, near, direct)
+    fall, lack = flight(np.maximum(x, 1e-300))
+    mirrored = np.asarray(p, dtype=float)
+    return np.asarray(((1 - mirrored) * lack + mirrored * fall) / (1 - mirrored + mirrored * fall))
 
 
 @cache

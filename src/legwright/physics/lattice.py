@@ -10,7 +10,7 @@ from dataclasses import dataclass
 from functools import cache
 
 import numpy as np
-from numpy.typing import NDArray
+from numpy.typing import ArrayLike, NDArray
 
 from legwright.base.units import HBAR, K_B
 from legwright.physics import phonon_scattering as scattering
@@ -236,6 +236,12 @@ def wall_suppression(phonons: Phonons, mesh: Modes, shape: str) -> Callable[[Arr
     return rough_walls(shape, tuple((mesh.q * phonons.wall_roughness).tolist()))
 
 
+def grain_path(phonons: Phonons, mesh: Modes, size: ArrayLike) -> Array:
+    """`grain_mean_free_path` of each mode, m; size (m) carries axes for branches and modes already."""
+    ratio = mesh.omega / phonons.top_frequency[:, None]
+    return grain_mean_free_path(size, ratio, phonons.grain_exponent, phonons.grain_prefactor)
+
+
 def acoustic_conductivity(
     phonons: Phonons, mesh: Modes, rates: Rates, temperature: Array, size: Array, shape: str
 ) -> Array:
@@ -251,9 +257,7 @@ def acoustic_conductivity(
     resistive, normal = rates.resistive, rates.normal
     d = size[..., None, None]
     if shape == "grain":
-        ratio = mesh.omega / phonons.top_frequency[:, None]
-        free_path = grain_mean_free_path(d, ratio, phonons.grain_exponent, phonons.grain_prefactor)
-        resistive = resistive + mesh.velocity / free_path
+        resistive = resistive + mesh.velocity / grain_path(phonons, mesh, d)
         combined = 1 / (resistive + normal)
     else:
         bulk = 1 / (resistive + normal)
@@ -324,8 +328,7 @@ def heat_spectrum(phonons: Phonons, mesh: Modes, rates: Rates, temperature: Arra
     slowness = mesh.q / mesh.omega
     path = mesh.velocity * lifetime
     if shape == "grain":
-        ratio = mesh.omega / phonons.top_frequency[:, None]
-        path = path / grain_mean_free_path(1.0, ratio, phonons.grain_exponent, phonons.grain_prefactor)
+        path = path / grain_path(phonons, mesh, 1.0)
     shared = heat * slowness * lifetime * normal
     parts = [heat * mesh.velocity**2 * lifetime, shared * mesh.velocity, shared * slowness * normal]
     values = np.stack(parts, axis=-3)

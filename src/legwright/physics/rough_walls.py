@@ -92,7 +92,7 @@ def _wire_paths() -> tuple[Array, Array, Array]:
 _PATHS = {"film": _film_paths, "wire": _wire_paths}
 
 
-def _flight(x: Array) -> tuple[Array, Array]:
+def flight(x: Array) -> tuple[Array, Array]:
     """1 − e⁻ˣ, and 1 − (1 − e⁻ˣ)/x, expanded below 1e-2 where it cancels."""
     fall = -np.expm1(-x)
     y = np.where(x < 1e-2, x, 0.0)
@@ -114,7 +114,7 @@ def _integrate(shape: str, knudsen: Array, rough: Array) -> Array:
     result = np.empty((rough.size, knudsen.size))
     for start in range(0, knudsen.size, 16):  # few enough to stay in the processor's cache
         part = slice(start, start + 16)
-        fall, lack = _flight(paths / knudsen[part, None])
+        fall, lack = flight(paths / knudsen[part, None])
         for wave in range(rough.size):
             result[wave, part] = _mean_kept(fall, lack, mirrored[wave], lost[wave], shares)
     return result
@@ -131,7 +131,7 @@ def rough_suppression(shape: str, knudsen: ArrayLike, rough: ArrayLike) -> Array
     block = max(1, 500_000 // paths.size)
     for start in range(0, flat.size, block):
         part = slice(start, start + block)
-        fall, lack = _flight(paths / flat[part, None])
+        fall, lack = flight(paths / flat[part, None])
         exponent = 4 * (heights[part, None] * cosines) ** 2
         total[part] = _mean_kept(fall, lack, np.exp(-exponent), -np.expm1(-exponent), shares)
     return np.asarray(np.where(waves == 0, 1.0, total.reshape(kn.shape)))

@@ -7,10 +7,9 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from legwright.physics.boundaries import grain_mean_free_path
 from legwright.physics.carriers import bulk_flow, fill, held_back
 from legwright.physics.crystal import Crystal, majority_carriers
-from legwright.physics.lattice import crystal_rates, mode_heat, modes, wall_suppression
+from legwright.physics.lattice import crystal_rates, grain_path, mode_heat, modes, wall_suppression
 
 Array = NDArray[np.float64]
 
@@ -61,10 +60,7 @@ def thermal_limits(one: Crystal, temperature: float, doping: float, size: float,
     lifetime = 1 / (inside.resistive + inside.normal)
     path = mesh.velocity * lifetime
     if shape == "grain":
-        ratio = mesh.omega / phonons.top_frequency[:, None]
-        acting = one.acting_size(np.array(size), shape)
-        reach = grain_mean_free_path(acting, ratio, phonons.grain_exponent, phonons.grain_prefactor)
-        boundary = mesh.velocity / reach
+        boundary = mesh.velocity / grain_path(phonons, mesh, one.acting_size(np.array(size), shape))
     else:
         kept = wall_suppression(phonons, mesh, shape)(path / size)
         boundary = (1 / kept - 1) / lifetime
