@@ -32,6 +32,11 @@ Conductivity = Annotated[Measure, measure("W/m/K", 0, above=True)]
 Density = Annotated[Measure, measure("1/m^3", 0, above=True)]
 PerArea = Annotated[Measure, measure("1/m^2", 0)]
 MassDensity = Annotated[Measure, measure("kg/m^3", 0, above=True)]
+PerKelvin = Annotated[Measure, measure("1/K")]
+MolarEnergy = Annotated[Measure, measure("J/mol", 0, above=True)]
+Duration = Annotated[Measure, measure("s", 0, above=True)]
+MassFlow = Annotated[Measure, measure("kg/m^2/s", 0)]
+ContactResistivity = Annotated[Measure, measure("ohm*m^2", 0, above=True)]
 PhononField = Annotated[Measure, measure("J/m", 0, above=True)]
 
 Carrier = Literal["n", "p"]
@@ -72,10 +77,11 @@ class Site(Table):
 
 
 class Cell(Table):
-    """Room per atom and atoms per primitive cell."""
+    """Room per atom, atoms per primitive cell, and linear thermal expansion (mean over the service range)."""
 
     volume_per_atom: Volume
     atoms: Pure
+    thermal_expansion: PerKelvin | None = None
 
 
 class Band(Table):
@@ -167,7 +173,10 @@ class Precipitates(Table):
 
 
 class Lattice(Table):
-    """One longitudinal and two transverse branches, and what scatters them."""
+    """One longitudinal and two transverse branches, and what scatters them.
+
+    `optical_share`: part of the first lattice anchor's conductivity that optical branches carry, where known.
+    """
 
     sound_longitudinal: Speed
     sound_transverse: Speed
@@ -180,6 +189,7 @@ class Lattice(Table):
     vacancies: Vacancies | None = None
     dislocations: Dislocations | None = None
     precipitates: Precipitates | None = None
+    optical_share: Annotated[Measure, measure("1", 0, 0.9)] | None = None
 
 
 class Anchor(Table):
@@ -215,13 +225,15 @@ class Anchor(Table):
 class Doping(Table):
     """Active densities that have been made, and the element that gives them.
 
-    With `solution_enthalpy` the highest density belongs to `solution_temperature` and falls below it.
+    `carriers_per_dopant`: active carriers that one atom of dopant gives (1 where the file is silent). With
+    `solution_enthalpy` the highest density belongs to `solution_temperature` and falls below it.
     """
 
     lowest: Density
     highest: Density
     dopant: str
     replaces: str
+    carriers_per_dopant: Ratio | None = None
     dopant_size: Length | None = None
     host_size: Length | None = None
     solution_enthalpy: Energy | None = None
@@ -234,13 +246,50 @@ class Doping(Table):
         return self
 
 
+class Loss(Table):
+    """A measured rate of sublimation, bare or under the coat that is named."""
+
+    temperature: Kelvin
+    rate: MassFlow
+    coat: str | None = None
+
+
+class Contact(Table):
+    """A measured contact: the metal or joint, and its resistivity."""
+
+    metal: str
+    resistivity: ContactResistivity
+    temperature: Kelvin | None = None
+
+
+class Coarsening(Table):
+    """Grain growth d^m − d_0^m = k_0 exp(−Q/RT) t (Burke & Turnbull 1952), known from one annealing that was watched.
+
+    The annealing took grains from `from_size` to `to_size` in `hours` at `temperature`, which gives k_0.
+    """
+
+    exponent: Annotated[Measure, measure("1", 1)]
+    activation_energy: MolarEnergy
+    temperature: Kelvin
+    from_size: Length
+    to_size: Length
+    hours: Duration
+
+    @model_validator(mode="after")
+    def _grown(self) -> Coarsening:
+        if self.to_size.si <= self.from_size.si:
+            raise ValueError("to_size must be above from_size")
+        return self
+
+
 class Service(Table):
-    """Where the candidate may be used."""
+    """Where the candidate may be used, and what wears it there."""
 
     highest_temperature: Kelvin
     reason: str
     data_from: Kelvin
     data_to: Kelvin
+    sublimation: tuple[Loss, ...] = ()
 
 
 class Making(Table):
@@ -283,6 +332,8 @@ class CandidateFile(Table):
     doping: Doping
     service: Service
     making: Making
+    contact: tuple[Contact, ...] = ()
+    coarsening: Coarsening | None = None
 
     @model_validator(mode="after")
     def _consistent(self) -> CandidateFile:
