@@ -438,3 +438,22 @@ def test_optical_heat_needs_more_than_one_atom_a_cell(make_phonons):
     hot = [float(lattice.optical_conductivity(make_phonons(atoms=n), np.array(1e5))) for n in (2.0, 8.0)]
     whole = float(lattice.amorphous_minimum(make_phonons(), np.array(1e5)))
     assert np.divide(hot, whole) == near([1 - 2 ** (-2 / 3), 3 / 4], rel=1e-5)
+
+
+def test_known_optical_heat_comes_on_top_of_the_least(make_phonons):
+    plain = make_phonons(atoms=2.0)
+    rich = replace(plain, optical_excess=0.5, optical_temperature=300.0)
+    t = np.array([300.0, 600.0, 1200.0])
+    more = lattice.optical_conductivity(rich, t) - lattice.optical_conductivity(plain, t)
+    top = float(np.max(plain.top_frequency))
+    held = [einstein_share(HBAR * top / (K_B * float(one))) for one in t]
+    # Einstein heat capacity over T, both relative to 300 K
+    assert more == near([0.5 * c / held[0] * 300.0 / one for c, one in zip(held, t, strict=True)], rel=1e-12)
+    cold = np.array(3.0)  # frozen out: exp(−θ/3 K) beats 1/T
+    gone = lattice.optical_conductivity(rich, cold) - lattice.optical_conductivity(plain, cold)
+    assert 0 <= gone < 1e-9
+
+
+def einstein_share(x: float) -> float:
+    """x² eˣ/(eˣ − 1)²: Einstein 1907, in plain floats."""
+    return x**2 * math.exp(x) / math.expm1(x) ** 2

@@ -28,6 +28,15 @@ MEANINGS: dict[str, str] = {
     "doping-outside-known-range": (
         "The doping lies outside the range in which the candidate's file says it has been made active."
     ),
+    "dopant-beyond-solubility": (
+        "Where the leg is hot enough for its dopant to move (above half the temperature of its highest solubility; "
+        "common practice), the doping is more than the crystal holds there in balance: it was frozen in and will "
+        "precipitate in long service, and conductivity falls with it."
+    ),
+    "thin-wire-subbands": (
+        "The wire is so thin that the first subbands of its carriers lie more than k_B T apart: walls that scatter "
+        "bulk carriers no longer describe it."
+    ),
     "temperature-outside-data": (
         "Part of the temperature range lies outside the span over which the candidate's parameters were checked."
     ),

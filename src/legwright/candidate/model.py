@@ -263,7 +263,7 @@ class Contact(Table):
 
 
 class Coarsening(Table):
-    """Grain growth d^m − d_0^m = k_0 exp(−Q/RT) t (Burke & Turnbull 1952), known from one annealing that was watched.
+    """Grain growth d^m − d_0^m = k_0 exp(−Q/RT) t (Burke & Turnbull 1952), from one annealing that was watched.
 
     The annealing took grains from `from_size` to `to_size` in `hours` at `temperature`, which gives k_0.
     """
@@ -355,6 +355,13 @@ class CandidateFile(Table):
         missing = self.lattice.vacancies
         if missing is not None and missing.element not in hosts:
             raise ValueError(f"lattice.vacancies.element '{missing.element}' is not in the formula")
+        if self.lattice.optical_share is not None:
+            if self.cell.atoms.si <= 1:
+                raise ValueError("lattice.optical_share: one atom per primitive cell has no optical branch")
+            if not any(anchor.quantity == "lattice_conductivity" for anchor in self.anchor):
+                raise ValueError(
+                    "lattice.optical_share is a part of the first lattice_conductivity anchor: none given"
+                )
         return self
 
 

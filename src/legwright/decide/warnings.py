@@ -3,9 +3,14 @@
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
 from legwright.candidate.library import Candidate
 from legwright.physics.properties import Properties
+from legwright.physics.solubility import beyond_solubility
+from legwright.physics.subbands import thin_wire_diameter
+
+Array = NDArray[np.float64]
 
 
 def point_flags(candidate: Candidate, made: Properties, shape: str) -> list[str]:
@@ -17,6 +22,10 @@ def point_flags(candidate: Candidate, made: Properties, shape: str) -> list[str]
         made.doping > data.doping.highest.si * (1 + 1e-9)
     ):
         flags.append("doping-outside-known-range")
+    if np.any(beyond_solubility(data.doping, made.temperature, made.doping)):
+        flags.append("dopant-beyond-solubility")
+    if shape == "wire" and np.any(made.size < _subband_limit(made)):
+        flags.append("thin-wire-subbands")
     if np.any(made.temperature < data.service.data_from.si) or np.any(made.temperature > data.service.data_to.si):
         flags.append("temperature-outside-data")
     if np.any(made.temperature > data.service.highest_temperature.si):
@@ -35,3 +44,9 @@ def point_flags(candidate: Candidate, made: Properties, shape: str) -> list[str]
     if counts.get("from memory", 0) > 0.5 * sum(counts.values()):
         flags.append("from-memory")
     return flags
+
+
+def _subband_limit(made: Properties) -> Array:
+    """Diameter at which the lightest of the majority's bands shows its subbands, m."""
+    electrons = made.crystal.electrons
+    return thin_wire_diameter(made.temperature, float(np.min(electrons.inertial_mass[electrons.majority])))

@@ -59,7 +59,7 @@ def crystal(candidate: Candidate) -> Crystal:
     bare = Crystal(_electrons(candidate), _phonons(candidate))
     electrons = _fix_electrons(candidate, bare.electrons)
     making, brought = candidate.data.making, _brought_by_making(candidate)
-    as_anchored = _weighing(bare.phonons, brought, 0.0)
+    as_anchored = _weighing(_with_optical_heat(candidate, bare.phonons), brought, 0.0)
     phonons = _fix_phonons(candidate, Crystal(electrons, as_anchored))
     return Crystal(
         electrons,
@@ -161,6 +161,17 @@ def _defects(candidate: Candidate) -> dict[str, float]:
             "precipitate_contrast": inclusions.mass_density.si / _density(candidate) - 1,
         }
     return made
+
+
+def _with_optical_heat(candidate: Candidate, phonons: Phonons) -> Phonons:
+    """With the heat of optical branches that the file knows of, beyond what they carry at least."""
+    share = candidate.data.lattice.optical_share
+    if share is None:
+        return phonons
+    anchor = next(a for a in candidate.data.anchor if a.quantity == "lattice_conductivity")
+    known = share.si * anchor.measured.si
+    least = float(optical_conductivity(phonons, np.array(anchor.temperature.si)))
+    return replace(phonons, optical_excess=max(known - least, 0.0), optical_temperature=anchor.temperature.si)
 
 
 def _weighing(phonons: Phonons, names: list[str], weight: float) -> Phonons:

@@ -32,7 +32,8 @@ class Phonons:
 
     `anharmonic_scale` multiplies Umklapp and normal rates, `strain_scale` the strain parameter;
     the weights switch processes for tests and explanations. `wall_roughness` (m): root mean square height of the
-    walls of wires and films; None: they scatter every wave.
+    walls of wires and films; None: they scatter every wave. `optical_excess` (W/(m K)): what optical branches carry
+    at `optical_temperature` (K) beyond the least that they can.
     """
 
     speed: Array
@@ -59,6 +60,8 @@ class Phonons:
     precipitate_radius: float = 0.0
     precipitate_spread: float = 0.0
     precipitate_contrast: float = 0.0
+    optical_excess: float = 0.0
+    optical_temperature: float = 300.0
     anharmonic_scale: float = 1.0
     strain_scale: float = 1.0
     umklapp_weight: float = 1.0
@@ -383,9 +386,29 @@ def amorphous_minimum(phonons: Phonons, temperature: Array) -> Array:
 
 
 def optical_conductivity(phonons: Phonons, temperature: Array) -> Array:
-    """Heat of the modes above the acoustic branches, W/(m K): the part of Cahill's integral beyond q_D.
+    """Heat of the modes above the acoustic branches, W/(m K), temperature in K: independent of size.
 
-    Taken as independent of size: such modes hardly travel. Zero with one atom per primitive cell.
-    Source of the split: Toberer, Zevalkink & Snyder, Journal of Materials Chemistry 21, 15843 (2011).
+    κ_o = κ_tail(T) + κ_x [c(T)/c(T_x)] (T_x/T). κ_tail is the part of Cahill's integral beyond q_D, the least that
+    such modes carry; κ_x, where optical heat is known, is what they carry beyond it at T_x, with lifetimes that
+    fall as 1/T (three phonons, hot crystal) and c the heat capacity of modes of the acoustic branches' top
+    frequency. Such modes hardly travel, so boundaries leave them alone. Zero with one atom per primitive cell.
+    Sources: Toberer, Zevalkink & Snyder, Journal of Materials Chemistry 21, 15843 (2011) for the split; Klemens,
+    Physical Review 148, 845 (1966) for the lifetimes.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> one = crystal(load_candidate("si-n")).phonons
+    >>> 0.1 < float(optical_conductivity(one, np.array(300.0))) < float(amorphous_minimum(one, np.array(300.0)))
+    True
     """
-    return _glass_integral(phonons, temperature, float(phonons.atoms ** (-1 / 3)))
+    least = _glass_integral(phonons, temperature, float(phonons.atoms ** (-1 / 3)))
+    if not phonons.optical_excess:
+        return least
+
+    top = np.asarray(np.max(phonons.top_frequency))
+
+    def held(t: ArrayLike) -> Array:
+        return mode_heat(top, np.asarray(t))
+
+    known_at = phonons.optical_temperature
+    return np.asarray(least + phonons.optical_excess * held(temperature) / held(known_at) * known_at / temperature)

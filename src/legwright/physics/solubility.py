@@ -86,3 +86,23 @@ def active_limit(doping: Doping, temperature: ArrayLike) -> Array:
     if doping.solution_enthalpy is None or doping.solution_temperature is None:
         return np.full(np.shape(temperature), doping.highest.si)
     return solubility(doping.highest.si, doping.solution_enthalpy.si, doping.solution_temperature.si, temperature)
+
+
+#: dopants move above this share of the temperature of highest solubility: half the melting point is common practice
+_MOVING = 0.5
+
+
+def beyond_solubility(doping: Doping, temperature: ArrayLike, density: ArrayLike) -> NDArray[np.bool_]:
+    """Where `density` (1/m³) is more than `active_limit` at a temperature (K) at which dopants move; broadcast.
+
+    False everywhere for a candidate without solubility data.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> bool(beyond_solubility(load_candidate("si-n").data.doping, 300.0, 1e30))
+    False
+    """
+    t, n = np.broadcast_arrays(np.asarray(temperature, dtype=float), np.asarray(density, dtype=float))
+    if doping.solution_temperature is None:
+        return np.zeros(t.shape, dtype=bool)
+    moving = (t > _MOVING * doping.solution_temperature.si) & (t <= doping.solution_temperature.si)
+    return np.asarray(moving & (n > active_limit(doping, t) * (1 + 1e-9)))
