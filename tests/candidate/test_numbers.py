@@ -9,6 +9,7 @@ import tomli
 
 from legwright.base.files import datasets_folder
 from legwright.base.units import si_factor
+from legwright.candidate.family import families_folder, family_names, load_family
 from legwright.candidate.library import candidates_folder, library_names, load_candidate
 from legwright.candidate.model import numbers
 from legwright.candidate.number import Basis
@@ -19,11 +20,12 @@ DEMO = Path(__file__).resolve().parents[2] / "examples" / "candidates"
 FILES = [
     *sorted(candidates_folder().glob("*.toml")),
     *sorted(DEMO.glob("*.toml")),
+    *sorted(families_folder().glob("*.toml")),
     datasets_folder() / "priors.toml",
 ]
 
 #: what may stand as a bare figure: how the file is written, and the chemical formula
-BARE = {"schema", "count", "occupants"}
+BARE = {"schema", "count", "occupants", "shares", "most"}
 
 
 def walk(value: Any, key: str = "") -> list[tuple[str, Any]]:
@@ -75,6 +77,7 @@ def test_every_cited_source_is_in_the_bibliography():
     entries = bibliography(candidates_folder())
     cited = {n.source for name in library_names() for _, n in numbers(load_candidate(name).data)}
     cited |= {number.source for _, number in numbers(load_priors())}
+    cited |= {number.source for name in family_names() for _, number in numbers(load_family(name).data)}
     assert cited <= entries.keys()
 
 

@@ -5,6 +5,9 @@ import pytest
 NOBODY = {
     "too hot": ({"duty.hot_K": "1600"}, "above-service-temperature"),
     "avoided": ({"avoid.elements": '["Ge"]'}, "avoided-element"),
+    "hazardous": ({"avoid.hazardous": "true", "candidates.use": '["sige-n"]'}, "hazardous-element"),
+    "costly": ({"avoid.cost_above_USD_per_kg": "100.0"}, "too-costly"),
+    "few hands": ({"avoid.supply_concentration_above": "4800.0"}, "supply-too-concentrated"),
     "avoided dopant": ({"avoid.elements": '["P"]'}, "avoided-element"),
     "no such doping": (
         {"doping.min_per_cm3": "1e15", "doping.max_per_cm3": "1e16"},

@@ -12,6 +12,13 @@ MEANINGS: dict[str, str] = {
     "duty-out-of-reach": "No current lets this leg serve the duty (a cooler cannot span the asked difference).",
     "no-doping-range": "The brief's doping range and the candidate's own do not overlap. Score 0.",
     "avoided-element": "The candidate contains an element that the brief avoids. Score 0.",
+    "hazardous-element": (
+        "The candidate contains an element on the list of hazards, and the brief avoids those. Score 0."
+    ),
+    "too-costly": "The elements of a kilogram cost more than the brief allows (prices of 2013). Score 0.",
+    "supply-too-concentrated": (
+        "The production of its elements is in fewer hands than the brief allows, or is not known. Score 0."
+    ),
     "window-open": (
         "The score is still within 5 % of its best at a limit of the size range, so that end of the window "
         "is the limit, not a loss of performance."

@@ -6,6 +6,8 @@ from dataclasses import dataclass
 from functools import cache, cached_property
 from pathlib import Path
 
+from pydantic import BaseModel
+
 from legwright.base.errors import InputError, nearest
 from legwright.base.files import datasets_folder, read_toml
 from legwright.base.reading import read_as
@@ -16,11 +18,15 @@ from legwright.candidate.sources import source_keys
 
 @dataclass(frozen=True, eq=False)
 class Candidate:
-    """A material under consideration: its name, its file and what the file says."""
+    """A material under consideration: its name, its file and what the file says.
+
+    `relatives`: for a member of a family, the candidates whose anchors fix its prefactors, each with its weight.
+    """
 
     name: str
     path: Path
     data: CandidateFile
+    relatives: tuple[tuple[Candidate, float], ...] = ()
 
     @cached_property
     def disorder(self) -> Disorder:
@@ -54,18 +60,25 @@ def library_names() -> tuple[str, ...]:
 
 
 def load_candidate(name_or_path: str | Path) -> Candidate:
-    """The candidate of that library name, or in that file.
+    """The candidate of that library name, in that file, or at a composition of a family ('si-ge-n:0.3').
 
     Raises InputError, naming file, key, value and what is allowed, when it cannot be used.
 
     >>> load_candidate("si-n").data.carrier
     'n'
     """
+    from legwright.candidate import family
+
     text = str(name_or_path)
+    if composed := family.family_of(text):
+        name, shares = composed
+        return family.member(family.load_family(name), shares)
     if text in library_names():
         path = candidates_folder() / f"{text}.toml"
     elif "/" in text or text.endswith(".toml") or stamp(Path(text)):
         path = Path(text)
+    elif text in family.family_names():
+        raise InputError(f"'{text}' is a family: give a composition, such as '{text}:0.2'")
     else:
         raise InputError(f"no candidate '{text}' in the library; {nearest(text, library_names())}")
     return _read(path, text, stamp(path), stamp(path.parent / "sources.bib"))
@@ -83,6 +96,17 @@ def stamp(path: Path) -> tuple[int, int] | None:
 @cache
 def _read(path: Path, shown: str, *_stamps: tuple[int, int] | None) -> Candidate:
     data = read_as(CandidateFile, read_toml(path, shown), shown)
+    check_sources(data, path, shown)
+    candidate = Candidate(path.stem, path.resolve(), data)
+    try:
+        _ = candidate.disorder
+    except InputError as error:
+        raise InputError(str(error), file=shown, key="site") from error
+    return candidate
+
+
+def check_sources(data: BaseModel, path: Path, shown: str) -> None:
+    """InputError for a number whose source stands in no bibliography that the file may cite."""
     known = source_keys(path.parent)
     for key, number in numbers(data):
         if number.source not in known:
@@ -92,9 +116,3 @@ def _read(path: Path, shown: str, *_stamps: tuple[int, int] | None) -> Candidate
                 file=shown,
                 key=key,
             )
-    candidate = Candidate(path.stem, path.resolve(), data)
-    try:
-        _ = candidate.disorder
-    except InputError as error:
-        raise InputError(str(error), file=shown, key="site") from error
-    return candidate

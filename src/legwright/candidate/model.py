@@ -376,8 +376,11 @@ def numbers(table: BaseModel, prefix: str = "") -> Iterator[tuple[str, Measure]]
             yield from numbers(value, key)
         elif isinstance(value, tuple):
             for index, item in enumerate(value):
-                if isinstance(item, BaseModel):
-                    yield from numbers(item, f"{key}[{index + 1}]")
+                place = f"{key}[{index + 1}]"
+                if isinstance(item, Measure):
+                    yield place, item
+                elif isinstance(item, BaseModel):
+                    yield from numbers(item, place)
         elif isinstance(value, dict):
             for inner, item in value.items():
                 if isinstance(item, Measure):

@@ -87,6 +87,9 @@ class AvoidTable(Table):
     """What must not be in the leg."""
 
     elements: tuple[str, ...] = ()
+    hazardous: bool = False
+    cost_above_USD_per_kg: Annotated[float, Field(gt=0)] | None = None
+    supply_concentration_above: Annotated[float, Field(gt=0, le=10_000)] | None = None
 
 
 class LegTable(Table):
@@ -136,13 +139,13 @@ def _check_elements(brief: Brief, path: str | Path) -> None:
 def candidates_of(brief: Brief, path: str | Path) -> list[Candidate]:
     """The brief's candidates in a fixed order, whatever order the brief lists them in."""
     wanted = library_names() if brief.candidates.use == "all" else brief.candidates.use
-    found: dict[Path, Candidate] = {}
+    found: dict[tuple[Path, str], Candidate] = {}
     for name in wanted:
         try:
             one = load_candidate(Path(path).parent / name if name.endswith(".toml") else name)
         except InputError as error:
             raise InputError(str(error), file=path, key="candidates.use") from error
-        found[one.path] = one
+        found[one.path, one.name] = one
     chosen = [c for c in found.values() if brief.candidates.carrier in ("either", c.data.carrier)]
     if not chosen:
         raise InputError(

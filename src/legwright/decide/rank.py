@@ -12,6 +12,7 @@ from scipy.interpolate import CubicSpline
 from legwright.base.flags import ordered
 from legwright.base.units import NM, PER_CM3
 from legwright.candidate.library import Candidate
+from legwright.candidate.supply import cost_per_kg, hazardous_elements, supply_concentration
 from legwright.decide.brief import Brief, candidates_of
 from legwright.decide.score import leg_material, properties_over_span, score
 from legwright.decide.warnings import point_flags
@@ -114,8 +115,17 @@ def size_range(brief: Brief, candidate: Candidate) -> tuple[float, float]:
 
 
 def _refusal(brief: Brief, candidate: Candidate, duty: Duty) -> str | None:
-    if set(brief.avoid.elements) & set(candidate.elements):
+    avoid = brief.avoid
+    if set(avoid.elements) & set(candidate.elements):
         return "avoided-element"
+    if avoid.hazardous and hazardous_elements(candidate):
+        return "hazardous-element"
+    if avoid.cost_above_USD_per_kg is not None and cost_per_kg(candidate) > avoid.cost_above_USD_per_kg:
+        return "too-costly"
+    if avoid.supply_concentration_above is not None:
+        concentration = supply_concentration(candidate)
+        if concentration is None or concentration > avoid.supply_concentration_above:
+            return "supply-too-concentrated"
     if duty.hot > candidate.data.service.highest_temperature.si:
         return "above-service-temperature"
     return None

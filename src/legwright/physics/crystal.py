@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
-from functools import cache
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -50,22 +50,60 @@ class Crystal:
         return size * self.size_ratio if shape == "grain" else size
 
 
-@cache
+@lru_cache(maxsize=4096)
 def crystal(candidate: Candidate) -> Crystal:
     """The candidate's numbers in SI with every prefactor solved from its anchors.
 
     Raises InputError where an anchor cannot be met by any value of the prefactor that it is said to fix.
     """
-    bare = Crystal(_electrons(candidate), _phonons(candidate))
-    electrons = _fix_electrons(candidate, bare.electrons)
-    making, brought = candidate.data.making, _brought_by_making(candidate)
-    as_anchored = _weighing(_with_optical_heat(candidate, bare.phonons), brought, 0.0)
-    phonons = _fix_phonons(candidate, Crystal(electrons, as_anchored))
-    return Crystal(
-        electrons,
-        _weighing(phonons, brought, 1.0),
+    making = candidate.data.making
+    bare = Crystal(
+        _electrons(candidate),
+        _phonons(candidate),
         size_ratio=float(effective_size_ratio(_si(making.size_spread))),
         dense_share=float(porous_share(_si(making.porosity))),
+    )
+    if candidate.relatives:
+        return _with_prefactors_of(candidate.relatives, bare)
+    brought = _brought_by_making(candidate)
+    electrons = _fix_electrons(candidate, bare.electrons)
+    as_anchored = _weighing(_with_optical_heat(candidate, bare.phonons), brought, 0.0)
+    phonons = _fix_phonons(candidate, Crystal(electrons, as_anchored))
+    return replace(bare, electrons=electrons, phonons=_weighing(phonons, brought, 1.0))
+
+
+def _with_prefactors_of(relatives: tuple[tuple[Candidate, float], ...], bare: Crystal) -> Crystal:
+    """A family member's crystal with its relatives' prefactors: means of their logarithms by weight."""
+    there = [(crystal(one), weight) for one, weight in relatives if weight]
+
+    def mean(of: Callable[[Crystal], Array | float]) -> Array:
+        return np.asarray(sum(weight * np.asarray(of(one)) for one, weight in there))
+
+    def log_mean(of: Callable[[Crystal], float]) -> float:
+        return float(np.exp(mean(lambda one: np.log(of(one)))))
+
+    places = sorted({place for one, _ in there for place, _ in one.electrons.impurity_knots})
+
+    def impurity(one: Crystal) -> Array:
+        knots = one.electrons.impurity_knots
+        return np.interp(places, *np.transpose(knots)) if knots else np.zeros(len(places))
+
+    return replace(
+        bare,
+        electrons=replace(
+            bare.electrons,
+            mass_scale=log_mean(lambda one: one.electrons.mass_scale),
+            lattice_scale=log_mean(lambda one: one.electrons.lattice_scale),
+            impurity_knots=tuple(zip(places, mean(impurity).tolist(), strict=True)),
+        ),
+        phonons=replace(
+            bare.phonons,
+            anharmonic_scale=log_mean(lambda one: one.phonons.anharmonic_scale),
+            strain_scale=log_mean(lambda one: one.phonons.strain_scale),
+            carrier_weight=log_mean(lambda one: one.phonons.carrier_weight),
+            optical_excess=float(mean(lambda one: one.phonons.optical_excess)),
+            optical_temperature=float(mean(lambda one: one.phonons.optical_temperature)),
+        ),
     )
 
 

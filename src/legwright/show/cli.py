@@ -240,16 +240,20 @@ def _why(
 @_output
 def _candidates(name: str | None, as_json: bool, csv_file: Path | None, markdown: bool) -> None:
     """What is in the library; with NAME, every number of that candidate and its source."""
+    from legwright.candidate.family import family_names, load_family
     from legwright.candidate.library import library_names, load_candidate
     from legwright.show import records, tables
 
     if name is None:
         rows = [records.candidate_record(load_candidate(each)) for each in library_names()]
-        content: Record = {"candidates": rows}
+        lines = [records.family_record(load_family(each)) for each in family_names()]
+        content: Record = {"candidates": rows, "families": lines}
 
         def table() -> None:
             out = tables.console(markdown)
             out.print(tables.library_table(rows, markdown))
+            out.print(tables.make_up_table(rows, markdown))
+            out.print(tables.families_table(lines, markdown))
     else:
         one = load_candidate(name)
         rows = records.number_records(one)

@@ -10,14 +10,17 @@ from typing import Any
 from legwright.base.flags import MEANINGS
 from legwright.base.units import CM2, MICRO, NM, PER_CM3
 from legwright.base.version import VERSION
+from legwright.candidate.family import Family
 from legwright.candidate.hazards import cautions
 from legwright.candidate.library import Candidate
 from legwright.candidate.model import numbers
 from legwright.candidate.sources import bibliography
+from legwright.candidate.supply import cost_per_kg, hazardous_elements, mass_density, supply_concentration
 from legwright.decide.peak import Peak
 from legwright.decide.rank import Row
 from legwright.decide.why import Why
 from legwright.physics.properties import Properties
+from legwright.physics.solubility import atomic_percent
 
 SCHEMA = 1
 Record = dict[str, Any]
@@ -117,6 +120,7 @@ def why_record(found: Why) -> Record:
 def candidate_record(candidate: Candidate) -> Record:
     """One line of `candidates`."""
     data = candidate.data
+    expansion, yielded = data.cell.thermal_expansion, data.doping.carriers_per_dopant
     return {
         "candidate": candidate.name,
         "title": data.title,
@@ -127,8 +131,32 @@ def candidate_record(candidate: Candidate) -> Record:
         "doping_min_per_cm3": data.doping.lowest.si / PER_CM3,
         "doping_max_per_cm3": data.doping.highest.si / PER_CM3,
         "smallest_grain_nm": data.making.smallest_grain.si / NM,
+        "density_g_per_cm3": mass_density(candidate) / 1e3,
+        "thermal_expansion_ppm_per_K": None if expansion is None else expansion.si / MICRO,
+        "cost_USD_per_kg": cost_per_kg(candidate),
+        "supply_concentration": supply_concentration(candidate),
+        "hazardous_elements": list(hazardous_elements(candidate)),
+        "dopant": data.doping.dopant,
+        "dopant_atomic_percent": [
+            float(
+                atomic_percent(density.si, data.cell.volume_per_atom.si, yielded.si if yielded is not None else 1.0)
+            )
+            for density in (data.doping.lowest, data.doping.highest)
+        ],
         "numbers": sum(candidate.basis_counts.values()),
         "numbers_by_basis": dict(sorted(candidate.basis_counts.items())),
+    }
+
+
+def family_record(family: Family) -> Record:
+    """One alloy line of `candidates`."""
+    return {
+        "family": family.name,
+        "title": family.data.title,
+        "carrier": family.carrier,
+        "ends": list(family.ends),
+        "largest_shares": [end.most for end in family.data.end],
+        "nodes": [node.name for node in family.nodes],
     }
 
 

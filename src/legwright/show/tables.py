@@ -163,6 +163,46 @@ def library_table(rows: Sequence[Record], markdown: bool) -> Table:
     return draw("Library (shares of the numbers by where they came from)", columns, cells, markdown)
 
 
+def make_up_table(rows: Sequence[Record], markdown: bool) -> Table:
+    """One line a candidate: what it weighs, costs and holds."""
+    columns = (
+        "candidate",
+        "density [g/cm³]",
+        "elements [USD/kg]",
+        "supply (0–10 000)",
+        "dopant [at. %]",
+        "hazards",
+    )
+    cells = (
+        (
+            row["candidate"],
+            figure(row["density_g_per_cm3"]),
+            figure(row["cost_USD_per_kg"], 2),
+            figure(row["supply_concentration"], 2),
+            f"{row['dopant']} {_span(row['dopant_atomic_percent'])}",
+            " ".join(row["hazardous_elements"]) or "none listed",
+        )
+        for row in rows
+    )
+    return draw("Make-up (element prices of 2013; supply: Herfindahl–Hirschman index)", columns, cells, markdown)
+
+
+def families_table(rows: Sequence[Record], markdown: bool) -> Table:
+    """One line an alloy line, and how its members are named."""
+    columns = ("family", "a member", "share of", "up to", "through")
+    cells = (
+        (
+            row["family"],
+            f"{row['family']}:{','.join('x' for _ in row['ends'][1:])}",
+            ", ".join(row["ends"][1:]),
+            ", ".join(figure(share, 2) for share in row["largest_shares"][1:]),
+            ", ".join(row["nodes"]),
+        )
+        for row in rows
+    )
+    return draw("Alloy lines", columns, cells, markdown)
+
+
 def numbers_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
     """Every number of a candidate."""
     columns = ("key", "value", "unit", "spread (1 σ)", "basis", "source", "note")
