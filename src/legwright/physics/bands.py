@@ -24,7 +24,7 @@ def kane_gamma(energy: ArrayLike, nonparabolicity: ArrayLike) -> Array:
 
 
 def kane_slope(energy: ArrayLike, nonparabolicity: ArrayLike) -> Array:
-    """dγ/dε = 1 + 2 α ε, dimensionless (Kane 1957); arguments as `kane_gamma`.
+    """dγ/dε = 1 + 2 α ε, dimensionless (1 for parabolic bands); arguments and source as `kane_gamma`.
 
     >>> float(kane_slope(2.0, 0.5))
     3.0
@@ -86,7 +86,9 @@ def band_edge(temperature: ArrayLike, edge: ArrayLike, alpha: ArrayLike, beta: A
 
 
 def wave_number_squared(energy: ArrayLike, valley_mass: ArrayLike, nonparabolicity: ArrayLike) -> Array:
-    """k² = 2 m_b γ/ħ² of one valley with its density-of-states mass m_b, 1/m² (Kane 1957).
+    """k² = 2 m_b γ/ħ² of one valley with its density-of-states mass m_b, 1/m².
+
+    energy ε ≥ 0 (J), valley_mass (kg), nonparabolicity α (1/J); broadcast. Source as `kane_gamma`.
 
     >>> from scipy import constants
     >>> f"{float(wave_number_squared(constants.e, constants.m_e, 0.0)) ** 0.5:.3e}"

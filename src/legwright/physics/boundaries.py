@@ -66,7 +66,7 @@ _TERMS = 16
 
 
 def film_suppression(mfp_over_thickness: ArrayLike, specularity: ArrayLike = 0.0) -> Array:
-    """In-plane conductivity of a film over that of unbounded material.
+    """In-plane conductivity of a film over that of unbounded material, 0 … 1.
 
     F = (3/2) ∫₀¹ (1 − µ²) B(1/(Kn µ), p) dµ with B the share of a path kept between two walls.
 
@@ -81,7 +81,7 @@ def film_suppression(mfp_over_thickness: ArrayLike, specularity: ArrayLike = 0.0
 
 
 def wire_suppression(mfp_over_diameter: ArrayLike, specularity: ArrayLike = 0.0) -> Array:
-    """Conductivity along a round wire over that of unbounded material.
+    """Conductivity along a round wire over that of unbounded material, 0 … 1.
 
     F = (12/π) ∫₀^{π/2} cos²θ sinθ dθ ∫₀^{π/2} cos²β dβ B(cos β/(Kn sin θ), p).
 

@@ -109,7 +109,20 @@ class Integrals:
 
 
 def masses(electrons: Electrons, temperature: Array) -> tuple[Array, Array]:
-    """Density-of-states and inertial masses (kg) at T, with a last axis of bands: m (T/300 K)^p."""
+    """Density-of-states and inertial masses (kg) at T, with a last axis of bands: m(T) = s m_300 (T/300 K)^p.
+
+    temperature T > 0 (K), any shape; s is `mass_scale` for the majority's bands and 1 for the others. Plain
+    arithmetic: raises nothing of its own. Source: Ravich, Efimova & Smirnov, Semiconducting Lead Chalcogenides
+    (1970) for masses that grow with T.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> electrons = crystal(load_candidate("si-n")).electrons
+    >>> t, n = np.array(300.0), np.array(1e25)
+    >>> of_states, inertial = masses(electrons, t)
+    >>> of_states.shape == electrons.dos_mass.shape and bool(np.all(of_states >= inertial))
+    True
+    """
     growth = (temperature[..., None] / ROOM) ** electrons.mass_exponent
     growth = growth * np.where(electrons.majority, electrons.mass_scale, 1.0)
     return electrons.dos_mass * growth, electrons.inertial_mass * growth
@@ -131,7 +144,9 @@ def _occupied(electrons: Electrons, temperature: Array, mu: Array) -> tuple[Arra
 
 
 def thermal_window(x: Array) -> Array:
-    """−∂f/∂x of the Fermi function, 1/(4 cosh²(x/2)), without overflow.
+    """−∂f/∂x of the Fermi function, 1/(4 cosh²(x/2)), dimensionless, without overflow.
+
+    x = (E − µ)/k_B T, any shape. Raises nothing of its own. By definition of f = 1/(eˣ + 1) (Fermi 1926).
 
     >>> float(thermal_window(np.array(0.0)))
     0.25
@@ -143,10 +158,22 @@ def thermal_window(x: Array) -> Array:
 def fill(electrons: Electrons, temperature: Array, doping: Array) -> Filling:
     """Solve charge neutrality, majority = minority + N, for the chemical potential at each (T, doping).
 
+    n = Σ ∫ g(ε) f dε over the conduction bands, p over the valence bands, N = |N_D − N_A| > 0 (1/m³) at
+    temperature T (K); the two arrays have one shape, to which `Filling` adds a last axis of bands.
     The root is sought in ln(majority) − ln(minority + N), nearly straight in µ whether doping or pairs rule,
     by Newton steps that fall back to halving the bracket. Each point stops by its own step, so it does not
     matter which points are solved together.
     Raises ArithmeticError where there is no root within 30 eV of the bands.
+    Source: the neutrality condition of Ravich, Efimova & Smirnov, Semiconducting Lead Chalcogenides (1970).
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> electrons = crystal(load_candidate("si-n")).electrons
+    >>> t, n = np.array(300.0), np.array(1e25)
+    >>> found = fill(electrons, t, n)
+    >>> surplus = found.density[electrons.side > 0].sum() - found.density[electrons.side < 0].sum()
+    >>> bool(abs(surplus / n - 1) < 1e-9)
+    True
     """
     t, n = (np.asarray(a, dtype=float) for a in np.broadcast_arrays(temperature, doping))
     sign, majority = electrons.carrier, electrons.majority
@@ -212,7 +239,22 @@ class Flow:
 
 
 def bulk_flow(electrons: Electrons, temperature: Array, doping: Array, filling: Filling) -> Flow:
-    """Everything about the carriers that does not depend on size."""
+    """Everything about the carriers that does not depend on size: named rates 1/τ_i (1/s), Λ = v τ (m) and
+    Ξ = g v_x² τ (−∂f/∂E) on the energy mesh of each band.
+
+    1/τ = Σ_i 1/τ_i (Matthiessen) for each energy and band. temperature (K) and doping (1/m³) have one shape and
+    `filling` is theirs; a last but one axis of bands and a last one of energies follow. ArithmeticError
+    where a band has no scattering at all.
+    Sources: Ravich, Efimova & Smirnov, Semiconducting Lead Chalcogenides (1970); each rate names its own.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> electrons = crystal(load_candidate("si-n")).electrons
+    >>> t, n = np.array(300.0), np.array(1e25)
+    >>> flow = bulk_flow(electrons, t, n, fill(electrons, t, n))
+    >>> sorted(flow.rates)[:2], bool(np.all(flow.mean_free_path > 0))
+    (['acoustic phonons', 'intervalley phonons'], True)
+    """
     t, n = temperature[..., None, None], doping[..., None, None]
     kt = K_B * t
     z, weight = _energy_mesh(electrons, filling.eta, kt[..., 0])
@@ -281,9 +323,21 @@ def bulk_flow(electrons: Electrons, temperature: Array, doping: Array, filling: 
 
 
 def transport_integrals(flow: Flow, size: Array, shape: str, reflection: float) -> Integrals:
-    """L_0, L_1, L_2 per band, with each energy held back by grains, a wire's wall or a film's faces.
+    """L_k = ∫ Ξ(E) F(Λ/d) (E − µ)^k (−∂f/∂E) dE per band, k = 0, 1, 2: SI, last axis bands.
 
-    Energy by energy, a last axis of energies for each size: for few points, and the measure of `integrals_at`.
+    F is what grains, a wire's wall or a film's faces leave of each energy (`held_back`); size d (m, may be inf)
+    broadcasts with the states of `flow`. Energy by energy, a last axis of energies for each size: for few points,
+    and the measure of `integrals_at`. Raises nothing of its own.
+    Sources: Ravich, Efimova & Smirnov, Semiconducting Lead Chalcogenides (1970); boundaries as `held_back`.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> electrons = crystal(load_candidate("si-n")).electrons
+    >>> t, n = np.array(300.0), np.array(1e25)
+    >>> flow = bulk_flow(electrons, t, n, fill(electrons, t, n))
+    >>> sums = transport_integrals(flow, np.array([1e-8, np.inf]), "grain", 0.3)
+    >>> bool(np.all(sums.l0[0] < sums.l0[1]))
+    True
     """
     d = size[..., None, None]
     if not np.all(np.isinf(size)):
@@ -297,7 +351,18 @@ def transport_integrals(flow: Flow, size: Array, shape: str, reflection: float) 
 def short_leg_integrals(flow: Flow, length: Array) -> Integrals:
     """L_0, L_1, L_2 per band of a leg of `length` (m) between two contacts; e² L_0/length is its G per area.
 
-    Every energy goes from diffusive to ballistic by itself (`short_legs`); length broadcasts with (T, doping).
+    Every energy goes from diffusive to ballistic by itself, with the factor 1/(1 + 4Λ/3L) of
+    `short_leg_suppression`; length > 0 broadcasts with (T, doping). ValueError for a length that is not above 0.
+    Source: McKelvey, Longini & Brody, Physical Review 123, 51 (1961).
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> electrons = crystal(load_candidate("si-n")).electrons
+    >>> t, n = np.array(300.0), np.array(1e25)
+    >>> flow = bulk_flow(electrons, t, n, fill(electrons, t, n))
+    >>> sums = short_leg_integrals(flow, np.array([1e-9, 1e-6, 1e-3]))
+    >>> bool(np.all(np.diff(sums.l0.sum(axis=-1)) > 0))
+    True
     """
     flowing = flow.spectral * short_leg_suppression(flow.mean_free_path, length[..., None, None])
     first = flowing * flow.excess
@@ -309,7 +374,22 @@ PATHS = PathMesh(1e-11, 1e-4, 10)
 
 
 def path_spectrum(electrons: Electrons, flow: Flow) -> Array:
-    """L_0, L_1, L_2 of the conduction and then of the valence bands by mean free path: (..., 6, paths)."""
+    """L_0, L_1, L_2 of the conduction and then of the valence bands by mean free path: (..., 6, paths), SI units.
+
+    W_j with Σ_j W_j F(Λ_j/d) = L_k(d) for every size d; what a boundary acts on is Λ/d alone (grains, walls).
+    Raises nothing of its own. Source: the spectrum by mean free path of Dames & Chen, in Thermoelectrics Handbook,
+    CRC Press (2006), gathered as `PathMesh.gather` says.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> electrons = crystal(load_candidate("si-n")).electrons
+    >>> t, n = np.array(300.0), np.array(1e25)
+    >>> flow = bulk_flow(electrons, t, n, fill(electrons, t, n))
+    >>> bulk = transport_integrals(flow, np.array(np.inf), "grain", 0.3)
+    >>> spectrum = path_spectrum(electrons, flow)
+    >>> bool(abs(spectrum[..., 0, :].sum() / bulk.l0[electrons.side > 0].sum() - 1) < 1e-10)
+    True
+    """
     first = flow.spectral * flow.excess
     return _by_path(electrons, flow, flow.spectral, first, first * flow.excess)
 
@@ -327,14 +407,44 @@ def _by_path(electrons: Electrons, flow: Flow, *parts: Array) -> Array:
 
 
 def integrals_at(spectrum: Array, size: Array, shape: str, reflection: float) -> tuple[Integrals, Integrals]:
-    """Transport integrals of the conduction and of the valence bands at each size, from a path spectrum."""
+    """L_0, L_1, L_2 of the conduction and of the valence bands at each size: Σ_j W_j F(Λ_j/d), SI.
+
+    `spectrum` as `path_spectrum`; size d (m, may be inf) broadcasts with its states; shape 'grain', 'wire', 'film';
+    reflection R of grain boundaries, 0 … 1. The sums of `transport_integrals` to 1e-9. Raises nothing of its own.
+    Sources as `held_back`.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> electrons = crystal(load_candidate("si-n")).electrons
+    >>> t, n = np.array(300.0), np.array(1e25)
+    >>> flow = bulk_flow(electrons, t, n, fill(electrons, t, n))
+    >>> up, down = integrals_at(path_spectrum(electrons, flow), np.array([1e-8, np.inf]), "wire", 0.3)
+    >>> bool(up.l0[0] < up.l0[1])
+    True
+    """
     sums = through(spectrum, held_back(PATHS.paths, size[..., None], shape, reflection))
     up, down = (Integrals(*np.moveaxis(sums[..., part], -1, 0)) for part in (slice(0, 3), slice(3, 6)))
     return up, down
 
 
 def past_barriers(electrons: Electrons, temperature: Array, filling: Filling, l0: Array, size: Array) -> Array:
-    """Share of the majority's L_0 that barriers between the grains leave: `l0` broadcasts with the size."""
+    """Share of the majority's L_0 that barriers between the grains leave, dimensionless: 1/(1 + ρ_b/ρ).
+
+    The barrier (`Electrons.barrier`, J, over the majority's edge) stands in series with the grain, by the law of
+    `barrier_suppression`. `l0` broadcasts with size d (m); temperature (K). Raises nothing of its own.
+    Source: Seto, Journal of Applied Physics 46, 5247 (1975).
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> electrons = crystal(load_candidate("si-n")).electrons
+    >>> t, n = np.array(300.0), np.array(1e25)
+    >>> flow = bulk_flow(electrons, t, n, fill(electrons, t, n))
+    >>> l0 = transport_integrals(flow, np.array(1e-8), "grain", 0.3).l0.sum(axis=-1)
+    >>> from dataclasses import replace
+    >>> walled = replace(electrons, barrier=8e-21)
+    >>> bool(0 < past_barriers(walled, t, fill(walled, t, n), l0, np.array(1e-8)) < 1)
+    True
+    """
     most = electrons.majority
     mass, inertia = (part[..., most] for part in masses(electrons, temperature))
     band = (temperature[..., None], filling.eta[..., most], mass, inertia, electrons.nonparabolicity[most])
@@ -353,27 +463,71 @@ def _deflected(electrons: Electrons, temperature: Array, flow: Flow) -> Array:
 def hall_integrals(electrons: Electrons, temperature: Array, flow: Flow, size: Array, shape: str) -> Array:
     """K = ∫ g v_x² τ²/(m_I (1 + 2αε)) (−∂f/∂E) dE per band, 1/(J kg m); boundaries act on each τ.
 
+    temperature (K) with the states of `flow`; size (m, may be inf) broadcasts; last axis bands.
     Energy by energy, as `transport_integrals`. In wires and films this takes the boundary's mean effect on τ
     at an energy for its effect on each carrier: exact for grains and for many carriers in wide bodies; the
-    Hall coefficient of a film far thinner than Λ is larger (Sondheimer, Physical Review 80, 401 (1950)).
+    Hall coefficient of a film far thinner than Λ is larger. Raises nothing of its own.
+    Source: Sondheimer, Physical Review 80, 401 (1950); Ravich, Efimova & Smirnov (1970) for Kane bands.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> electrons = crystal(load_candidate("si-n")).electrons
+    >>> t, n = np.array(300.0), np.array(1e25)
+    >>> flow = bulk_flow(electrons, t, n, fill(electrons, t, n))
+    >>> held = hall_integrals(electrons, t, flow, np.array([1e-8, np.inf]), "grain")
+    >>> bool(np.all(held[0] < held[1]))
+    True
     """
     held = held_back(flow.mean_free_path, size[..., None, None], shape, electrons.reflection)
     return np.asarray(np.sum(_deflected(electrons, temperature, flow) * held**2, axis=-1))
 
 
 def hall_spectrum(electrons: Electrons, temperature: Array, flow: Flow) -> Array:
-    """K of the conduction and then of the valence bands by mean free path: (..., 2, paths)."""
+    """K of `hall_integrals` of the conduction and then of the valence bands by mean free path: (..., 2, paths).
+
+    Raises nothing of its own; units and sources as `hall_integrals`.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> electrons = crystal(load_candidate("si-n")).electrons
+    >>> t, n = np.array(300.0), np.array(1e25)
+    >>> flow = bulk_flow(electrons, t, n, fill(electrons, t, n))
+    >>> hall_spectrum(electrons, t, flow).shape[-2]
+    2
+    """
     return _by_path(electrons, flow, _deflected(electrons, temperature, flow))
 
 
 def hall_at(spectrum: Array, size: Array, shape: str, reflection: float) -> tuple[Array, Array]:
-    """K of the conduction and of the valence bands at each size, from a Hall spectrum."""
+    """K of the conduction and of the valence bands at each size (m), from a Hall spectrum; 1/(J kg m).
+
+    Grains, walls and faces shorten τ, which enters squared: F² for each mean free path. Raises nothing of its own;
+    sources as `hall_integrals`.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> electrons = crystal(load_candidate("si-n")).electrons
+    >>> t, n = np.array(300.0), np.array(1e25)
+    >>> flow = bulk_flow(electrons, t, n, fill(electrons, t, n))
+    >>> up, _ = hall_at(hall_spectrum(electrons, t, flow), np.array([1e-8, np.inf]), "grain", electrons.reflection)
+    >>> bool(up[0] < up[1])
+    True
+    """
     sums = through(spectrum, held_back(PATHS.paths, size[..., None], shape, reflection) ** 2)
     return sums[..., 0], sums[..., 1]
 
 
 def held_back(mean_free_path: Array, size: Array, shape: str, reflection: float) -> Array:
-    """Conductivity over that of unbounded material, for each mean free path: grains, a wire or a film."""
+    """Conductivity over that of unbounded material for each mean free path (m): grains, a wire or a film, 0 … 1.
+
+    F of `grain_suppression` with reflection R, or of a diffuse wire or film; `size` (m, may be inf) carries a last
+    axis for the paths' own. Raises nothing of its own.
+    Sources: Mayadas & Shatzkes, Physical Review B 1, 1382 (1970); Dingle, Proceedings of the Royal Society A 201,
+    545 (1950); Fuchs, Proceedings of the Cambridge Philosophical Society 34, 100 (1938).
+
+    >>> float(held_back(np.array([1e-8]), np.array(np.inf), "grain", 0.3)[0])
+    1.0
+    """
     if shape == "grain":
         return grain_suppression(mean_free_path, size, reflection)
     return (wire_suppression if shape == "wire" else film_suppression)(mean_free_path / size)

@@ -54,7 +54,15 @@ class Crystal:
 def crystal(candidate: Candidate) -> Crystal:
     """The candidate's numbers in SI with every prefactor solved from its anchors.
 
+    Prefactors (masses, lattice scattering, heavy doping, anharmonicity, strain, phonons by carriers) are those with
+    the smallest Σ (miss/spread)² over the anchors that fix them; a member of a family takes its relatives'.
     Raises InputError where an anchor cannot be met by any value of the prefactor that it is said to fix.
+    Source of the practice: Ravich, Efimova & Smirnov (1970); anchors as each candidate's file cites them.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> one = crystal(load_candidate("si-n"))
+    >>> bool(one.electrons.lattice_scale > 0 and one.phonons.anharmonic_scale > 0)
+    True
     """
     making = candidate.data.making
     bare = Crystal(
@@ -233,7 +241,17 @@ _BULK = np.array(np.inf)
 def bulk_mobility_and_seebeck(
     electrons: Electrons, temperature: ArrayLike, doping: ArrayLike
 ) -> tuple[Array, Array]:
-    """σ/(e × majority density) in m²/(V s), and S in V/K, of coarse material; temperature and doping broadcast."""
+    """σ/(e × majority density) in m²/(V s), and S in V/K, of coarse material at temperature (K) and doping (1/m³).
+
+    µ = e L_0/n and S = −L_1/(e T L_0) as in `moments`; arguments broadcast. Raises ArithmeticError as `fill`.
+    Source: Ravich, Efimova & Smirnov, Semiconducting Lead Chalcogenides (1970).
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> one = crystal(load_candidate("si-n"))
+    >>> moving, thermopower = bulk_mobility_and_seebeck(one.electrons, 300.0, [1e23, 1e26])
+    >>> bool(moving[0] > moving[1] and thermopower[0] < thermopower[1] < 0)
+    True
+    """
     t, n = np.broadcast_arrays(np.asarray(temperature, dtype=float), np.asarray(doping, dtype=float))
     filling = fill(electrons, t, n)
     sums = transport_integrals(bulk_flow(electrons, t, n, filling), _BULK, "grain", 0.0)
@@ -307,7 +325,17 @@ def _refuse_far_misses(candidate: Candidate, anchors: list[Anchor], misses: Arra
 
 
 def bulk_lattice_conductivity(one: Crystal, temperature: float, doping: float | None) -> float:
-    """Acoustic and optical lattice conductivity of coarse material, W/(m K); doping None: undoped."""
+    """Acoustic and optical lattice conductivity of coarse material, W/(m K).
+
+    κ_L = `acoustic_conductivity` at infinite size + `optical_conductivity`, at temperature (K) and doping (1/m³;
+    None: undoped), one of each. Raises ArithmeticError as `fill`.
+    Source: Callaway, Physical Review 113, 1046 (1959).
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> one = crystal(load_candidate("si-n"))
+    >>> bulk_lattice_conductivity(one, 300.0, None) > bulk_lattice_conductivity(one, 300.0, 1e26)
+    True
+    """
     t = np.array(temperature)
     n = np.array(doping or 0.0)
     carriers = majority_carriers(one.electrons, t, fill(one.electrons, t, n).eta) if doping else None
@@ -318,7 +346,18 @@ def bulk_lattice_conductivity(one: Crystal, temperature: float, doping: float | 
 
 
 def majority_carriers(electrons: Electrons, temperature: Array, eta: Array) -> Carriers:
-    """What the phonons see of the majority bands."""
+    """What phonons see of the majority bands: η = (µ − E_edge)/k_B T, one valley's mass (kg), valleys; per band.
+
+    m_b = m_d/N_v^(2/3) at temperature T (K). Raises nothing of its own.
+    Source: Ziman, Electrons and Phonons (1960).
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> one = crystal(load_candidate("si-n"))
+    >>> t = np.array(300.0)
+    >>> seen = majority_carriers(one.electrons, t, fill(one.electrons, t, np.array(1e26)).eta)
+    >>> int(seen.valleys[0])
+    6
+    """
     keep = electrons.majority
     mass, _ = masses(electrons, temperature)
     valley_mass = mass[..., keep] / electrons.valleys[keep] ** (2 / 3)

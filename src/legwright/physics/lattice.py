@@ -126,7 +126,18 @@ def _unit_mesh(count: int) -> tuple[Array, Array]:
 
 
 def modes(phonons: Phonons, count: int = _MODES) -> Modes:
-    """ω = ω_max sin(π q/2q_D) and its slope on the mesh (branches, modes)."""
+    """ω = ω_max sin(π q/2q_D), v = dω/dq and weights q² dq/(6π²) on the mesh: (branches, modes), SI units.
+
+    `count`: Gauss–Legendre nodes (see `_unit_mesh` for what they are good to). Raises nothing of its own.
+    Source: Born & von Kármán, Physikalische Zeitschrift 13, 297 (1912).
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> phonons = crystal(load_candidate("si-n")).phonons
+    >>> mesh = modes(phonons)
+    >>> bool(abs(mesh.weight[0].sum() / (phonons.zone_edge**3 / (18 * np.pi**2)) - 1) < 1e-12)
+    True
+    """
     share, weight = _unit_mesh(count)
     q = phonons.zone_edge * share
     phase = 0.5 * np.pi * share
@@ -139,7 +150,14 @@ def modes(phonons: Phonons, count: int = _MODES) -> Modes:
 
 
 def mode_heat(omega: Array, temperature: Array) -> Array:
-    """Heat capacity of one mode, J/K: k_B x² eˣ/(eˣ − 1)², x = ħω/k_B T (Einstein 1907)."""
+    """Heat capacity of one mode, J/K: k_B x² eˣ/(eˣ − 1)², x = ħω/k_B T.
+
+    omega (rad/s, > 0) and temperature (K, > 0) broadcast. Raises nothing of its own.
+    Source: Einstein, Annalen der Physik 22, 180 (1907).
+
+    >>> f"{float(mode_heat(np.array(1e10), np.array(300.0))) / K_B:.6f}"
+    '1.000000'
+    """
     half = 0.5 * HBAR * omega / (K_B * temperature)
     return np.asarray(K_B * (half / np.sinh(half)) ** 2)
 
@@ -171,7 +189,21 @@ class Rates:
 def crystal_rates(
     phonons: Phonons, mesh: Modes, temperature: Array, doping: Array, carriers: Carriers | None
 ) -> Rates:
-    """Rates per mode that do not depend on size. doping (1/m³) adds dopant atoms; None: no carriers."""
+    """Rates 1/τ (1/s) per mode that do not depend on size, for each (T, doping): (..., branches, modes).
+
+    temperature (K) and doping (1/m³, adds dopant atoms to Γ) have one shape; carriers None: none scatter phonons.
+    Umklapp, normal, point defects (Γ = mass + ε × strain + dopants + vacancies), carriers, dislocations and
+    precipitates; each rate's function names its law and source. Raises nothing of its own.
+    Source: Callaway, Physical Review 113, 1046 (1959) for adding them.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> phonons = crystal(load_candidate("si-n")).phonons
+    >>> mesh, t = modes(phonons), np.array(300.0)
+    >>> rates = crystal_rates(phonons, mesh, t, np.array(0.0), None)
+    >>> bool(np.all(rates.resistive > 0)) and rates.umklapp.shape == mesh.omega.shape
+    True
+    """
     t = temperature[..., None, None]
     theta = phonons.branch_temperature
     strength = phonons.anharmonic_scale * scattering.anharmonic_strength(
@@ -233,14 +265,38 @@ def _extended_defects(phonons: Phonons, mesh: Modes) -> tuple[Array | None, Arra
 
 
 def wall_suppression(phonons: Phonons, mesh: Modes, shape: str) -> Callable[[Array], Array]:
-    """What the wall of a wire or film leaves of each mode, as a function of path over size (..., modes)."""
+    """What the wall of a wire or film leaves of each mode, 0 … 1, as a function of path over size (..., modes).
+
+    Diffuse walls without `wall_roughness`; else p = exp(−4 q²η² cos²θ) inside the angular integral, for each q.
+    Raises nothing of its own. Sources: Dingle (1950); Fuchs (1938); Ziman, Electrons and Phonons (1960); Soffer,
+    Journal of Applied Physics 38, 1710 (1967).
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> phonons = crystal(load_candidate("si-n")).phonons
+    >>> mesh, t = modes(phonons), np.array(300.0)
+    >>> kept = wall_suppression(phonons, mesh, "wire")(np.array([0.0, 1e3]))
+    >>> bool(kept[0] == 1.0 and kept[1] < 2e-3)
+    True
+    """
     if phonons.wall_roughness is None:
         return wire_suppression if shape == "wire" else film_suppression
     return rough_walls(shape, tuple((mesh.q * phonons.wall_roughness).tolist()))
 
 
 def grain_path(phonons: Phonons, mesh: Modes, size: ArrayLike) -> Array:
-    """`grain_mean_free_path` of each mode, m; size (m) carries axes for branches and modes already."""
+    """`grain_mean_free_path` of each mode, m: Λ_gb = c d (ω_max/ω)^s; size d (m) has axes for branches and modes.
+
+    Raises nothing of its own. Source: Wang et al., Nano Letters 11, 2206 (2011).
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> phonons = crystal(load_candidate("si-n")).phonons
+    >>> mesh, t = modes(phonons), np.array(300.0)
+    >>> path = grain_path(phonons, mesh, 1e-8)
+    >>> bool(np.all(path >= phonons.grain_prefactor * 1e-8))
+    True
+    """
     ratio = mesh.omega / phonons.top_frequency[:, None]
     return grain_mean_free_path(size, ratio, phonons.grain_exponent, phonons.grain_prefactor)
 
@@ -254,7 +310,18 @@ def acoustic_conductivity(
     1/τ_C = 1/τ_N + 1/τ_R; one drift velocity is shared by the branches. Grains add v/Λ_gb to 1/τ_R; walls
     of wires and films multiply τ_C by the exact kinetic factor (with `wall_roughness`, that of the mode's wave
     number), and 1/τ_R is what then is left of 1/τ_C.
+    temperature T (K) has the shape of the states of `rates`; size d (m, may be inf) broadcasts with it.
+    Raises nothing of its own.
     Sources: Callaway, Physical Review 113, 1046 (1959); Allen, Physical Review B 88, 144302 (2013).
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> phonons = crystal(load_candidate("si-n")).phonons
+    >>> mesh, t = modes(phonons), np.array(300.0)
+    >>> rates = crystal_rates(phonons, mesh, t, np.array(0.0), None)
+    >>> kept = acoustic_conductivity(phonons, mesh, rates, t, np.array([1e-8, 1e-6, np.inf]), "grain")
+    >>> bool(np.all(np.diff(kept) > 0))
+    True
     """
     heat = mesh.weight * mode_heat(mesh.omega, temperature[..., None, None])
     resistive, normal = rates.resistive, rates.normal
@@ -324,7 +391,21 @@ class HeatSpectrum:
 
 
 def heat_spectrum(phonons: Phonons, mesh: Modes, rates: Rates, temperature: Array, shape: str) -> HeatSpectrum:
-    """What `acoustic_conductivity` sums over modes, gathered by path; in the third sum 1/τ_R = 1/τ_C − 1/τ_N."""
+    """What `acoustic_conductivity` sums over modes, gathered by path; in the third sum 1/τ_R = 1/τ_C − 1/τ_N.
+
+    Three sums by mean free path (..., 3, paths), SI, for the states of `rates` at `temperature` (K). For grains
+    the paths are over Λ_gb/d, which depends on the mode; for walls they are the modes'. Raises nothing of its own.
+    Sources as `acoustic_conductivity`.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> phonons = crystal(load_candidate("si-n")).phonons
+    >>> mesh, t = modes(phonons), np.array(300.0)
+    >>> rates = crystal_rates(phonons, mesh, t, np.array(0.0), None)
+    >>> spectrum = heat_spectrum(phonons, mesh, rates, t, "wire")
+    >>> bool(np.all(spectrum.sums[0].sum() > 0))
+    True
+    """
     heat = mesh.weight * mode_heat(mesh.omega, temperature[..., None, None])
     normal = rates.normal
     lifetime = 1 / (rates.resistive + normal)
@@ -341,7 +422,21 @@ def heat_spectrum(phonons: Phonons, mesh: Modes, rates: Rates, temperature: Arra
 
 
 def conductivity_at(spectrum: HeatSpectrum, size: Array, shape: str) -> Array:
-    """`acoustic_conductivity` at each size, W/(m K), from a heat spectrum; walls scatter every wave."""
+    """`acoustic_conductivity` at each size d (m, may be inf), W/(m K), from a heat spectrum; diffuse walls.
+
+    κ = A + B²/(D − E) with A, B, E the spectrum's sums held back by F(Λ/d). Broadcasts as `heat_spectrum`. Raises
+    nothing of its own; sources as `acoustic_conductivity`.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> phonons = crystal(load_candidate("si-n")).phonons
+    >>> mesh, t = modes(phonons), np.array(300.0)
+    >>> rates = crystal_rates(phonons, mesh, t, np.array(0.0), None)
+    >>> quick = conductivity_at(heat_spectrum(phonons, mesh, rates, t, "grain"), np.array(1e-8), "grain")
+    >>> full = acoustic_conductivity(phonons, mesh, rates, t, np.array(1e-8), "grain")
+    >>> bool(abs(quick / full - 1) < 1e-8)
+    True
+    """
     crossed = PATHS.paths / size[..., None]
     if shape == "grain":
         kept = 1 / (1 + crossed)
@@ -356,7 +451,18 @@ def conductivity_at(spectrum: HeatSpectrum, size: Array, shape: str) -> Array:
 def conductivity_by_size(
     phonons: Phonons, mesh: Modes, rates: Rates, temperature: Array, size: Array, shape: str
 ) -> Array:
-    """`acoustic_conductivity` by the quickest way: through the spectrum where a boundary acts by path alone."""
+    """`acoustic_conductivity` by the quickest way, W/(m K).
+
+    Arguments, shapes, errors and sources as `acoustic_conductivity`.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> phonons = crystal(load_candidate("si-n")).phonons
+    >>> mesh, t = modes(phonons), np.array(300.0)
+    >>> rates = crystal_rates(phonons, mesh, t, np.array(0.0), None)
+    >>> f"{float(conductivity_by_size(phonons, mesh, rates, t, np.array(np.inf), 'grain')):.0f}"
+    '148'
+    """
     if phonons.wall_roughness is not None and shape != "grain":
         return acoustic_conductivity(phonons, mesh, rates, temperature, size, shape)
     return conductivity_at(heat_spectrum(phonons, mesh, rates, temperature, shape), size, shape)
@@ -377,10 +483,16 @@ def _glass_integral(phonons: Phonons, temperature: Array, from_share: float) -> 
 
 
 def amorphous_minimum(phonons: Phonons, temperature: Array) -> Array:
-    """Conductivity if every oscillation lived half its period, W/(m K).
+    """Conductivity if every oscillation lived half its period, W/(m K); temperature T > 0 (K), any shape.
 
-    κ_min = (π/6)^(1/3) k_B n^(2/3) Σ v (T/θ)² ∫₀^{θ/T} x³ eˣ/(eˣ−1)² dx.
+    κ_min = (π/6)^(1/3) k_B n^(2/3) Σ v (T/θ)² ∫₀^{θ/T} x³ eˣ/(eˣ−1)² dx. Raises nothing of its own.
     Source: Cahill, Watson & Pohl, Physical Review B 46, 6131 (1992).
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> phonons = crystal(load_candidate("si-n")).phonons
+    >>> f"{float(amorphous_minimum(phonons, np.array(300.0))):.1f}"
+    '1.1'
     """
     return _glass_integral(phonons, temperature, 0.0)
 

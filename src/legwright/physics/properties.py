@@ -148,7 +148,7 @@ def evaluate(
     size d (m; inf for coarse material) of grain, wire or film by `shape`; all broadcast.
     σ = e²L_0, S = −L_1/(eTL_0), κ_e = (L_2 − L_1²/L_0)/T over all bands on one energy axis (Ravich, Efimova &
     Smirnov 1970); bipolar = κ_e − κ_e(conduction alone) − κ_e(valence alone) (Goldsmid 2010); lattice after
-    Callaway (1959). Raises InputError for a value that physics does not allow, naming it.
+    Callaway, Physical Review 113, 1046 (1959). Raises InputError naming a value that physics does not allow.
 
     >>> from legwright.candidate.library import load_candidate
     >>> made = evaluate(load_candidate("si-n"), 300.0, 1e26, [20e-9, float("inf")])
@@ -161,7 +161,18 @@ def evaluate(
 def evaluate_crystal(
     one: Crystal, temperature: ArrayLike, doping: ArrayLike, size: ArrayLike, shape: str = "grain"
 ) -> Properties:
-    """`evaluate` for a crystal in hand, whose numbers may have been changed."""
+    """`evaluate` for a crystal in hand, its numbers perhaps changed; arguments, units and InputError as `evaluate`,
+    sources as there.
+
+    >>> from dataclasses import replace
+    >>> from legwright.candidate.library import load_candidate
+    >>> one = crystal(load_candidate("si-n"))
+    >>> pure = replace(one, phonons=replace(one.phonons, carrier_weight=0.0))
+    >>> args = (300.0, 1e26, np.inf)
+    >>> here, there = (evaluate_crystal(each, *args).lattice_thermal_conductivity for each in (pure, one))
+    >>> bool(here > there)
+    True
+    """
     if shape not in SHAPES:
         raise InputError(f"value '{shape}' is not allowed; {nearest(shape, SHAPES)}", key="shape")
     t = _within(temperature, "temperature", COLDEST, HOTTEST, "K")

@@ -64,7 +64,9 @@ def ballistic_wire_conductance(
 
 
 def conductance_quantum_per_spin() -> float:
-    """e²/h, S: conductance of one open channel of one spin (Landauer, IBM Journal 1, 223 (1957)).
+    """e²/h, S: conductance of one open channel of one spin; takes nothing and raises nothing.
+
+    Sources: Landauer, IBM Journal of Research and Development 1, 223 (1957); CODATA constants.
 
     >>> f"{conductance_quantum_per_spin():.4e}"
     '3.8740e-05'

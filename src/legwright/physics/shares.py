@@ -32,11 +32,19 @@ class Limits:
 
 
 def electrical_limits(one: Crystal, temperature: float, doping: float, size: float, shape: str) -> Limits:
-    """What slows the carriers at one design point.
+    """What slows the carriers at one design point: temperature (K), doping (1/m³), size (m), shape.
 
     Share of process i: mean of (1/τ_i)/(1/τ) over energies and bands, weighted with what each conducts; the
     boundary's 1/τ is what takes the conductivity of an energy from unbounded to bounded. Shares add up to 1.
-    A barrier at the boundary, which stands in series with the grain, is not among them.
+    A barrier at the boundary, which stands in series with the grain, is not among them. ArithmeticError as `fill`.
+    Source: Matthiessen's rule for each energy, as Ziman, Electrons and Phonons (1960).
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> one = crystal(load_candidate("si-n"))
+    >>> found = electrical_limits(one, 300.0, 1e26, 1e-8, "grain")
+    >>> round(sum(found.shares.values()), 9), found.shares["grain boundaries"] > 0.01
+    (1.0, True)
     """
     electrons, t, n = one.electrons, np.array(temperature), np.array(doping)
     flow = bulk_flow(electrons, t, n, fill(electrons, t, n))
@@ -51,7 +59,15 @@ def electrical_limits(one: Crystal, temperature: float, doping: float, size: flo
 def thermal_limits(one: Crystal, temperature: float, doping: float, size: float, shape: str) -> Limits:
     """What slows the phonons at one design point, as `electrical_limits`: processes that resist, by modes.
 
-    Normal processes do not resist; they only share out heat, and are left out.
+    Normal processes do not resist; they only share out heat, and are left out. ArithmeticError as `fill`.
+    Source: Matthiessen's rule for each mode, as Ziman, Electrons and Phonons (1960).
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> one = crystal(load_candidate("si-n"))
+    >>> found = thermal_limits(one, 300.0, 1e26, 1e-8, "grain")
+    >>> max(found.shares, key=found.shares.get)
+    'grain boundaries'
     """
     phonons, t, n = one.phonons, np.array(temperature), np.array(doping)
     mesh = modes(phonons)

@@ -35,7 +35,7 @@ def atomic_percent(
     """Nominal dopant for an active density N: x = 100 N V/Z, per cent of all atoms; the inverse of the above.
 
     active_density N ≥ 0 (1/m³), volume_per_atom V (m³), carriers_per_dopant Z > 0; all broadcast. ValueError
-    where N would take more than every atom.
+    where N would take more than every atom. By definition of atomic per cent.
 
     >>> round(float(atomic_percent(5e26, 2e-29)), 12)
     1.0
@@ -76,7 +76,7 @@ def solubility(
 def active_limit(doping: Doping, temperature: ArrayLike) -> Array:
     """Highest active density at T by a candidate's file, 1/m³: `solubility`, or `highest` at all T without data.
 
-    temperature (K), any shape. ValueError as `solubility`.
+    temperature (K), any shape. ValueError and source as `solubility`.
 
     >>> from legwright.candidate.library import load_candidate
     >>> data = load_candidate("si-n").data.doping
@@ -95,7 +95,7 @@ _MOVING = 0.5
 def beyond_solubility(doping: Doping, temperature: ArrayLike, density: ArrayLike) -> NDArray[np.bool_]:
     """Where `density` (1/m³) is more than `active_limit` at a temperature (K) at which dopants move; broadcast.
 
-    False everywhere for a candidate without solubility data.
+    False everywhere for a candidate without solubility data. ValueError and source as `solubility`.
 
     >>> from legwright.candidate.library import load_candidate
     >>> bool(beyond_solubility(load_candidate("si-n").data.doping, 300.0, 1e30))

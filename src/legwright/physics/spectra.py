@@ -72,6 +72,10 @@ _BASIS = (
 def through(weights: Array, factor: Array) -> Array:
     """Σ_j w_j F_j for every point: weights (..., k, paths), factor (..., paths), which broadcast; result (..., k).
 
-    One dot product of fixed length for each number, so its bits do not depend on what else is computed.
+    One dot product of fixed length for each number, so its bits do not depend on what else is computed. Units are
+    the weights'. Raises ValueError where the shapes do not broadcast. By definition.
+
+    >>> through(np.array([[1.0, 2.0], [3.0, 4.0]]), np.array([1.0, 0.5])).tolist()
+    [2.0, 5.0]
     """
     return np.asarray(np.einsum("...kj,...j->...k", weights, factor))

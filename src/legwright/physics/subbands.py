@@ -38,6 +38,7 @@ class WireBand:
 
 def confinement_energy(diameter: ArrayLike, across_mass: ArrayLike) -> Array:
     """E_R = ħ²/(2 m_t R²), J: the unit of a round wire's subbands; diameter 2R > 0 (m), across_mass m_t (kg).
+    Source: Hicks & Dresselhaus, Physical Review B 47, 16631 (1993).
 
     >>> from scipy import constants as c
     >>> round(float(confinement_energy(10e-9, 0.1 * c.m_e)) / c.e, 5)
@@ -189,6 +190,7 @@ def subband_level(band: WireBand, temperature: ArrayLike, density: ArrayLike, di
 
     temperature (K), diameter (m); all broadcast. The root of `subband_density` in ln n, between the level of the
     bulk (a wire never has more states: Pólya) and that of its first subband alone. ValueError for density ≤ 0.
+    Source: Hicks & Dresselhaus, Physical Review B 47, 16631 (1993).
 
     >>> from scipy import constants as c
     >>> band = WireBand(0.2 * c.m_e, 0.2 * c.m_e, 1.0, 9 * c.e, 1.5e11)
