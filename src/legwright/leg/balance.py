@@ -234,7 +234,8 @@ def zoom(score: Callable[[Array], Array], low: Array, high: Array, points: int, 
     """Best argument and score of a single-peaked function per leg: a grid that shrinks around its best point.
 
     `score` takes the grid with its points along a first axis of its own; low and high, in units of the argument,
-    have the legs' shape. Each of the `rounds` divides the bracket by (points − 1)/2. Raises nothing of its own. By definition a bracketing search
+    have the legs' shape. Each of the `rounds` divides the bracket by (points − 1)/2. Raises nothing of its own.
+    By definition a bracketing search
     (Kiefer, Proceedings of the American Mathematical Society 4, 502 (1953)).
 
     >>> where, best = zoom(lambda x: -((x - 0.3) ** 2), np.array(0.0), np.array(1.0), 7, 12)
