@@ -49,8 +49,9 @@ def test_a_row_does_not_depend_on_who_else_is_asked(question, brief, legwright):
     assert {**row, "rank": None} == {**beside, "rank": None}
 
 
-def test_two_workers_give_the_bytes_of_one(question, legwright):
+@pytest.mark.parametrize("workers", ["2", "8"])
+def test_more_workers_give_the_bytes_of_one(workers, question, legwright):
     one = legwright("rank", question, "--json", "--workers", "1")
-    two = legwright("rank", question, "--json", "--workers", "2")
-    assert one.code == two.code == 0
-    assert one.out == two.out
+    more = legwright("rank", question, "--json", "--workers", workers)
+    assert one.code == more.code == 0
+    assert one.out == more.out
