@@ -122,3 +122,25 @@ def test_the_acoustic_part_falls_towards_zero_and_never_through_it(name):
     assert np.all(np.diff(values) > 0)
     assert values[0] > optical
     assert values[0] - optical < 0.2 * (values[2] - optical)
+
+
+@pytest.mark.parametrize("shape", SHAPES)
+@pytest.mark.parametrize("name", NAMES)
+def test_every_corner_of_what_can_be_asked_has_an_answer(name, shape):
+    """2 to 3000 K, 1e12 to 1e29 m⁻³, 0.1 nm to 1 m and bulk: far outside data, still finite and not negative."""
+    t = np.array([2.0, 20.0, 300.0, 3000.0])[:, None, None]
+    n = np.array([1e12, 1e20, 1e26, 1e29])[:, None]
+    d = np.array([1e-10, 1e-8, 1e-4, 1.0, np.inf])
+    made = evaluate(load_candidate(name), t, n, d, shape)
+    for key in (
+        "electrical_conductivity",
+        "electronic_thermal_conductivity",
+        "bipolar_thermal_conductivity",
+        "lattice_thermal_conductivity",
+        "mobility",
+        "zt",
+    ):
+        values = getattr(made, key)
+        assert np.all(np.isfinite(values)), key
+        assert np.all(values >= 0), key
+    assert np.all(np.isfinite(made.seebeck))
