@@ -26,9 +26,9 @@ from legwright.physics import (
     phonon_scattering,
     quanta,
     short_legs,
-    solubility,
     texture,
 )
+from legwright.physics.solubility import active_density, solubility
 
 #: steps repeat the same arithmetic in other words: what is left is rounding
 ROUNDING = 1e-12
