@@ -89,7 +89,7 @@ def test_the_ends_of_magnesium_silicide_stannide_are_near_what_they_conduct():
 @pytest.mark.parametrize("name", FAMILIES)
 def test_numbers_of_a_member_keep_their_origin(name):
     family = load_family(name)
-    middle = member(family, tuple(min(0.27, end.most) for end in family.data.end[1:]))
+    middle = member(family, tuple(0.85 * share for share in family.data.node[-1].shares[1:]))
     for key, number in numbers(middle.data):
         assert number.source, key
         assert number.spread >= 0, key

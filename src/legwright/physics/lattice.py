@@ -379,7 +379,7 @@ def short_leg_conductivity(mesh: Modes, rates: Rates, temperature: Array, length
 
 
 #: mean free paths of phonons, down to the standing waves of the zone edge
-PATHS = PathMesh(1e-13, 1e2, 17)
+PATHS = PathMesh(1e-15, 1e2, 19)
 
 
 @dataclass(frozen=True)
