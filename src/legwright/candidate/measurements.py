@@ -78,8 +78,8 @@ class Measurements:
 def read_measurements(path: str | Path, carrier: str | None = None) -> Measurements:
     """The table in a CSV file.
 
-    Headers are `name [unit]` for quantities, `name` for words; `size` may be the word bulk. One quantity may stand in
-    two columns with different units, filled in different rows. `carrier` n or p: the sign that S must have.
+    Headers are `name [unit]` for quantities, `name` for words; `size` may be the word bulk. One quantity may stand
+    in two columns with different units, filled in different rows. `carrier` n or p: the sign that S must have.
     Raises InputError naming file, row and the likely cause.
     """
     shown = Path(path)
@@ -164,7 +164,7 @@ def _fault(path: str | Path, row: int, what: str) -> InputError:
 
 
 def _check_rows(table: Measurements, carrier: str | None) -> None:
-    """What no single cell shows: rows twice, rows without a temperature or a figure, a sign, σ and κ that disagree."""
+    """What no single cell shows: rows twice, without a temperature or a figure, a sign, σ and κ that disagree."""
     seen: dict[tuple[object, ...], int] = {}
     temperature, thermopower = table.of("temperature"), table.of("seebeck")
     for index, row in enumerate(table.rows):

@@ -25,12 +25,23 @@ class Reflection(Table):
     electrons: Fraction
 
 
+class ByQuantity(Table):
+    """One relative spread for each quantity that is judged; both thermal conductivities share theirs."""
+
+    seebeck: Pure
+    electrical_conductivity: Pure
+    thermal_conductivity: Pure
+    zt: Pure
+
+
 class Priors(Table):
     """The whole of priors.toml."""
 
     schema_: Literal[1] = Field(alias="schema")
     grain_law: GrainLaw
     reflection: Reflection
+    laboratory: ByQuantity
+    discrepancy: ByQuantity
 
 
 @cache

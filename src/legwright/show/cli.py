@@ -268,6 +268,33 @@ def _candidates(name: str | None, as_json: bool, csv_file: Path | None, markdown
     _publish("candidates", content, rows, as_json, csv_file, table)
 
 
+@_cli.command("audit")
+@_output
+def _audit(as_json: bool, csv_file: Path | None, markdown: bool) -> None:
+    """The library against published samples: how far off, how often inside its own intervals."""
+    from legwright.decide.audit import audit, totals
+    from legwright.show import records, tables
+
+    judged = audit()
+    rows = [records.judgement_record(one) for one in judged]
+    sums = [records.total_record(one) for one in totals(judged)]
+    content: Record = {"samples": rows, "totals": sums}
+
+    def table() -> None:
+        out = tables.console(markdown)
+        out.print(tables.totals_table(sums, markdown))
+        out.print(tables.misses_table(rows, markdown))
+        fitted = sum(row["fitted"] for row in rows)
+        outside = sum(row["role"] == "outside data" for row in rows)
+        out.print(
+            f"Left out of the totals: {fitted} values that fixed a parameter, {outside} beyond a candidate's data. "
+            "Counted: values that nobody saw while choosing parameters, and those seen that fixed nothing.",
+            markup=False,
+        )
+
+    _publish("audit", content, rows, as_json, csv_file, table)
+
+
 def _publish(
     verb: str,
     content: Record,

@@ -16,6 +16,7 @@ from legwright.candidate.library import Candidate
 from legwright.candidate.model import numbers
 from legwright.candidate.sources import bibliography
 from legwright.candidate.supply import cost_per_kg, hazardous_elements, mass_density, supply_concentration
+from legwright.decide.audit import Judgement, Total
 from legwright.decide.peak import Peak
 from legwright.decide.rank import Row
 from legwright.decide.why import Why
@@ -157,6 +158,58 @@ def family_record(family: Family) -> Record:
         "ends": list(family.ends),
         "largest_shares": [end.most for end in family.data.end],
         "nodes": [node.name for node in family.nodes],
+    }
+
+
+def judgement_record(one: Judgement) -> Record:
+    """One published value of `audit`; trade units, as the quantity's name in `unit` says."""
+    unit, factor = _AUDIT_UNITS[one.quantity]
+    low, high = one.interval
+    return {
+        "material": one.material,
+        "sample": one.sample,
+        "quantity": one.quantity,
+        "unit": unit,
+        "shape": one.shape,
+        "size_nm": nanometres(one.size),
+        "temperature_K": one.temperature,
+        "measured": one.measured / factor,
+        "predicted": one.predicted / factor,
+        "low": low / factor,
+        "high": high / factor,
+        "inside": one.inside,
+        "fitted": one.fitted,
+        "role": one.role or "blind",
+        "density_from": one.density_from,
+        "source": one.source,
+        "note": one.note,
+    }
+
+
+_AUDIT_UNITS = {
+    "lattice_conductivity": ("W/m/K", 1.0),
+    "thermal_conductivity": ("W/m/K", 1.0),
+    "seebeck": ("uV/K", MICRO),
+    "electrical_conductivity": ("S/cm", 100.0),
+    "mobility": ("cm^2/V/s", CM2),
+    "power_factor": ("mW/m/K^2", 1e-3),
+    "zt": ("1", 1.0),
+}
+
+
+def total_record(one: Total) -> Record:
+    """One line of the audit's totals."""
+    return {
+        "material": one.material,
+        "quantity": one.quantity,
+        "values": one.values,
+        "papers": one.papers,
+        "median_deviation": one.median,
+        "inside": one.inside,
+        "coverage": one.inside / one.values,
+        "coverage_low": one.coverage[0],
+        "coverage_high": one.coverage[1],
+        "median_half_width": one.half_width,
     }
 
 

@@ -203,6 +203,56 @@ def families_table(rows: Sequence[Record], markdown: bool) -> Table:
     return draw("Alloy lines", columns, cells, markdown)
 
 
+def totals_table(rows: Sequence[Record], markdown: bool) -> Table:
+    """How far off, and how often inside."""
+    columns = ("material", "quantity", "values", "papers", "median off", "inside 90 %", "could be", "half-width")
+    cells = (
+        (
+            row["material"],
+            row["quantity"].replace("_", " "),
+            str(row["values"]),
+            str(row["papers"]),
+            f"{100 * row['median_deviation']:.0f} %",
+            f"{100 * row['coverage']:.0f} %",
+            f"{100 * row['coverage_low']:.0f} … {100 * row['coverage_high']:.0f} %",
+            f"{100 * row['median_half_width']:.0f} %",
+        )
+        for row in rows
+    )
+    return draw("Predictions against published samples (90 % intervals)", columns, cells, markdown)
+
+
+def misses_table(rows: Sequence[Record], markdown: bool) -> Table:
+    """Every counted value outside its interval, by name."""
+    columns = (
+        "material",
+        "sample",
+        "quantity",
+        "T [K]",
+        "size [nm]",
+        "measured",
+        "predicted",
+        "unit",
+        "likely cause",
+    )
+    cells = (
+        (
+            row["material"],
+            row["sample"],
+            row["quantity"].replace("_", " "),
+            figure(row["temperature_K"], 4),
+            "bulk" if row["size_nm"] is None else figure(row["size_nm"]),
+            figure(row["measured"]),
+            figure(row["predicted"]),
+            row["unit"],
+            row["note"] or "not known",
+        )
+        for row in rows
+        if not row["inside"] and row["role"] in ("blind", "seen")
+    )
+    return draw("Outside their interval", columns, cells, markdown)
+
+
 def numbers_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
     """Every number of a candidate."""
     columns = ("key", "value", "unit", "spread (1 σ)", "basis", "source", "note")
