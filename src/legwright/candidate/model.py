@@ -315,6 +315,30 @@ class Making(Table):
         return 0.0 if size is None else size.si
 
 
+class Knot(Table):
+    """The heavy-doping factor at one density."""
+
+    doping: Density
+    factor: Ratio
+
+
+class Fitted(Table):
+    """Prefactors fitted to measurements of one's own, in place of those that the anchors fix.
+
+    `names` and `covariance` keep what the fit knows of the logarithms (of the gap: eV) for later draws.
+    """
+
+    mass: Ratio
+    lattice_scattering: Ratio
+    anharmonicity: Ratio
+    strain: Ratio
+    phonons_by_carriers: Ratio
+    optical_excess: Annotated[Measure, measure("W/m/K", 0)]
+    heavy_doping: tuple[Knot, ...] = ()
+    names: tuple[str, ...]
+    covariance: tuple[tuple[float, ...], ...]
+
+
 class CandidateFile(Table):
     """A whole candidate file."""
 
@@ -334,6 +358,7 @@ class CandidateFile(Table):
     making: Making
     contact: tuple[Contact, ...] = ()
     coarsening: Coarsening | None = None
+    fitted: Fitted | None = None
 
     @model_validator(mode="after")
     def _consistent(self) -> CandidateFile:

@@ -14,7 +14,7 @@ from legwright.base.errors import InputError
 from legwright.base.units import EPS_0
 from legwright.candidate.composition import atomic_mass, dopant_disorder
 from legwright.candidate.library import Candidate
-from legwright.candidate.model import Anchor, Band
+from legwright.candidate.model import Anchor, Band, Fitted
 from legwright.candidate.number import Measure
 from legwright.candidate.priors import load_priors
 from legwright.physics.carriers import Electrons, bulk_flow, fill, masses, transport_integrals
@@ -73,11 +73,35 @@ def crystal(candidate: Candidate) -> Crystal:
     )
     if candidate.relatives:
         return _with_prefactors_of(candidate.relatives, bare)
+    if candidate.data.fitted is not None:
+        return _with_fitted_prefactors(candidate, candidate.data.fitted, bare)
     brought = _brought_by_making(candidate)
     electrons = _fix_electrons(candidate, bare.electrons)
     as_anchored = _weighing(_with_optical_heat(candidate, bare.phonons), brought, 0.0)
     phonons = _fix_phonons(candidate, Crystal(electrons, as_anchored))
     return replace(bare, electrons=electrons, phonons=_weighing(phonons, brought, 1.0))
+
+
+def _with_fitted_prefactors(candidate: Candidate, fitted: Fitted, bare: Crystal) -> Crystal:
+    anchor = next((a for a in candidate.data.anchor if a.quantity == "lattice_conductivity"), None)
+    knots = tuple((float(np.log(knot.doping.si)), float(np.log(knot.factor.si))) for knot in fitted.heavy_doping)
+    return replace(
+        bare,
+        electrons=replace(
+            bare.electrons,
+            mass_scale=fitted.mass.si,
+            lattice_scale=fitted.lattice_scattering.si,
+            impurity_knots=knots,
+        ),
+        phonons=replace(
+            bare.phonons,
+            anharmonic_scale=fitted.anharmonicity.si,
+            strain_scale=fitted.strain.si,
+            carrier_weight=fitted.phonons_by_carriers.si,
+            optical_excess=fitted.optical_excess.si,
+            optical_temperature=anchor.temperature.si if anchor else bare.phonons.optical_temperature,
+        ),
+    )
 
 
 def _with_prefactors_of(relatives: tuple[tuple[Candidate, float], ...], bare: Crystal) -> Crystal:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import math
 from collections.abc import Iterable
+from pathlib import Path
 from typing import Any
 
 from legwright.base.flags import MEANINGS
@@ -17,6 +18,7 @@ from legwright.candidate.model import numbers
 from legwright.candidate.sources import bibliography
 from legwright.candidate.supply import cost_per_kg, hazardous_elements, mass_density, supply_concentration
 from legwright.decide.audit import Judgement, Total
+from legwright.decide.fit import Fit, Parameter
 from legwright.decide.peak import Peak
 from legwright.decide.rank import Row
 from legwright.decide.why import Why
@@ -195,6 +197,37 @@ _AUDIT_UNITS = {
     "power_factor": ("mW/m/K^2", 1e-3),
     "zt": ("1", 1.0),
 }
+
+
+def fit_record(found: Fit, into: Path | None) -> Record:
+    """The whole of `fit`; densities in 1/cm³, other parameters as factors on the start's (gap: eV)."""
+
+    def row(one: Parameter) -> Record:
+        low, high = one.interval
+        scale = PER_CM3 if one.name.startswith("density") else 1.0
+        return {
+            "parameter": one.name,
+            "value": one.value / scale,
+            "low": low / scale,
+            "high": high / scale,
+            "unit": "1/cm^3" if scale != 1 else "eV" if one.name == "gap" else "1",
+            "determined": one.determined,
+        }
+
+    return {
+        "start": found.start.name,
+        "measurements": str(found.table.path),
+        "file": None if into is None else str(into),
+        "complete": found.complete,
+        "reason": found.reason,
+        "heat_capacity": found.heat_capacity,
+        "parameters": [row(one) for one in found.parameters],
+        "residuals": [
+            {"quantity": quantity, "rows": rows, "rms_deviation": rms}
+            for quantity, (rows, rms) in found.residuals.items()
+        ],
+        "covariance": found.covariance.tolist(),
+    }
 
 
 def total_record(one: Total) -> Record:

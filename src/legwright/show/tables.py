@@ -203,6 +203,35 @@ def families_table(rows: Sequence[Record], markdown: bool) -> Table:
     return draw("Alloy lines", columns, cells, markdown)
 
 
+def fit_tables(found: Record, markdown: bool) -> list[Table]:
+    """Parameters with their intervals, and how well each quantity is met."""
+    parameters = draw(
+        f"Fitted to {found['measurements']}, starting from {found['start']} (factors on the start's; 90 %)",
+        ("parameter", "value", "between", "unit", "data decide"),
+        (
+            (
+                row["parameter"],
+                figure(row["value"]),
+                _span((row["low"], row["high"])),
+                row["unit"],
+                "yes" if row["determined"] else "no",
+            )
+            for row in found["parameters"]
+        ),
+        markdown,
+    )
+    residuals = draw(
+        "How well the data are met",
+        ("quantity", "rows", "rms off"),
+        (
+            (row["quantity"].replace("_", " "), str(row["rows"]), f"{100 * row['rms_deviation']:.1f} %")
+            for row in found["residuals"]
+        ),
+        markdown,
+    )
+    return [parameters, residuals]
+
+
 def totals_table(rows: Sequence[Record], markdown: bool) -> Table:
     """How far off, and how often inside."""
     columns = ("material", "quantity", "values", "papers", "median off", "inside 90 %", "could be", "half-width")
