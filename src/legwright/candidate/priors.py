@@ -34,6 +34,12 @@ class ByQuantity(Table):
     zt: Pure
 
 
+class Discrepancy(ByQuantity):
+    """As above; heat in bodies of a stated size, which may be strained, porous or oxidised, has its own."""
+
+    thermal_conductivity_sized: Pure
+
+
 class Priors(Table):
     """The whole of priors.toml."""
 
@@ -41,7 +47,7 @@ class Priors(Table):
     grain_law: GrainLaw
     reflection: Reflection
     laboratory: ByQuantity
-    discrepancy: ByQuantity
+    discrepancy: Discrepancy
 
 
 @cache

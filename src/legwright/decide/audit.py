@@ -76,8 +76,14 @@ class Judgement:
     @property
     def half_width(self) -> float:
         """Half of the 90 % interval in ln, the model's own discrepancy with it."""
-        own = _of(load_priors().discrepancy, self.quantity)
-        return NINETY * math.hypot(self.spread, own)
+        own = getattr(load_priors().discrepancy, self.kind)
+        return NINETY * math.hypot(self.spread, own.si)
+
+    @property
+    def kind(self) -> str:
+        """Which of the discrepancies applies."""
+        kind = _KIND.get(self.quantity, self.quantity)
+        return f"{kind}_sized" if kind == "thermal_conductivity" and math.isfinite(self.size) else kind
 
     @property
     def interval(self) -> tuple[float, float]:
@@ -298,15 +304,9 @@ def of_first_half(source: str) -> bool:
     return hashlib.sha256(source.encode()).digest()[-1] % 2 == 0
 
 
-def fitting_discrepancy(judged: Iterable[Judgement], quantity: str) -> float:
+def fitting_discrepancy(judged: Iterable[Judgement], kind: str) -> float:
     """The least spread of the model's own that puts nine in ten values of the first half's papers inside."""
-    ones = [
-        one
-        for one in judged
-        if one.role in BLIND_AND_SEEN
-        and of_first_half(one.source)
-        and _KIND.get(one.quantity, one.quantity) == quantity
-    ]
+    ones = [one for one in judged if one.role in BLIND_AND_SEEN and of_first_half(one.source) and one.kind == kind]
     if not ones:
         return 0.0
     wanted = sorted(math.sqrt(max((one.deviation / NINETY) ** 2 - one.spread**2, 0.0)) for one in ones)
