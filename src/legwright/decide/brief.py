@@ -10,9 +10,10 @@ from pydantic import Field, PlainValidator, model_validator
 from legwright.base.errors import InputError, nearest
 from legwright.base.files import read_toml
 from legwright.base.reading import Table, read_as
-from legwright.base.units import NM, PER_CM3
+from legwright.base.units import CM2, MICRO, NM, PER_CM3
 from legwright.candidate.library import Candidate, library_names, load_candidate
 from legwright.leg.duty import GOALS, Duty, Goal, Kind
+from legwright.leg.installed import Setting
 from legwright.physics.properties import COLDEST, DENSEST, HOTTEST, LARGEST, SMALLEST, THINNEST, Shape
 
 Temperature = Annotated[float, Field(ge=COLDEST, le=HOTTEST)]
@@ -96,6 +97,9 @@ class LegTable(Table):
     """The leg itself."""
 
     length_mm: Annotated[float, Field(ge=1e-3, le=1e3)] = DEFAULT_LENGTH_MM
+    contact_uohm_cm2: Annotated[float, Field(ge=0, le=1e6)] = 0.0
+    hot_exchanger_K_cm2_per_W: Annotated[float, Field(ge=0, le=1e4)] = 0.0
+    cold_exchanger_K_cm2_per_W: Annotated[float, Field(ge=0, le=1e4)] = 0.0
 
 
 class Brief(Table):
@@ -114,6 +118,16 @@ class Brief(Table):
         """The duty in SI."""
         duty = self.duty
         return Duty(duty.kind, duty.hot_K, duty.cold_K, duty.maximise, self.leg.length_mm * 1e6 * NM)
+
+    @property
+    def setting(self) -> Setting:
+        """Contacts and exchangers in SI; ideal ones where the brief says nothing."""
+        leg = self.leg
+        return Setting(
+            leg.contact_uohm_cm2 * MICRO * CM2,
+            leg.hot_exchanger_K_cm2_per_W * CM2,
+            leg.cold_exchanger_K_cm2_per_W * CM2,
+        )
 
 
 def load_brief(path: str | Path) -> Brief:

@@ -113,11 +113,12 @@ _SMALLEST_W = 1e-30
 
 @dataclass(frozen=True)
 class Generator:
-    """A generating leg at one operating point; areal figures are times the leg length (W/m, A/m)."""
+    """A generating leg at one operating point; heat is that taken in; areal figures times the length (W/m, A/m)."""
 
     efficiency: Array
     power_times_length: Array
     current_times_length: Array
+    heat_times_length: Array
 
 
 def generate(material: LegMaterial, hot: float, cold: float, w_hot: Array, steps: int = 24) -> Generator:
@@ -140,7 +141,7 @@ def generate(material: LegMaterial, hot: float, cold: float, w_hot: Array, steps
     valid = (phi_hot > 0) & (along.w[-1] > 0)
     efficiency = np.where(valid, 1 - phi_cold / np.where(valid, phi_hot, 1.0), -np.inf)
     current = along.current_length
-    return Generator(efficiency, current * (phi_hot - phi_cold), current)
+    return Generator(efficiency, current * (phi_hot - phi_cold), current, current * phi_hot)
 
 
 @dataclass(frozen=True)
@@ -150,6 +151,7 @@ class Cooler:
     cop: Array
     heat_times_length: Array
     current_times_length: Array
+    power_times_length: Array
 
 
 def cool(material: LegMaterial, hot: float, cold: float, w_hot: Array, steps: int = 24) -> Cooler:
@@ -170,7 +172,7 @@ def cool(material: LegMaterial, hot: float, cold: float, w_hot: Array, steps: in
     spent = phi_hot - phi_cold
     cop = np.where(spent > 0, phi_cold / np.where(spent > 0, spent, 1.0), -np.inf)
     current = along.current_length
-    return Cooler(cop, current * phi_cold, current)
+    return Cooler(cop, current * phi_cold, current, current * spent)
 
 
 def cool_past_peak(material: LegMaterial, hot: float, cold: float, peak: float, steps: int = 24) -> Cooler:
@@ -190,7 +192,8 @@ def cool_past_peak(material: LegMaterial, hot: float, cold: float, peak: float, 
     phi_cold = material.seebeck(cold) * cold - to_cold.w[-1]
     phi_hot = material.seebeck(hot) * hot + to_hot.w[-1]
     current = to_cold.current_length + to_hot.current_length
-    return Cooler(phi_cold / (phi_hot - phi_cold), current * phi_cold, current)
+    spent = phi_hot - phi_cold
+    return Cooler(phi_cold / spent, current * phi_cold, current, current * spent)
 
 
 def largest_difference(material: LegMaterial, hot: float, steps: int = 96) -> Array:

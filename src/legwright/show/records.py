@@ -18,7 +18,9 @@ from legwright.candidate.model import numbers
 from legwright.candidate.sources import bibliography
 from legwright.candidate.supply import cost_per_kg, hazardous_elements, mass_density, supply_concentration
 from legwright.decide.audit import Judgement, Total
+from legwright.decide.brief import Brief
 from legwright.decide.fit import Fit, Parameter
+from legwright.decide.installed import Delivered
 from legwright.decide.peak import Peak
 from legwright.decide.rank import Row
 from legwright.decide.why import Why
@@ -197,6 +199,42 @@ _AUDIT_UNITS = {
     "power_factor": ("mW/m/K^2", 1e-3),
     "zt": ("1", 1.0),
 }
+
+
+def leg_record(found: Delivered, brief: Brief) -> Record:
+    """The whole of `leg`; areal figures per cm² of leg."""
+    running, ideal, generates = found.running, found.ideal, brief.duty.kind == "generator"
+
+    def per_cm2(value: float) -> float:
+        return value * CM2
+
+    content: Record = {
+        "candidate": found.candidate.name,
+        "formula": found.candidate.data.formula,
+        "shape": found.shape,
+        "size_nm": nanometres(found.size),
+        "doping_per_cm3": found.doping / PER_CM3,
+        "length_mm": brief.leg.length_mm,
+        "contact_uohm_cm2": brief.leg.contact_uohm_cm2,
+        "hot_exchanger_K_cm2_per_W": brief.leg.hot_exchanger_K_cm2_per_W,
+        "cold_exchanger_K_cm2_per_W": brief.leg.cold_exchanger_K_cm2_per_W,
+    }
+    if generates:
+        content["efficiency"] = running and running.efficiency
+        content["efficiency_ideal_contacts"] = ideal and ideal.efficiency
+        content["power_W_per_cm2"] = running and per_cm2(running.power)
+    else:
+        content["cop"] = running and running.cop
+        content["cop_ideal_contacts"] = ideal and ideal.cop
+        content["heat_lifted_W_per_cm2"] = running and per_cm2(running.heat_cold)
+        content["delta_t_max_K"] = found.largest_difference
+    return content | {
+        "current_A_per_cm2": running and per_cm2(running.current),
+        "heat_from_hot_W_per_cm2" if generates else "heat_to_hot_W_per_cm2": running and per_cm2(running.heat_hot),
+        "hot_end_K": running and running.hot_end,
+        "cold_end_K": running and running.cold_end,
+        "flags": list(found.flags),
+    }
 
 
 def fit_record(found: Fit, into: Path | None) -> Record:

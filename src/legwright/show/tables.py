@@ -203,6 +203,36 @@ def families_table(rows: Sequence[Record], markdown: bool) -> Table:
     return draw("Alloy lines", columns, cells, markdown)
 
 
+_LEG_LABELS = {
+    "efficiency": "efficiency",
+    "efficiency_ideal_contacts": "efficiency, ideal contacts and exchangers",
+    "power_W_per_cm2": "power [W/cm²]",
+    "cop": "COP",
+    "cop_ideal_contacts": "COP, ideal contacts and exchangers",
+    "heat_lifted_W_per_cm2": "heat lifted [W/cm²]",
+    "delta_t_max_K": "largest ΔT [K]",
+    "current_A_per_cm2": "current [A/cm²]",
+    "heat_from_hot_W_per_cm2": "heat taken in [W/cm²]",
+    "heat_to_hot_W_per_cm2": "heat given off [W/cm²]",
+    "hot_end_K": "hot end of the leg [K]",
+    "cold_end_K": "cold end of the leg [K]",
+    "length_mm": "length [mm]",
+    "contact_uohm_cm2": "each contact [µΩ cm²]",
+    "hot_exchanger_K_cm2_per_W": "hot exchanger [K cm²/W]",
+    "cold_exchanger_K_cm2_per_W": "cold exchanger [K cm²/W]",
+}
+
+
+def leg_table(found: Record, markdown: bool) -> Table:
+    """What a leg delivers."""
+    size = "coarse" if found["size_nm"] is None else f"{figure(found['size_nm'])} nm"
+    title = (
+        f"{found['candidate']} ({found['formula']}), {found['shape']} {size}, {found['doping_per_cm3']:.3g} cm⁻³"
+    )
+    pairs = [(label, figure(found[key])) for key, label in _LEG_LABELS.items() if key in found]
+    return pairs_table(title, pairs, markdown)
+
+
 def fit_tables(found: Record, markdown: bool) -> list[Table]:
     """Parameters with their intervals, and how well each quantity is met."""
     parameters = draw(
