@@ -65,10 +65,10 @@ def rank(brief: Brief, path: str | Path, workers: int = 1) -> list[Row]:
 def rank_one(brief: Brief, candidate: Candidate) -> Row:
     """Dense map over doping and size, refined around its best point; then window, zT and gain there."""
     duty, shape = brief.task, brief.size.shape
-    refusal = _refusal(brief, candidate, duty)
+    refused = refusal(brief, candidate, duty)
     dopings = doping_range(brief, candidate)
-    if refusal or dopings is None:
-        return _infeasible(brief, candidate, refusal or "no-doping-range")
+    if refused or dopings is None:
+        return _infeasible(brief, candidate, refused or "no-doping-range")
     sizes = size_range(brief, candidate)
     doping, size, _ = best_design(candidate, duty, dopings, sizes, shape)
     made = properties_over_span(candidate, duty, doping, size, shape, _FINE_NODES)
@@ -114,7 +114,8 @@ def size_range(brief: Brief, candidate: Candidate) -> tuple[float, float]:
     return (max(low, smallest), high) if smallest < high else (low, high)
 
 
-def _refusal(brief: Brief, candidate: Candidate, duty: Duty) -> str | None:
+def refusal(brief: Brief, candidate: Candidate, duty: Duty) -> str | None:
+    """The flag that says why the brief has no use for the candidate; None where it has."""
     avoid = brief.avoid
     if set(avoid.elements) & set(candidate.elements):
         return "avoided-element"

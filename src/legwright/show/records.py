@@ -23,6 +23,7 @@ from legwright.decide.fit import Fit, Parameter
 from legwright.decide.installed import Delivered
 from legwright.decide.peak import Peak
 from legwright.decide.rank import Row
+from legwright.decide.search import Found
 from legwright.decide.why import Why
 from legwright.physics.properties import Properties
 from legwright.physics.solubility import atomic_percent
@@ -199,6 +200,27 @@ _AUDIT_UNITS = {
     "power_factor": ("mW/m/K^2", 1e-3),
     "zt": ("1", 1.0),
 }
+
+
+def search_record(found: Found) -> Record:
+    """The whole of `search`."""
+    return {
+        "candidate": found.candidate.name,
+        "formula": found.candidate.data.formula,
+        "shape": found.shape,
+        "size_nm": nanometres(found.size),
+        "doping_per_cm3": found.doping / PER_CM3,
+        "score": found.score,
+        "score_name": found.score_name,
+        "evaluations": found.evaluations,
+        "polish_evaluations": found.polish_evaluations,
+        "score_before_polish": found.before_polish,
+        "score_of_dense_map": found.map_score,
+        "gap_to_dense_map": found.gap,
+        "bounds_touched": list(found.touched),
+        "complete": found.complete,
+        "flags": list(found.flags),
+    }
 
 
 def leg_record(found: Delivered, brief: Brief) -> Record:

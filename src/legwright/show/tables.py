@@ -203,6 +203,22 @@ def families_table(rows: Sequence[Record], markdown: bool) -> Table:
     return draw("Alloy lines", columns, cells, markdown)
 
 
+def search_table(found: Record, markdown: bool) -> Table:
+    """The best design, and what certifies it."""
+    pairs = [
+        ("best", f"{found['candidate']} ({found['formula']})"),
+        (f"{found['shape']} size [nm]", "coarse" if found["size_nm"] is None else figure(found["size_nm"])),
+        ("doping [cm⁻³]", f"{found['doping_per_cm3']:.3g}"),
+        (found["score_name"], figure(found["score"], 4)),
+        ("costly evaluations, and of the polish", f"{found['evaluations']}, {found['polish_evaluations']}"),
+        ("before the polish", figure(found["score_before_polish"], 4)),
+        ("best of dense maps", figure(found["score_of_dense_map"], 4)),
+        ("dense map better by", f"{100 * found['gap_to_dense_map']:+.4f} %"),
+        ("at a bound", ", ".join(found["bounds_touched"]) or "none"),
+    ]
+    return pairs_table("Search" if found["complete"] else "Search (interrupted: best so far)", pairs, markdown)
+
+
 _LEG_LABELS = {
     "efficiency": "efficiency",
     "efficiency_ideal_contacts": "efficiency, ideal contacts and exchangers",
