@@ -118,7 +118,8 @@ def _unit_mesh(count: int) -> tuple[Array, Array]:
 
     With 128 nodes κ of every library candidate is within 1.3e-6 from 300 K up, for any size and grain law, and of
     most within 1e-9; below, the edge of carrier scattering at twice the Fermi wave number sharpens: 3e-5 at 200 K,
-    2e-4 at 150 K, 1 % at 50 K. Without carriers 64 nodes give 4e-10 and 96 nodes rounding at every temperature from 50 K.
+    2e-4 at 150 K, 1 % at 50 K. Without carriers 64 nodes give 4e-10 and 96 nodes rounding at every temperature
+    from 50 K.
     """
     nodes, weights = np.polynomial.legendre.leggauss(count)
     angle = 0.5 * np.pi * (nodes + 1)
