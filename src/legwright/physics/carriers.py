@@ -370,7 +370,7 @@ def short_leg_integrals(flow: Flow, length: Array) -> Integrals:
 
 
 #: mean free paths that carriers of any candidate may have
-PATHS = PathMesh(1e-11, 1e-4, 10)
+PATHS = PathMesh(1e-12, 1e-4, 12)
 
 
 def path_spectrum(electrons: Electrons, flow: Flow) -> Array:
