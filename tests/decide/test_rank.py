@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from legwright.candidate.library import load_candidate
-from legwright.decide.rank import WINDOW_SHARE, best_bulk_score, best_design, window, window_of
+from legwright.decide.rank import WINDOW_SHARE, best_coarse_score, best_design, design_map, window, window_of
 from legwright.decide.score import score
 from legwright.leg.duty import Duty
 
@@ -58,6 +58,7 @@ def test_window_of_a_tent():
 def test_coarse_material_is_searched_at_its_own_doping(name, kind):
     candidate, duty = load_candidate(name), DUTIES[kind]
     limits = candidate.data.doping
-    best = best_bulk_score(candidate, duty, (limits.lowest.si, limits.highest.si), "grain")
+    found = design_map(candidate, duty, (limits.lowest.si, limits.highest.si), (1e-8, 1e-6), "grain")
+    best = best_coarse_score(found, candidate, duty, "grain")
     dense = score(candidate, duty, np.geomspace(limits.lowest.si, limits.highest.si, 400), np.inf, "grain")
     assert best == pytest.approx(np.max(dense), rel=2e-4)  # 9 temperatures and a coarse current here

@@ -25,7 +25,7 @@ Array = NDArray[np.float64]
 WINDOW_SHARE = 0.95
 _MAP_DOPINGS, _MAP_SIZES, _WINDOW_SIZES = 25, 33, 129
 _FINE_NODES, _FINE_ROUNDS = 17, 8
-_ZOOMS, _ZOOM_POINTS = 6, 7
+_ZOOMS, _COARSE_ZOOMS, _ZOOM_POINTS = 5, 4, 5
 
 
 @dataclass(frozen=True)
@@ -70,13 +70,14 @@ def rank_one(brief: Brief, candidate: Candidate) -> Row:
     if refused or dopings is None:
         return _infeasible(brief, candidate, refused or "no-doping-range")
     sizes = size_range(brief, candidate)
-    doping, size, _ = best_design(candidate, duty, dopings, sizes, shape)
+    found = design_map(candidate, duty, dopings, sizes, shape)
+    doping, size, _ = best_on(found, candidate, duty, shape)
     made = properties_over_span(candidate, duty, doping, size, shape, _FINE_NODES)
     best = float(best_score(leg_material(candidate, made), duty, _FINE_ROUNDS))
     if best == 0:
         return _infeasible(brief, candidate, "duty-out-of-reach")
     low, high, open_ended = window(candidate, duty, doping, size, sizes, shape)
-    bulk = best_bulk_score(candidate, duty, dopings, shape)
+    bulk = best_coarse_score(found, candidate, duty, shape)
     zt_mean, zt_peak = zt_over(made, duty)
     flags = _design_flags(candidate, brief, made, doping, size, dopings, sizes)
     if open_ended:
@@ -142,25 +143,51 @@ def around(axis: Array, best: int, count: int = _ZOOM_POINTS) -> Array:
     return np.geomspace(axis[max(best - 1, 0)], axis[min(best + 1, axis.size - 1)], count)
 
 
+@dataclass(frozen=True)
+class Map:
+    """Scores over dopings (1/m³) and sizes (m), and of coarse material at the same dopings."""
+
+    doping: Array
+    size: Array
+    scores: Array
+    coarse: Array
+
+
+def design_map(
+    candidate: Candidate, duty: Duty, dopings: tuple[float, float], sizes: tuple[float, float], shape: str
+) -> Map:
+    """The dense map from which searches start; coarse material comes along as one more size."""
+    density, length = np.geomspace(*dopings, _MAP_DOPINGS), np.geomspace(*sizes, _MAP_SIZES)
+    scores = score(candidate, duty, density[:, None], np.append(length, np.inf), shape)
+    return Map(density, length, scores[:, :-1], scores[:, -1])
+
+
 def best_design(
     candidate: Candidate, duty: Duty, dopings: tuple[float, float], sizes: tuple[float, float], shape: str
 ) -> tuple[float, float, float]:
     """(doping, size, score) of the best leg: a dense map, then grids that shrink around the best point."""
-    density, length = np.geomspace(*dopings, _MAP_DOPINGS), np.geomspace(*sizes, _MAP_SIZES)
-    for _ in range(_ZOOMS + 1):
-        scores = score(candidate, duty, density[:, None], length, shape)
+    return best_on(design_map(candidate, duty, dopings, sizes, shape), candidate, duty, shape)
+
+
+def best_on(found: Map, candidate: Candidate, duty: Duty, shape: str) -> tuple[float, float, float]:
+    """(doping, size, score) of the best leg, by grids that shrink around the best point of a map."""
+    density, length, scores = found.doping, found.size, found.scores
+    for rounds_left in range(_ZOOMS, -1, -1):
         i, j = np.unravel_index(int(np.argmax(scores)), scores.shape)
         best = float(density[i]), float(length[j]), float(scores[i, j])
-        density, length = around(density, int(i)), around(length, int(j))
+        if rounds_left:
+            density, length = around(density, int(i)), around(length, int(j))
+            scores = score(candidate, duty, density[:, None], length, shape)
     return best
 
 
-def best_bulk_score(candidate: Candidate, duty: Duty, dopings: tuple[float, float], shape: str) -> float:
-    """Score of coarse-grained material (size = ∞) at its own best doping."""
-    density = np.geomspace(*dopings, _MAP_DOPINGS)
-    for _ in range(_ZOOMS):
-        i = int(np.argmax(score(candidate, duty, density, np.inf, shape)))
-        doping, density = float(density[i]), around(density, i)
+def best_coarse_score(found: Map, candidate: Candidate, duty: Duty, shape: str) -> float:
+    """Score of coarse-grained material (size = ∞) at its own best doping, from a map on."""
+    density, scores = found.doping, found.coarse
+    for _ in range(_COARSE_ZOOMS):
+        density = around(density, int(np.argmax(scores)))
+        scores = score(candidate, duty, density, np.inf, shape)
+    doping = float(density[int(np.argmax(scores))])
     return float(score(candidate, duty, doping, np.inf, shape, _FINE_NODES, _FINE_ROUNDS))
 
 

@@ -469,11 +469,16 @@ def conductivity_by_size(
     return conductivity_at(heat_spectrum(phonons, mesh, rates, temperature, shape), size, shape)
 
 
+@cache
+def _gauss(count: int) -> tuple[Array, Array]:
+    return np.polynomial.legendre.leggauss(count)
+
+
 def _glass_integral(phonons: Phonons, temperature: Array, from_share: float) -> Array:
     """Cahill's integral, W/(m K), over wave numbers from `from_share` of the full Debye sphere to its edge."""
     atoms_per_volume = 1 / phonons.volume_per_atom
     edge = phonons.speed * HBAR / K_B * (6 * np.pi**2 * atoms_per_volume) ** (1 / 3)
-    nodes, weights = np.polynomial.legendre.leggauss(24)
+    nodes, weights = _gauss(24)
     share = from_share + (1 - from_share) * 0.5 * (nodes + 1)
     x = edge[:, None] * share / temperature[..., None, None]
     half = 0.5 * x
