@@ -259,3 +259,28 @@ def test_why_without_a_point_is_refused(words, said, legwright):
     answer = legwright("why", "si-n", *words, "--json")
     assert (answer.code, answer.out, answer.err.count("\n")) == (2, "", 1)
     assert said in answer.err
+
+
+AUDIT = {
+    *("material", "quantity", "size_nm", "temperature_K", "measured", "predicted", "low", "high"),
+    *("inside", "fitted", "source"),
+}
+
+
+def test_audit_has_every_agreed_key_and_its_totals_count_its_samples(legwright, tmp_path):
+    said = legwright("audit", "--json", "--csv", tmp_path / "audit.csv")
+    assert said.code == 0
+    samples, totals = said.json["samples"], said.json["totals"]
+    assert all(row.keys() >= AUDIT for row in samples)
+    assert all(row["inside"] == (row["low"] <= row["measured"] <= row["high"]) for row in samples)
+    whole = [t["values"] for t in totals if (t["material"], t["half"], t["quantity"]) == ("all", "both", "any")]
+    assert sum(whole) == len(samples)
+    assert len((tmp_path / "audit.csv").read_text(encoding="utf-8").splitlines()) == len(samples) + 1
+
+
+def test_the_audit_lists_each_miss_by_name(legwright):
+    samples = legwright("audit", "--json").json["samples"]
+    shown = legwright("audit", "--markdown").out
+    missed = {row["sample"] for row in samples if not row["inside"] and not row["fitted"]}
+    assert missed
+    assert all(f" {name} |" in shown for name in missed)

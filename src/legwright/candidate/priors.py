@@ -1,4 +1,4 @@
-"""What is assumed of grain boundaries for every candidate alike."""
+"""What is assumed for every candidate alike: of grain boundaries, of laboratories, of what the model misses."""
 
 from __future__ import annotations
 
@@ -26,7 +26,7 @@ class Reflection(Table):
 
 
 class ByQuantity(Table):
-    """One relative spread for each quantity that is judged; both thermal conductivities share theirs."""
+    """One standard deviation of the logarithm for each quantity; both thermal conductivities share theirs."""
 
     seebeck: Pure
     electrical_conductivity: Pure
@@ -34,8 +34,15 @@ class ByQuantity(Table):
     zt: Pure
 
 
+class Laboratory(ByQuantity):
+    """Between laboratories that measure one sample; and of a density that is published, or that is not stated."""
+
+    hall_density: Pure
+    unstated_doping: Pure
+
+
 class Discrepancy(ByQuantity):
-    """As above; heat in bodies of a stated size, which may be strained, porous or oxidised, has its own."""
+    """Of the model; heat in bodies of a stated size, which may be strained, porous or oxidised, has its own."""
 
     thermal_conductivity_sized: Pure
 
@@ -46,7 +53,7 @@ class Priors(Table):
     schema_: Literal[1] = Field(alias="schema")
     grain_law: GrainLaw
     reflection: Reflection
-    laboratory: ByQuantity
+    laboratory: Laboratory
     discrepancy: Discrepancy
 
 

@@ -387,22 +387,18 @@ def _audit(as_json: bool, csv_file: Path | None, markdown: bool) -> None:
     from legwright.decide.audit import audit, totals
     from legwright.show import records, tables
 
-    judged = audit()
-    rows = [records.judgement_record(one) for one in judged]
-    sums = [records.total_record(one) for one in totals(judged)]
-    content: Record = {"samples": rows, "totals": sums}
+    found = audit()
+    rows = [records.verdict_record(one) for one in found.verdicts]
+    sums = [records.total_record(one) for one in totals(found.verdicts)]
+    content: Record = {"samples": rows, "totals": sums, "without_candidate": found.without_candidate}
 
     def table() -> None:
         out = tables.console(markdown)
         out.print(tables.totals_table(sums, markdown))
         out.print(tables.misses_table(rows, markdown))
-        fitted = sum(row["fitted"] for row in rows)
-        outside = sum(row["role"] == "outside data" for row in rows)
-        out.print(
-            f"Left out of the totals: {fitted} values that fixed a parameter, {outside} beyond a candidate's data. "
-            "Counted: values that nobody saw while choosing parameters, and those seen that fixed nothing.",
-            markup=False,
-        )
+        out.print(tables.AUDIT_WORDS, markup=False)
+        waiting = ", ".join(f"{name} ({count})" for name, count in found.without_candidate.items())
+        out.print(f"Published values without a candidate: {waiting or 'none'}.", markup=False)
 
     _publish("audit", content, rows, as_json, csv_file, table)
 

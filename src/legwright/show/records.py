@@ -17,7 +17,7 @@ from legwright.candidate.library import Candidate
 from legwright.candidate.model import numbers
 from legwright.candidate.sources import bibliography
 from legwright.candidate.supply import cost_per_kg, hazardous_elements, mass_density, supply_concentration
-from legwright.decide.audit import Judgement, Total
+from legwright.decide.audit import Total, Verdict
 from legwright.decide.brief import Brief
 from legwright.decide.fit import Fit, Parameter
 from legwright.decide.installed import Delivered
@@ -166,10 +166,10 @@ def family_record(family: Family) -> Record:
     }
 
 
-def judgement_record(one: Judgement) -> Record:
-    """One published value of `audit`; trade units, as the quantity's name in `unit` says."""
+def verdict_record(one: Verdict) -> Record:
+    """One published value of `audit`, in the unit that it names."""
     unit, factor = _AUDIT_UNITS[one.quantity]
-    low, high = one.interval
+    low, high = one.ends
     return {
         "material": one.material,
         "sample": one.sample,
@@ -184,10 +184,12 @@ def judgement_record(one: Judgement) -> Record:
         "high": high / factor,
         "inside": one.inside,
         "fitted": one.fitted,
-        "role": one.role or "blind",
-        "density_from": one.density_from,
+        "kind": one.kind,
+        "half": one.half,
+        "doping_per_cm3": one.doping.density / PER_CM3,
+        "doping_from": one.doping.how,
         "source": one.source,
-        "note": one.note,
+        "likely_cause": one.likely_cause,
     }
 
 
@@ -195,9 +197,9 @@ _AUDIT_UNITS = {
     "lattice_conductivity": ("W/m/K", 1.0),
     "thermal_conductivity": ("W/m/K", 1.0),
     "seebeck": ("uV/K", MICRO),
-    "electrical_conductivity": ("S/cm", 100.0),
+    "electrical_conductivity": ("S/m", 1.0),
     "mobility": ("cm^2/V/s", CM2),
-    "power_factor": ("mW/m/K^2", 1e-3),
+    "power_factor": ("W/m/K^2", 1.0),
     "zt": ("1", 1.0),
 }
 
@@ -291,18 +293,20 @@ def fit_record(found: Fit, into: Path | None) -> Record:
 
 
 def total_record(one: Total) -> Record:
-    """One line of the audit's totals."""
+    """One line of the audit's totals; 95 % binomial intervals."""
     return {
         "material": one.material,
+        "kind": one.kind,
+        "half": one.half,
         "quantity": one.quantity,
         "values": one.values,
         "papers": one.papers,
-        "median_deviation": one.median,
-        "inside": one.inside,
-        "coverage": one.inside / one.values,
-        "coverage_low": one.coverage[0],
-        "coverage_high": one.coverage[1],
-        "median_half_width": one.half_width,
+        "median_error": one.median_error,
+        "median_half_width": one.median_half_width,
+        "coverage": one.cover,
+        "coverage_95": list(one.cover_interval),
+        "coverage_by_paper": one.paper_cover,
+        "coverage_by_paper_95": list(one.paper_interval),
     }
 
 
