@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from functools import cache, cached_property
 from hashlib import sha256
 from pathlib import Path
@@ -20,8 +20,8 @@ from legwright.base.units import PER_CM3
 from legwright.candidate.family import family_names, family_of
 from legwright.candidate.library import Candidate, library_names, load_candidate
 from legwright.candidate.measurements import Measurements, read_measurements
-from legwright.candidate.model import Anchor
 from legwright.candidate.priors import load_priors
+from legwright.decide.draws import anchor_spreads, anchors_behind, with_each_law
 from legwright.physics.crystal import Crystal, crystal
 from legwright.physics.properties import DENSEST, Properties, evaluate_crystal
 
@@ -339,17 +339,6 @@ def _densities(sample: Sample, one: Crystal, quantity: str, row: int, targets: A
 
 
 @cache
-def _law_draws() -> tuple[Array, Array, Array]:
-    """Exponents, prefactors and standard normal of reflection: one set for all candidates."""
-    law = load_priors().grain_law
-    u = qmc.Sobol(3, rng=np.random.default_rng(_SEED)).random(_LAWS)
-    half_range = 3**0.5 * law.exponent.spread
-    exponent = np.clip(law.exponent.si + half_range * (2 * u[:, 0] - 1), 0, 1)
-    prefactor = law.prefactor.si * np.exp(law.prefactor.relative_spread * ndtri(u[:, 1]))
-    return exponent, prefactor, ndtri(u[:, 2])
-
-
-@cache
 def _own_draws() -> Array:
     """Standard normals of mobility, thermopower, lattice conductivity and doping: (4, laws, draws of each)."""
     u = qmc.Sobol(4, rng=np.random.default_rng(_SEED + 1)).random(_LAWS * _OWN)
@@ -363,11 +352,11 @@ def _drawn_spread(sample: Sample, one: Crystal, doping: Doping) -> dict[str, Arr
     grains.
     """
     mobility, thermopower, lattice = (
-        np.exp(spread * z) for spread, z in zip(_anchor_spreads(sample.candidate), _own_draws()[:3], strict=True)
+        np.exp(spread * z) for spread, z in zip(anchor_spreads(sample.candidate), _own_draws()[:3], strict=True)
     )
     normal = _own_draws()[3]
     acting = sample.shape == "grain" and math.isfinite(sample.size)
-    laws = _with_each_law(sample.candidate, one) if acting else [one]
+    laws = with_each_law(sample.candidate, one, _LAWS, _SEED) if acting else [one]
     logs: dict[str, list[Array]] = {quantity: [] for quantity in QUANTITIES}
     for k, crystal_k in enumerate(laws):
         mine = (k,) if acting else (slice(None),)
@@ -385,20 +374,6 @@ def _robust_deviation(logs: Array) -> Array:
     return np.asarray(0.5 * (high - low))
 
 
-def _with_each_law(candidate: Candidate, one: Crystal) -> list[Crystal]:
-    own = candidate.data.scattering.grain_reflection
-    prior = own or load_priors().reflection.electrons
-    reflection = np.clip(prior.si * (1 + prior.relative_spread * _law_draws()[2]), 0, 0.95)
-    return [
-        replace(
-            one,
-            electrons=replace(one.electrons, reflection=float(r)),
-            phonons=replace(one.phonons, grain_exponent=float(s), grain_prefactor=float(c)),
-        )
-        for s, c, r in zip(*_law_draws()[:2], reflection, strict=True)
-    ]
-
-
 def _drawn_densities(
     sample: Sample, one: Crystal, doping: Doping, normal: Array, mobility: Array, thermopower: Array
 ) -> Array:
@@ -413,23 +388,6 @@ def _drawn_densities(
     known = sample.hall_density is not None
     spread = laboratory.hall_density.si if known else laboratory.unstated_doping.si
     return np.asarray(doping.density * np.exp(spread * normal))
-
-
-def _anchors(candidate: Candidate) -> list[tuple[Anchor, float]]:
-    """The anchors that stand behind a candidate, its own or its relatives', with their weights."""
-    if not candidate.relatives:
-        return [(anchor, 1.0) for anchor in candidate.data.anchor]
-    return [(a, w * v) for relative, w in candidate.relatives if w for a, v in _anchors(relative)]
-
-
-def _anchor_spreads(candidate: Candidate) -> tuple[float, float, float]:
-    """Relative spread of the mobility, Seebeck and lattice anchors: the median of those that fix something."""
-    found = []
-    for quantity in ("mobility", "seebeck", "lattice_conductivity"):
-        of_it = [a for a, _ in _anchors(candidate) if a.quantity == quantity]
-        fixing = [a for a in of_it if a.fixes != "nothing"] or of_it
-        found.append(float(np.median([a.measured.relative_spread for a in fixing])))
-    return found[0], found[1], found[2]
 
 
 def _laboratory(quantity: str) -> float:
@@ -504,7 +462,7 @@ def _is_fitted(sample: Sample, quantity: str, row: int) -> bool:
     if math.isfinite(sample.size):
         return False
     source, t = sample.sources[row], float(sample.temperature[row])
-    anchors = [anchor for anchor, _ in _anchors(sample.candidate)]
+    anchors = [anchor for anchor, _ in anchors_behind(sample.candidate)]
     if any(a.measured.source == source and a.fixes != "nothing" for a in anchors):
         return True
     if any(

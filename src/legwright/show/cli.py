@@ -71,16 +71,30 @@ def _cli() -> None:
 @_cli.command("rank")
 @click.argument("brief", type=click.Path(path_type=Path))
 @click.option("--workers", type=click.IntRange(1, 64), default=1, show_default=True, help="Processes.")
+@click.option(
+    "--draws", type=click.IntRange(0, 65536), default=0, show_default=True, help="For confidence; 0: none."
+)
+@click.option("--seed", type=click.IntRange(0), default=0, show_default=True, help="Of the draws.")
 @_output
-def _rank(brief: Path, workers: int, as_json: bool, csv_file: Path | None, markdown: bool) -> None:
+def _rank(
+    brief: Path,
+    workers: int,
+    draws: int,
+    seed: int,
+    as_json: bool,
+    csv_file: Path | None,
+    markdown: bool,
+) -> None:
     """Rank the candidates of BRIEF, each at its best size and doping."""
     from legwright.decide.brief import load_brief
+    from legwright.decide.draws import confidences
     from legwright.decide.rank import rank
     from legwright.show import records, tables
 
     job = load_brief(brief)
     found = rank(job, brief, workers)
-    rows = [records.rank_record(row) for row in found]
+    sure = confidences(job, found, draws, seed) if draws else None
+    rows = [records.rank_record(row, sure) for row in found]
     under = records.notes((f for row in found for f in row.flags), (row.candidate for row in found if row.score))
     content = {"title": job.title, "rows": rows, **under}
 

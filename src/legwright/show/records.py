@@ -19,6 +19,7 @@ from legwright.candidate.sources import bibliography
 from legwright.candidate.supply import cost_per_kg, hazardous_elements, mass_density, supply_concentration
 from legwright.decide.audit import Total, Verdict
 from legwright.decide.brief import Brief
+from legwright.decide.draws import Confidence
 from legwright.decide.fit import Fit, Parameter
 from legwright.decide.installed import Delivered
 from legwright.decide.peak import Peak
@@ -37,9 +38,9 @@ def nanometres(size: float | None) -> float | None:
     return None if size is None or math.isinf(size) else size / NM
 
 
-def rank_record(row: Row) -> Record:
-    """One row of `rank`."""
-    return {
+def rank_record(row: Row, sure: dict[str, Confidence] | None = None) -> Record:
+    """One row of `rank`; with draws also its score's interval and how often it wins."""
+    content: Record = {
         "rank": row.rank,
         "candidate": row.candidate.name,
         "formula": row.candidate.data.formula,
@@ -55,6 +56,10 @@ def rank_record(row: Row) -> Record:
         "gain_over_bulk": row.gain_over_bulk,
         "flags": list(row.flags),
     }
+    if sure is not None:
+        known = sure.get(row.candidate.name, Confidence(0.0, 0.0, 0.0))
+        content |= {"score_low": known.low, "score_high": known.high, "win_share": known.win_share}
+    return content
 
 
 def peak_record(found: Peak) -> Record:

@@ -67,8 +67,9 @@ SCORE_TITLES = {
 
 
 def rank_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
-    """The ranking; flags are numbered and explained under the table."""
+    """The ranking; flags are numbered and explained under the table. With draws, how sure each score is."""
     numbers = flag_numbers(rows)
+    drawn = "win_share" in rows[0]
     columns = (
         "candidate",
         "formula",
@@ -77,6 +78,7 @@ def rank_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
         "window [nm]",
         "doping [cm⁻³]",
         SCORE_TITLES[rows[0]["score_name"]],
+        *(("5 to 95 %", "wins") if drawn else ()),
         "zT mean",
         "zT peak",
         "gain over coarse",
@@ -91,6 +93,7 @@ def rank_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
             _span(row["window_nm"]),
             figure(row["doping_per_cm3"]),
             figure(row["score"]),
+            *(_sureness(row) if drawn else ()),
             figure(row["zt_mean"]),
             figure(row["zt_peak"]),
             "–" if row["gain_over_bulk"] is None else f"×{row['gain_over_bulk']:.2f}",
@@ -99,6 +102,12 @@ def rank_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
         for row in rows
     )
     return draw(title, columns, cells, markdown)
+
+
+def _sureness(row: Record) -> tuple[str, str]:
+    if not row["score"]:
+        return "–", "–"
+    return f"{figure(row['score_low'], 2)} … {figure(row['score_high'], 2)}", f"{100 * row['win_share']:.0f} %"
 
 
 def flag_numbers(rows: Iterable[Record]) -> dict[str, int]:
