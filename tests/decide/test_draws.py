@@ -58,7 +58,7 @@ def test_a_candidate_s_interval_does_not_hang_on_who_else_is_asked(ranked):
 
 
 def test_without_doubt_every_draw_is_the_nominal_score(ranked, monkeypatch):
-    """Nothing spread but the grid: each draw is then the best of the grid around the row's design, its own score."""
+    """Nothing spread but the grid: each draw is then the best of the grid around the design, its own score."""
     brief, rows = ranked
     one = np.ones((1, OWN))
     monkeypatch.setattr(draws, "_own_factors", lambda candidate, laws, seed: (one, one, one))
