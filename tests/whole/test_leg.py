@@ -13,7 +13,10 @@ def test_a_generating_leg_loses_to_contacts_and_exchangers(brief, legwright):
     real = legwright("leg", "sige-n", brief(REAL, name="real.toml"), "--json").json
     row = legwright("rank", brief(name="ideal.toml"), "--json").json["rows"][0]
     assert ideal["efficiency"] == pytest.approx(row["score"], rel=1e-4)  # rank's own search of the current
+    assert "ideal-contacts" not in row["flags"]
     assert ideal["efficiency"] == ideal["efficiency_ideal_contacts"]
+    row = legwright("rank", brief(REAL, name="real.toml"), "--json").json["rows"][0]
+    assert "ideal-contacts" in row["flags"]
     assert real["efficiency"] < 0.95 * ideal["efficiency"]
     assert real["hot_end_K"] < 700
     assert real["cold_end_K"] == 400
