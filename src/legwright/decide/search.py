@@ -33,6 +33,8 @@ from legwright.leg.duty import SCORE_NAMES
 Array = NDArray[np.float64]
 
 _FIRST_POINTS = 12
+#: a gain over the best so far that is worth asking for, as a share of the first score
+_LEAST_GAIN = 1e-3
 _POLISH_TRIALS = 200
 #: compositions of the dense map that certifies a family
 _COMPOSITIONS = 13
@@ -129,16 +131,18 @@ def search(
         warnings.simplefilter("ignore")  # the process tells of repeated points and of its own hyperparameters
         optimizer = Optimizer(
             [Real(0.0, 1.0)] * len(space.names),
-            acq_func="EI", acq_optimizer="sampling", n_initial_points=_FIRST_POINTS,
+            acq_func="EI", acq_func_kwargs={"xi": _LEAST_GAIN}, acq_optimizer="lbfgs", n_initial_points=_FIRST_POINTS,
             initial_point_generator="sobol", random_state=seed,
         )  # fmt: skip
+        reference = 0.0  # the first score that is not zero: the process works on numbers near 1
         try:
             for place in range(evaluations):
                 asked = [float(x) for x in optimizer.ask()]
                 kept = answers[place] if place < len(answers) else None
                 answer = kept if kept is not None else space.worth(np.array(asked))
                 told.append((asked, answer))
-                optimizer.tell(asked, -answer)
+                reference = reference or answer
+                optimizer.tell(asked, -answer / (reference or 1.0))
                 if resume and kept is None:
                     _write(resume, key, [value for _, value in told])
         except KeyboardInterrupt:
