@@ -131,7 +131,8 @@ def search(
         warnings.simplefilter("ignore")  # the process tells of repeated points and of its own hyperparameters
         optimizer = Optimizer(
             [Real(0.0, 1.0)] * len(space.names),
-            acq_func="EI", acq_func_kwargs={"xi": _LEAST_GAIN}, acq_optimizer="lbfgs", n_initial_points=_FIRST_POINTS,
+            acq_func="EI", acq_func_kwargs={"xi": _LEAST_GAIN}, acq_optimizer="lbfgs",
+            n_initial_points=_FIRST_POINTS,
             initial_point_generator="sobol", random_state=seed,
         )  # fmt: skip
         reference = 0.0  # the first score that is not zero: the process works on numbers near 1
