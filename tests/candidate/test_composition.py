@@ -37,6 +37,11 @@ def test_unknown_element_offers_the_nearest():
         atomic_mass("Sii")
 
 
+def test_an_unknown_element_has_no_isotopes_to_vary():
+    with pytest.raises(ValueError, match="unknown element"):
+        isotope_variance("Sii")
+
+
 def test_pure_element_has_isotopes_only():
     made = disorder((Site(count=1, occupants={"Si": 1.0}),))
     assert made.mean_mass == atomic_mass("Si")

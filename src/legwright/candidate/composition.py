@@ -12,7 +12,9 @@ from legwright.candidate.model import Doping, Site
 
 @cache
 def atomic_mass(symbol: str) -> float:
-    """Mean mass of the natural element, kg.
+    """Mean mass M = Σ c_i m_i of the natural element's isotopes, kg; symbol 'Si', 'Ge', …
+
+    InputError for a symbol that no element has. By definition of the atomic weight; figures as pymatgen ships them.
 
     >>> round(atomic_mass("Si") / ATOMIC_MASS, 3)
     28.085
@@ -27,8 +29,9 @@ def atomic_mass(symbol: str) -> float:
 
 @cache
 def isotope_variance(symbol: str) -> float:
-    """Σ c_i (1 − m_i/m̄)² of the natural isotopes, dimensionless.
+    """Σ c_i (1 − m_i/m̄)² of the natural isotopes, dimensionless; 0 where they are not known; symbol 'Si', ….
 
+    ValueError for a symbol that no element has.
     Source: Tamura, Physical Review B 27, 858 (1983); abundances from the periodictable package.
 
     >>> f"{isotope_variance('Si'):.2e}"
@@ -47,7 +50,11 @@ def isotope_variance(symbol: str) -> float:
 
 @dataclass(frozen=True)
 class Disorder:
-    """What the composition does to phonons, per atom: mean mass, Γ by mass, and Γ by size for unit strain."""
+    """What the composition does to phonons, per atom, one number each.
+
+    mean_mass M̄ (kg); mass_variance: Γ by mass; size_variance: Γ by size for a strain parameter of 1
+    (dimensionless).
+    """
 
     mean_mass: float
     mass_variance: float
@@ -55,11 +62,17 @@ class Disorder:
 
 
 def disorder(sites: tuple[Site, ...]) -> Disorder:
-    """Mean atomic mass (kg) and scattering parameters of a formula with random sublattices.
+    """Mean atomic mass (kg) and scattering parameters (dimensionless) of a formula with random sublattices.
 
     Γ_mass = Σ_s c_s Σ_i f_i [(M_i − M_s)² + M_i² g_i]/M̄²,  Γ_size = Σ_s c_s (M_s/M̄)² Σ_i f_i (1 − r_i/r_s)².
+    sites: sublattices s with the share c_s of all atoms, occupants i of fractions f_i, masses M_i, isotopes g_i and
+    sizes r_i (none: no strain). InputError for an occupant that is no element.
     Sources: Klemens, Proc. Physical Society A 68, 1113 (1955); Abeles, Physical Review 131, 1906 (1963);
     Yang, Meisner & Chen, Applied Physics Letters 85, 1140 (2004) for several sublattices.
+
+    >>> made = disorder((Site(count=1, occupants={"Si": 0.8, "Ge": 0.2}),))
+    >>> round(made.mass_variance, 2)  # 0.16 × (44.54/37.00)² and a little by isotopes
+    0.23
     """
     atoms = sum(site.count for site in sites)
     means = [sum(f * atomic_mass(e) for e, f in site.occupants.items()) for site in sites]
@@ -79,7 +92,17 @@ def disorder(sites: tuple[Site, ...]) -> Disorder:
 
 
 def dopant_disorder(doping: Doping, mean_mass: float) -> Disorder:
-    """Γ per dopant atom per host atom: multiply by (dopants per atom). Source: Klemens 1955."""
+    """Γ per dopant atom per host atom, dimensionless: multiply by (dopants per atom).
+
+    Γ_mass = (M_d − M_h)²/M̄², Γ_size = (1 − r_d/r_h)² (M_h/M̄)² for a strain parameter of 1, 0 without both sizes.
+    doping: the dopant d and the host h that it replaces; mean_mass M̄ of the crystal (kg), one of each. InputError
+    for a dopant that is no element. Source: Klemens, Proc. Physical Society A 68, 1113 (1955).
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> made = dopant_disorder(load_candidate("si-n").data.doping, atomic_mass("Si"))
+    >>> round(made.mass_variance, 4)  # phosphorus for silicon: (2.889/28.085)²
+    0.0106
+    """
     host = atomic_mass(doping.replaces)
     by_mass = (atomic_mass(doping.dopant) - host) ** 2 / mean_mass**2
     by_size = 0.0

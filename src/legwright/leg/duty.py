@@ -44,7 +44,11 @@ _COLDEST = 0.5
 
 @dataclass(frozen=True)
 class Duty:
-    """What the leg is for: temperatures in K, what counts, and the leg length (m) for areal figures."""
+    """What the leg is for, one number each.
+
+    kind: generator or cooler; hot and cold, the temperatures of its ends (K); maximise: the goal that counts, one
+    of `GOALS` of the kind; length of the leg (m), for areal figures.
+    """
 
     kind: Kind
     hot: float
@@ -65,6 +69,7 @@ class Duty:
 def best_score(material: LegMaterial, duty: Duty, rounds: int = 4) -> Array:
     """The duty's score at the best current, contacts at zero; 0 where the leg cannot serve.
 
+    Efficiency 1 − Φ_c/Φ_h, COP Φ_c/(Φ_h − Φ_c), power j (Φ_h − Φ_c) or heat lifted j Φ_c with Φ = S T + w, or ΔT.
     Efficiency and COP are fractions, areal figures W/cm² of leg, ΔT in K; the shape is that of the legs. `rounds`
     sets how closely the best current is found: each divides the bracket by three. Raises nothing of its own.
     Sources: Ioffe, Semiconductor Thermoelements and Thermoelectric Cooling (1957); Snyder & Ursell, Physical Review

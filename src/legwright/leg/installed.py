@@ -27,8 +27,10 @@ _GRID, _FEW_STEPS = 41, 12
 
 @dataclass(frozen=True)
 class Setting:
-    """What surrounds a leg, per area of leg: resistivity of each contact (Ω m²), and resistance to heat between
-    reservoir and leg's end (K m²/W), contact and exchanger together.
+    """What surrounds a leg, per area of leg, one number each.
+
+    contact: resistivity of each contact (Ω m²); hot_resistance and cold_resistance to heat between reservoir and
+    leg's end (K m²/W), contact and exchanger together.
     """
 
     contact: float = 0.0
@@ -38,7 +40,11 @@ class Setting:
 
 @dataclass(frozen=True)
 class Running:
-    """One operating point, areal (W/m², A/m²): heat at the reservoirs, power made (generator) or spent (cooler)."""
+    """One operating point, areal, one number each.
+
+    heat_hot and heat_cold at the reservoirs (W/m²); power made (generator) or spent (cooler; W/m²); current (A/m²);
+    hot_end and cold_end: temperatures of the leg's ends (K).
+    """
 
     heat_hot: float
     heat_cold: float
@@ -62,7 +68,9 @@ def run_generator(material: LegMaterial, duty: Duty, setting: Setting, w_hot: fl
     """A generator at |w| = w_hot (W/A) at its hot end.
 
     q_h = j Φ_h − j² ρ_c, q_c = j Φ_c + j² ρ_c, T_end,h = T_h − q_h R_h, T_end,c = T_c + q_c R_c; P = q_h − q_c.
-    Raises ArithmeticError where no end temperatures satisfy both. Source: Rowe & Min (1998).
+    material, duty and setting of one leg, one of each; `steps`: of the march, even.
+    ArithmeticError where no end temperatures satisfy both.
+    Source: Rowe & Min, Journal of Power Sources 73, 193 (1998).
 
     >>> nodes = np.linspace(290.0, 610.0, 9)
     >>> same = np.ones_like(nodes)
@@ -89,7 +97,10 @@ def run_cooler(material: LegMaterial, duty: Duty, setting: Setting, drive: float
     """A cooler at `drive` 0 … 2: up to 1 temperature rises all the way to the hot end, beyond it peaks inside.
 
     q_c = j Φ_c − j² ρ_c, q_h = j Φ_h + j² ρ_c, T_end,h = T_h + q_h R_h, T_end,c = T_c − q_c R_c; P = q_h − q_c.
-    Raises ArithmeticError where no end temperatures (K) satisfy both. Source: Ioffe (1957).
+    Up to 1, |w| at the hot end is (1 − drive) S T_h (W/A); beyond, the peak is (drive − 1) `PEAK_RISE` over T_h.
+    material, duty and setting of one leg, one of each; `steps`: of each march, even.
+    ArithmeticError where no end temperatures (K) satisfy both.
+    Source: Ioffe, Semiconductor Thermoelements and Thermoelectric Cooling (1957).
 
     >>> nodes = np.linspace(200.0, 380.0, 9)
     >>> same = np.ones_like(nodes)
@@ -143,7 +154,8 @@ def _ends(
 def best_running(material: LegMaterial, duty: Duty, setting: Setting) -> Running | None:
     """The operating point that the duty's goal wants, K and W/m² as `Running`; None where the leg cannot serve.
 
-    A grid over the current, then Brent's bounded search around its best. Raises nothing of its own.
+    max over j of P/q_h, P, q_c/P or q_c: a grid over the current, then Brent's bounded search around its best.
+    AssertionError if its energy did not close or it beat Carnot: a fault of the program, never of the input.
     Source: Brent, Algorithms for Minimization without Derivatives (1973).
 
     >>> nodes = np.linspace(290.0, 610.0, 9)
@@ -196,8 +208,9 @@ def best_running(material: LegMaterial, duty: Duty, setting: Setting) -> Running
 def largest_reach(material: LegMaterial, duty: Duty, setting: Setting) -> float:
     """ΔT (K) at which a cooler with these contacts and exchangers lifts nothing any more; 0 where it never lifts.
 
-    The cold reservoir at which the largest heat lifted over all currents is zero. Raises nothing of its own.
-    Source: Ioffe (1957): ½ Z T_c² with ideal contacts and constant properties.
+    The cold reservoir at which the largest heat lifted over all currents is zero: max_j q_c(T_c, j) = 0.
+    With ideal contacts and constant properties ½ Z T_c². Raises nothing of its own.
+    Source: Ioffe, Semiconductor Thermoelements and Thermoelectric Cooling (1957).
 
     >>> nodes = np.linspace(140.0, 400.0, 9)
     >>> same = np.ones_like(nodes)

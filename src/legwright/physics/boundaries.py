@@ -24,7 +24,8 @@ def grain_mean_free_path(
 
     Λ_gb = c d (ω_max/ω)^s: s = 0 is the grey law (Λ = c d), s = 1 grows with the wavelength.
 
-    size: grain diameter d (m, > 0, may be inf); frequency_ratio: ω/ω_max in (0, 1]; the two broadcast.
+    size: grain diameter d (m, > 0, may be inf); frequency_ratio: ω/ω_max in (0, 1]; the two broadcast; exponent s
+    and prefactor c > 0, one each. Raises nothing of its own.
     Source: Wang, Alaniz, Jang, Garay & Dames, Nano Letters 11, 2206 (2011).
 
     >>> float(grain_mean_free_path(100e-9, 0.25, exponent=0.5))
@@ -96,7 +97,7 @@ def wire_suppression(mfp_over_diameter: ArrayLike, specularity: ArrayLike = 0.0)
 
 
 def film_suppression_rough(mfp_over_thickness: ArrayLike, roughness: ArrayLike) -> Array:
-    """In-plane conductivity of a film with rough faces over that of unbounded material, for one wave number q.
+    """In-plane conductivity of a film with rough faces over that of unbounded material, 0 … 1, for one q.
 
     As `film_suppression` with p(θ) = exp(−4 (qη)² cos²θ) inside the integral, θ from the face's normal: waves
     that graze it see a smoother one. Averaging p first is off by a factor of two near qη = 1 in a thin film.
@@ -113,11 +114,11 @@ def film_suppression_rough(mfp_over_thickness: ArrayLike, roughness: ArrayLike) 
 
 
 def wire_suppression_rough(mfp_over_diameter: ArrayLike, roughness: ArrayLike) -> Array:
-    """Conductivity along a round wire with a rough wall over that of unbounded material, for one wave number q.
+    """Conductivity along a round wire with a rough wall over that of unbounded material, 0 … 1, for one q.
 
     As `wire_suppression` with p = exp(−4 (qη)² cos²α) inside the integral, cos α = cos β sin θ the incidence on
-    the wall, the same at each bounce; thin wires fall as Kn^(−2/3). Arguments, limits, errors and sources as
-    `film_suppression_rough`.
+    the wall, the same at each bounce; thin wires fall as Kn^(−2/3). mfp_over_diameter Kn ≥ 0; roughness qη ≥ 0;
+    both broadcast. Limits, errors and sources as `film_suppression_rough`.
 
     >>> [round(float(wire_suppression_rough(1.0, q_eta)), 4) for q_eta in (0.1, 1.0, 1e3)]
     [0.9902, 0.6534, 0.4929]

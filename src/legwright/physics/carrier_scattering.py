@@ -50,7 +50,8 @@ def intervalley_rate(
 
     1/τ = (π D² ħ/(2 ρ E_o)) [n g_v(ε + E_o) + (n + 1) g_v(ε − E_o)],  n = 1/(e^(E_o/k_B T) − 1).
 
-    states_after_* g_v (1/(J m³)) at ε ± E_o of all final valleys that D counts (0 below the edge),
+    states_after_absorption, states_after_emission: g_v (1/(J m³)) at ε + E_o and ε − E_o of all final valleys that
+    D counts (0 below the edge),
     field D (J/m), phonon_energy E_o (J), density ρ (kg/m³), temperature (K); broadcast.
     Source: Conwell, High Field Transport in Semiconductors (Academic Press, 1967).
 

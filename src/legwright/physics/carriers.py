@@ -30,9 +30,16 @@ ROOM = 300.0
 class Electrons:
     """Bands and scatterers in SI; one entry of each array a band.
 
-    side: +1 conduction, −1 valence. `lattice_scale` multiplies acoustic and intervalley rates of the majority
-    bands and `mass_scale` their masses; `impurity_knots` are ln(doping) and ln(heavy-doping factor). Without a
-    `high_frequency_permittivity` there is no polar-optical scattering.
+    carrier: +1 electrons, −1 holes; side: +1 conduction, −1 valence. edge at 0 K (J) moves by edge_alpha (J/K) and
+    edge_beta (K) after Varshni; valleys: how many; dos_mass of all and inertial_mass (kg) at 300 K, growing with
+    mass_exponent, and mass_ratio along over across a valley; nonparabolicity (1/J).
+    Scatterers: deformation_potential (J), intervalley_field (J/m) and intervalley_phonon (J), alloy_potential (J)
+    at alloy_fraction of sites of alloy_volume (m³), elastic_constant (Pa), mass density (kg/m³), permittivity and
+    high_frequency_permittivity (F/m; None: no polar-optical scattering), optical_phonon (J; 0: equipartition),
+    reflection of grain boundaries (0 … 1) and barrier at them (J).
+    lattice_scale multiplies acoustic and intervalley rates of the majority's bands and mass_scale their masses;
+    impurity_knots are ln(doping) and ln(heavy-doping factor). Weights that double a process or switch it off:
+    acoustic_weight, intervalley_weight, alloy_weight, impurity_weight, polar_weight.
     """
 
     carrier: int
@@ -83,7 +90,11 @@ class Electrons:
 
 @dataclass(frozen=True)
 class Filling:
-    """State of the carriers at one (T, doping); last axis of the band arrays: bands."""
+    """State of the carriers at each (T, doping); last axis of the band arrays: bands.
+
+    chemical_potential µ (J, no axis of bands); per band eta = ±(µ − edge)/k_B T (positive inside the band), density
+    (1/m³) and compressibility ∂density/∂|µ| (1/(J m³)).
+    """
 
     chemical_potential: Array
     eta: Array
@@ -93,7 +104,10 @@ class Filling:
 
 @dataclass(frozen=True)
 class Integrals:
-    """L_k per band: ∫ Ξ(E) (E − µ)^k (−∂f/∂E) dE for k = 0, 1, 2; SI."""
+    """L_k = ∫ Ξ(E) (E − µ)^k (−∂f/∂E) dE per band, or summed.
+
+    l0 (1/(J m s)), l1 (1/(m s)) and l2 (J/(m s)), Ξ = g v_x² τ; where bands are apart they are the last axis.
+    """
 
     l0: Array
     l1: Array
@@ -228,8 +242,11 @@ def _energy_mesh(electrons: Electrons, eta: Array, kt: Array) -> tuple[Array, Ar
 
 @dataclass(frozen=True)
 class Flow:
-    """Bulk transport on the mesh at each (T, doping): weighted g v_x² τ, free path, E − µ, energy from the edge,
-    and the rate of each process, which add up to v/Λ."""
+    """Bulk transport on the mesh at each (T, doping), SI; last axes: bands, energies.
+
+    spectral: g v_x² τ (−∂f/∂E) dE, which sums to L_0 (1/(J m s)); mean_free_path Λ (m); excess E − µ (J); energy
+    from the edge (J); rates of each process by name (1/s), which add up to v/Λ.
+    """
 
     spectral: Array
     mean_free_path: Array
@@ -327,7 +344,7 @@ def transport_integrals(flow: Flow, size: Array, shape: str, reflection: float) 
 
     F is what grains, a wire's wall or a film's faces leave of each energy (`held_back`); size d (m, may be inf)
     broadcasts with the states of `flow`. Energy by energy, a last axis of energies for each size: for few points,
-    and the measure of `integrals_at`. Raises nothing of its own.
+    and the measure of `integrals_at`. shape, reflection and ValueError as `held_back`.
     Sources: Ravich, Efimova & Smirnov, Semiconducting Lead Chalcogenides (1970); boundaries as `held_back`.
 
     >>> from legwright.candidate.library import load_candidate
@@ -410,8 +427,8 @@ def integrals_at(spectrum: Array, size: Array, shape: str, reflection: float) ->
     """L_0, L_1, L_2 of the conduction and of the valence bands at each size: Σ_j W_j F(Λ_j/d), SI.
 
     `spectrum` as `path_spectrum`; size d (m, may be inf) broadcasts with its states; shape 'grain', 'wire', 'film';
-    reflection R of grain boundaries, 0 … 1. The sums of `transport_integrals` to 1e-9. Raises nothing of its own.
-    Sources as `held_back`.
+    reflection R of grain boundaries, 0 … 1. The sums of `transport_integrals` to 1e-9. Sources and ValueError as
+    `held_back`.
 
     >>> from legwright.candidate.library import load_candidate
     >>> from legwright.physics.crystal import crystal
@@ -431,7 +448,7 @@ def past_barriers(electrons: Electrons, temperature: Array, filling: Filling, l0
     """Share of the majority's L_0 that barriers between the grains leave, dimensionless: 1/(1 + ρ_b/ρ).
 
     The barrier (`Electrons.barrier`, J, over the majority's edge) stands in series with the grain, by the law of
-    `barrier_suppression`. `l0` broadcasts with size d (m); temperature (K). Raises nothing of its own.
+    `barrier_suppression`. `l0` broadcasts with size d (m); temperature (K). ValueError as `barrier_conductance`.
     Source: Seto, Journal of Applied Physics 46, 5247 (1975).
 
     >>> from legwright.candidate.library import load_candidate
@@ -466,7 +483,7 @@ def hall_integrals(electrons: Electrons, temperature: Array, flow: Flow, size: A
     temperature (K) with the states of `flow`; size (m, may be inf) broadcasts; last axis bands.
     Energy by energy, as `transport_integrals`. In wires and films this takes the boundary's mean effect on τ
     at an energy for its effect on each carrier: exact for grains and for many carriers in wide bodies; the
-    Hall coefficient of a film far thinner than Λ is larger. Raises nothing of its own.
+    Hall coefficient of a film far thinner than Λ is larger. ValueError as `held_back` and as `hall_anisotropy`.
     Source: Sondheimer, Physical Review 80, 401 (1950); Ravich, Efimova & Smirnov (1970) for Kane bands.
 
     >>> from legwright.candidate.library import load_candidate
@@ -485,15 +502,17 @@ def hall_integrals(electrons: Electrons, temperature: Array, flow: Flow, size: A
 def hall_spectrum(electrons: Electrons, temperature: Array, flow: Flow) -> Array:
     """K of `hall_integrals` of the conduction and then of the valence bands by mean free path: (..., 2, paths).
 
-    Raises nothing of its own; units and sources as `hall_integrals`.
+    temperature (K) with the states of `flow`; units and sources as `hall_integrals`; ValueError as
+    `hall_anisotropy`.
 
     >>> from legwright.candidate.library import load_candidate
     >>> from legwright.physics.crystal import crystal
     >>> electrons = crystal(load_candidate("si-n")).electrons
     >>> t, n = np.array(300.0), np.array(1e25)
     >>> flow = bulk_flow(electrons, t, n, fill(electrons, t, n))
-    >>> hall_spectrum(electrons, t, flow).shape[-2]
-    2
+    >>> bulk = hall_integrals(electrons, t, flow, np.array(np.inf), "grain")[electrons.side > 0]
+    >>> bool(abs(hall_spectrum(electrons, t, flow)[..., 0, :].sum() / bulk.sum() - 1) < 1e-10)
+    True
     """
     return _by_path(electrons, flow, _deflected(electrons, temperature, flow))
 
@@ -501,8 +520,8 @@ def hall_spectrum(electrons: Electrons, temperature: Array, flow: Flow) -> Array
 def hall_at(spectrum: Array, size: Array, shape: str, reflection: float) -> tuple[Array, Array]:
     """K of the conduction and of the valence bands at each size (m), from a Hall spectrum; 1/(J kg m).
 
-    Grains, walls and faces shorten τ, which enters squared: F² for each mean free path. Raises nothing of its own;
-    sources as `hall_integrals`.
+    Grains, walls and faces shorten τ, which enters squared: Σ_j K_j F²(Λ_j/d). `size` broadcasts with the states;
+    shape, reflection and ValueError as `held_back`; sources as `hall_integrals`.
 
     >>> from legwright.candidate.library import load_candidate
     >>> from legwright.physics.crystal import crystal
@@ -518,15 +537,15 @@ def hall_at(spectrum: Array, size: Array, shape: str, reflection: float) -> tupl
 
 
 def held_back(mean_free_path: Array, size: Array, shape: str, reflection: float) -> Array:
-    """Conductivity over that of unbounded material for each mean free path (m): grains, a wire or a film, 0 … 1.
+    """Conductivity over that of unbounded material for each mean_free_path (m): grains, a wire or a film, 0 … 1.
 
-    F of `grain_suppression` with reflection R, or of a diffuse wire or film; `size` (m, may be inf) carries a last
-    axis for the paths' own. Raises nothing of its own.
+    F(Λ/d) of `grain_suppression` with reflection R, or of a wire or film with diffuse walls, by `shape`; `size` (m,
+    may be inf) carries a last axis for the paths' own. ValueError for a path over size below 0 in a wire or film.
     Sources: Mayadas & Shatzkes, Physical Review B 1, 1382 (1970); Dingle, Proceedings of the Royal Society A 201,
     545 (1950); Fuchs, Proceedings of the Cambridge Philosophical Society 34, 100 (1938).
 
-    >>> float(held_back(np.array([1e-8]), np.array(np.inf), "grain", 0.3)[0])
-    1.0
+    >>> [f"{float(held_back(np.array(1e-8), np.array(1e-8), shape, 0.3)):.3f}" for shape in ("wire", "film")]
+    ['0.493', '0.684']
     """
     if shape == "grain":
         return grain_suppression(mean_free_path, size, reflection)

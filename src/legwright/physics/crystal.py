@@ -38,7 +38,11 @@ PUBLISHED_ALLOY_RATIO = 3 * np.pi**2 / 8
 
 @dataclass(frozen=True)
 class Crystal:
-    """Electrons and phonons of one candidate; what its grains' spread and its pores do (1: nothing)."""
+    """One candidate in SI: its electrons and phonons, and what its grains' spread and its pores do.
+
+    size_ratio: the size that acts over the median one; dense_share: the part of a conductivity that pores leave;
+    both dimensionless, 1 where there is nothing of the kind.
+    """
 
     electrons: Electrons
     phonons: Phonons
@@ -60,8 +64,11 @@ def crystal(candidate: Candidate) -> Crystal:
     Source of the practice: Ravich, Efimova & Smirnov (1970); anchors as each candidate's file cites them.
 
     >>> from legwright.candidate.library import load_candidate
-    >>> one = crystal(load_candidate("si-n"))
-    >>> bool(one.electrons.lattice_scale > 0 and one.phonons.anharmonic_scale > 0)
+    >>> silicon = load_candidate("si-n")
+    >>> anchor = next(each for each in silicon.data.anchor if each.quantity == "mobility")
+    >>> at = (anchor.temperature.si, anchor.doping.si)
+    >>> moving, _ = bulk_mobility_and_seebeck(crystal(silicon).electrons, *at)
+    >>> bool(abs(moving / anchor.measured.si - 1) < 1e-9)  # as many unknowns as anchors: each is met
     True
     """
     making = candidate.data.making
@@ -267,7 +274,7 @@ def bulk_mobility_and_seebeck(
 ) -> tuple[Array, Array]:
     """σ/(e × majority density) in m²/(V s), and S in V/K, of coarse material at temperature (K) and doping (1/m³).
 
-    µ = e L_0/n and S = −L_1/(e T L_0) as in `moments`; arguments broadcast. Raises ArithmeticError as `fill`.
+    µ = e L_0/n and S = −L_1/(e T L_0) as in `moments`; the two broadcast. Raises ArithmeticError as `fill`.
     Source: Ravich, Efimova & Smirnov, Semiconducting Lead Chalcogenides (1970).
 
     >>> from legwright.candidate.library import load_candidate
@@ -370,9 +377,10 @@ def bulk_lattice_conductivity(one: Crystal, temperature: float, doping: float | 
 
 
 def majority_carriers(electrons: Electrons, temperature: Array, eta: Array) -> Carriers:
-    """What phonons see of the majority bands: η = (µ − E_edge)/k_B T, one valley's mass (kg), valleys; per band.
+    """What phonons see of the majority bands: η, one valley's mass (kg) and how many; last axis bands.
 
-    m_b = m_d/N_v^(2/3) at temperature T (K). Raises nothing of its own.
+    m_b = m_d/N_v^(2/3) at temperature T (K), eta η = ±(µ − E_edge)/k_B T of all bands, of the shape of T with a
+    last axis of bands. Raises nothing of its own.
     Source: Ziman, Electrons and Phonons (1960).
 
     >>> from legwright.candidate.library import load_candidate

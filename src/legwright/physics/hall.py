@@ -14,7 +14,8 @@ def hall_anisotropy(mass_ratio: ArrayLike) -> Array:
     """What long valleys take off the Hall effect of a cubic crystal: 3K(K + 2)/(2K + 1)², dimensionless.
 
     mass_ratio K = m_l/m_t of ellipsoidal valleys (> 0; with a relaxation time that differs along and across,
-    K = (m_l/m_t)(τ_t/τ_l)); 1 for a sphere, ¾ for a needle, 0 for a disc. ValueError for K ≤ 0 or not finite.
+    K = (m_l/m_t)(τ_t/τ_l)), any shape; 1 for a sphere, ¾ for a needle, 0 for a disc. ValueError for K ≤ 0 or not
+    finite.
     Source: Herring, Bell System Technical Journal 34, 237 (1955).
 
     >>> round(float(hall_anisotropy(4.7)), 3)

@@ -30,10 +30,18 @@ _MODES = 128
 class Phonons:
     """Branches and scatterers in SI; arrays are (longitudinal, transverse).
 
-    `anharmonic_scale` multiplies Umklapp and normal rates, `strain_scale` the strain parameter;
-    the weights switch processes for tests and explanations. `wall_roughness` (m): root mean square height of the
-    walls of wires and films; None: they scatter every wave. `optical_excess` (W/(m K)): what optical branches carry
-    at `optical_temperature` (K) beyond the least that they can.
+    speed of sound (m/s), grueneisen γ, umklapp_divisor b in exp(−θ/bT), normal_ratio of normal to Umklapp rates;
+    volume_per_atom (m³), atoms per primitive cell, mean_mass (kg), mass density (kg/m³).
+    mass_variance and size_variance: Γ of the composition; dopant_mass_variance and dopant_size_variance: Γ per
+    dopant atom per host atom; strain_parameter, the factor on Γ by size; carrier_deformation_potential (J);
+    vacancy_disorder: Γ; dislocation_density (1/m²) and burgers_vector (m); precipitate_share of the volume,
+    precipitate_radius (m), precipitate_spread of ln R, precipitate_contrast in mass density.
+    grain_exponent s and grain_prefactor c of `grain_mean_free_path`; wall_roughness (m): root mean square height of
+    the walls of wires and films; None: they scatter every wave. optical_excess (W/(m K)): what optical branches
+    carry at optical_temperature (K) beyond the least that they can.
+    anharmonic_scale multiplies Umklapp and normal rates, strain_scale the strain parameter. Weights that double a
+    process or switch it off: umklapp_weight, normal_weight, defect_weight, carrier_weight, vacancy_weight,
+    dislocation_weight, precipitate_weight.
     """
 
     speed: Array
@@ -90,7 +98,10 @@ class Phonons:
 
 @dataclass(frozen=True)
 class Carriers:
-    """What phonons need to know of the majority carriers; last axis: bands."""
+    """What phonons need to know of the majority carriers; last axis: bands.
+
+    eta: Fermi level over the band edge (k_B T), valley_mass: density-of-states mass of one valley (kg), valleys.
+    """
 
     eta: Array
     valley_mass: Array
@@ -99,7 +110,10 @@ class Carriers:
 
 @dataclass(frozen=True)
 class Modes:
-    """The modes on the q mesh: frequency, group velocity and quadrature weight q² dq/(6π²) × degeneracy."""
+    """The modes on the mesh of wave numbers q (1/m), which all branches share; the others are (branches, modes).
+
+    omega (rad/s), group velocity (m/s), and weight of the quadrature, q² dq/(6π²) × degeneracy (1/m³).
+    """
 
     q: Array
     omega: Array
@@ -165,9 +179,10 @@ def mode_heat(omega: Array, temperature: Array) -> Array:
 
 @dataclass(frozen=True)
 class Rates:
-    """Rates inside an unbounded crystal at each (T, doping): those that resist, and normal processes.
+    """Rates 1/τ (1/s) inside an unbounded crystal at each (T, doping); last axes: branches, modes.
 
-    `defects` are point defects with vacancies; None: the crystal has none of these.
+    umklapp, defects (points, with vacancies), carriers, dislocations and precipitates resist; normal processes do
+    not. None: the crystal has none of these.
     """
 
     umklapp: Array
@@ -268,9 +283,10 @@ def _extended_defects(phonons: Phonons, mesh: Modes) -> tuple[Array | None, Arra
 def wall_suppression(phonons: Phonons, mesh: Modes, shape: str) -> Callable[[Array], Array]:
     """What the wall of a wire or film leaves of each mode, 0 … 1, as a function of path over size (..., modes).
 
-    Diffuse walls without `wall_roughness`; else p = exp(−4 q²η² cos²θ) inside the angular integral, for each q.
-    Raises nothing of its own. Sources: Dingle (1950); Fuchs (1938); Ziman, Electrons and Phonons (1960); Soffer,
-    Journal of Applied Physics 38, 1710 (1967).
+    Diffuse walls without `wall_roughness`; else p = exp(−4 q²η² cos²θ) inside the angular integral, for each q of
+    `mesh`. What it returns raises ValueError for a path over size below 0 where walls are diffuse.
+    Sources: Dingle, Proc. Royal Society A 201, 545 (1950); Fuchs, Proc. Cambridge Phil. Soc. 34, 100 (1938); Ziman,
+    Electrons and Phonons (Oxford, 1960); Soffer, Journal of Applied Physics 38, 1710 (1967).
 
     >>> from legwright.candidate.library import load_candidate
     >>> from legwright.physics.crystal import crystal
@@ -288,7 +304,7 @@ def wall_suppression(phonons: Phonons, mesh: Modes, shape: str) -> Callable[[Arr
 def grain_path(phonons: Phonons, mesh: Modes, size: ArrayLike) -> Array:
     """`grain_mean_free_path` of each mode, m: Λ_gb = c d (ω_max/ω)^s; size d (m) has axes for branches and modes.
 
-    Raises nothing of its own. Source: Wang et al., Nano Letters 11, 2206 (2011).
+    Raises nothing of its own. Source: Wang, Alaniz, Jang, Garay & Dames, Nano Letters 11, 2206 (2011).
 
     >>> from legwright.candidate.library import load_candidate
     >>> from legwright.physics.crystal import crystal
@@ -311,8 +327,8 @@ def acoustic_conductivity(
     1/τ_C = 1/τ_N + 1/τ_R; one drift velocity is shared by the branches. Grains add v/Λ_gb to 1/τ_R; walls
     of wires and films multiply τ_C by the exact kinetic factor (with `wall_roughness`, that of the mode's wave
     number), and 1/τ_R is what then is left of 1/τ_C.
-    temperature T (K) has the shape of the states of `rates`; size d (m, may be inf) broadcasts with it.
-    Raises nothing of its own.
+    temperature T (K) has the shape of the states of `rates`; size d (m, may be inf) of a 'grain', 'wire' or 'film'
+    broadcasts with it. ValueError for a size below 0 of a wire or film with diffuse walls.
     Sources: Callaway, Physical Review 113, 1046 (1959); Allen, Physical Review B 88, 144302 (2013).
 
     >>> from legwright.candidate.library import load_candidate
@@ -385,7 +401,10 @@ PATHS = PathMesh(1e-15, 1e2, 19)
 
 @dataclass(frozen=True)
 class HeatSpectrum:
-    """Callaway's three sums by mean free path (..., 3, paths), and the part of the third that no wall touches."""
+    """Callaway's three sums by mean free path, SI, and the part of the third that no boundary touches.
+
+    sums (..., 3, paths): direct (W/(m K)), drift (J/(m³ K)) and held (J s/(m⁵ K)); untouched, in units of held.
+    """
 
     sums: Array
     untouched: Array
@@ -403,8 +422,9 @@ def heat_spectrum(phonons: Phonons, mesh: Modes, rates: Rates, temperature: Arra
     >>> phonons = crystal(load_candidate("si-n")).phonons
     >>> mesh, t = modes(phonons), np.array(300.0)
     >>> rates = crystal_rates(phonons, mesh, t, np.array(0.0), None)
-    >>> spectrum = heat_spectrum(phonons, mesh, rates, t, "wire")
-    >>> bool(np.all(spectrum.sums[0].sum() > 0))
+    >>> direct, drift, held = heat_spectrum(phonons, mesh, rates, t, "wire").sums.sum(axis=-1)
+    >>> heat = mesh.weight * mode_heat(mesh.omega, t)
+    >>> bool(abs(direct / (heat * mesh.velocity**2 / (rates.resistive + rates.normal)).sum() - 1) < 1e-10)
     True
     """
     heat = mesh.weight * mode_heat(mesh.omega, temperature[..., None, None])
@@ -425,8 +445,8 @@ def heat_spectrum(phonons: Phonons, mesh: Modes, rates: Rates, temperature: Arra
 def conductivity_at(spectrum: HeatSpectrum, size: Array, shape: str) -> Array:
     """`acoustic_conductivity` at each size d (m, may be inf), W/(m K), from a heat spectrum; diffuse walls.
 
-    κ = A + B²/(D − E) with A, B, E the spectrum's sums held back by F(Λ/d). Broadcasts as `heat_spectrum`. Raises
-    nothing of its own; sources as `acoustic_conductivity`.
+    κ = A + B²/(D − E) with A, B, E the spectrum's sums held back by F(Λ/d) and D its untouched part. size
+    broadcasts with the states of `spectrum`. Errors and sources as `acoustic_conductivity`.
 
     >>> from legwright.candidate.library import load_candidate
     >>> from legwright.physics.crystal import crystal
@@ -504,7 +524,7 @@ def amorphous_minimum(phonons: Phonons, temperature: Array) -> Array:
 
 
 def optical_conductivity(phonons: Phonons, temperature: Array) -> Array:
-    """Heat of the modes above the acoustic branches, W/(m K), temperature in K: independent of size.
+    """Heat of the modes above the acoustic branches, W/(m K), at a temperature (K) of any shape.
 
     κ_o = κ_tail(T) + κ_x [c(T)/c(T_x)] (T_x/T). κ_tail is the part of Cahill's integral beyond q_D, the least that
     such modes carry; κ_x, where optical heat is known, is what they carry beyond it at T_x, with lifetimes that

@@ -13,7 +13,7 @@ Array = NDArray[np.float64]
 
 @dataclass(frozen=True)
 class Pieces:
-    """`coefficients` has one row a degree and one column a piece; pieces of `width` start at `start`."""
+    """Pieces of `width` from `start`; `coefficients` has one row a degree and one column a piece; dimensionless."""
 
     start: float
     width: float

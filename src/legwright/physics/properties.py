@@ -56,7 +56,12 @@ _STATES, _POINTS, _POINTS_BY_MODE = 256, 400_000, 4_000
 
 @dataclass(frozen=True)
 class Properties:
-    """SI arrays, all of the shape to which temperature, doping and size broadcast."""
+    """SI arrays of one shape, to which temperature (K), doping (1/m³) and size (m) broadcast; shape of the body.
+
+    electrical_conductivity σ (S/m), seebeck S (V/K), mobility of the majority carriers (m²/(V s));
+    electronic_thermal_conductivity κ_e with its bipolar part, bipolar_thermal_conductivity by itself,
+    lattice_thermal_conductivity κ_L and its amorphous_minimum (W/(m K)); crystal: the numbers they were made from.
+    """
 
     temperature: Array
     doping: Array
@@ -146,9 +151,11 @@ def evaluate(
 
     temperature T (2 to 3000 K), doping: net active density (1/m³; its sign is the candidate's carrier),
     size d (m; inf for coarse material) of grain, wire or film by `shape`; all broadcast.
-    σ = e²L_0, S = −L_1/(eTL_0), κ_e = (L_2 − L_1²/L_0)/T over all bands on one energy axis (Ravich, Efimova &
-    Smirnov 1970); bipolar = κ_e − κ_e(conduction alone) − κ_e(valence alone) (Goldsmid 2010); lattice after
-    Callaway, Physical Review 113, 1046 (1959). Raises InputError naming a value that physics does not allow.
+    σ = e²L_0, S = −L_1/(eTL_0), κ_e = (L_2 − L_1²/L_0)/T over all bands on one energy axis (Ravich et al.);
+    bipolar = κ_e − κ_e(conduction alone) − κ_e(valence alone) (Goldsmid); lattice after Callaway.
+    Raises InputError naming a value that physics does not allow.
+    Sources: Ravich, Efimova & Smirnov, Semiconducting Lead Chalcogenides (Plenum, 1970); Goldsmid, Introduction to
+    Thermoelectricity (Springer, 2010); Callaway, Physical Review 113, 1046 (1959).
 
     >>> from legwright.candidate.library import load_candidate
     >>> made = evaluate(load_candidate("si-n"), 300.0, 1e26, [20e-9, float("inf")])
@@ -161,8 +168,9 @@ def evaluate(
 def evaluate_crystal(
     one: Crystal, temperature: ArrayLike, doping: ArrayLike, size: ArrayLike, shape: str = "grain"
 ) -> Properties:
-    """`evaluate` for a crystal in hand, its numbers perhaps changed; arguments, units and InputError as `evaluate`,
-    sources as there.
+    """`evaluate` for a crystal in hand, whose numbers may have been changed.
+
+    Arguments, units, shapes, sources and InputError as `evaluate`.
 
     >>> from dataclasses import replace
     >>> from legwright.candidate.library import load_candidate

@@ -20,7 +20,10 @@ Array = NDArray[np.float64]
 
 @dataclass(frozen=True)
 class RoughWalls:
-    """Suppression for wave numbers that are fixed once: one table of ln Kn a wave number, all in one row."""
+    """Suppression for wave numbers that are fixed once: one table of ln Kn a wave number, all in one row.
+
+    table of F, waves: how many, fall: the power with which a thin body's F falls with Kn (all dimensionless).
+    """
 
     table: Pieces
     waves: int
@@ -137,7 +140,8 @@ def _integrate(shape: str, knudsen: Array, rough: Array) -> Array:
 def rough_suppression(shape: str, knudsen: ArrayLike, rough: ArrayLike) -> Array:
     """The path integral of `film_suppression_rough` or `wire_suppression_rough` itself, 0 … 1.
 
-    shape 'wire' or 'film'; knudsen Λ/d ≥ 0 and rough qη ≥ 0 broadcast. ValueError below 0.
+    shape 'wire' or 'film'; knudsen Λ/d ≥ 0 and rough qη ≥ 0 broadcast. ValueError below 0, KeyError for another
+    shape.
     Sources: Ziman, Electrons and Phonons (1960); Soffer, Journal of Applied Physics 38, 1710 (1967).
 
     >>> round(float(rough_suppression("film", 1.0, 1e3)), 5)  # diffuse: Fuchs (1938)

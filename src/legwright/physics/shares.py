@@ -18,7 +18,7 @@ Array = NDArray[np.float64]
 class Limits:
     """Shares of each process in a resistance, adding up to 1, and what flows by free path inside a grain.
 
-    `paths` (m) ascend; `carried` is the share of the flow in unbounded material on paths up to each.
+    shares by name; paths (m) ascend; carried: share of the flow in unbounded material on paths up to each, 0 … 1.
     """
 
     shares: dict[str, float]
@@ -32,7 +32,7 @@ class Limits:
 
 
 def electrical_limits(one: Crystal, temperature: float, doping: float, size: float, shape: str) -> Limits:
-    """What slows the carriers at one design point: temperature (K), doping (1/m³), size (m), shape.
+    """What slows the carriers at one design point: temperature (K), doping (1/m³), size (m) and shape, one of each.
 
     Share of process i: mean of (1/τ_i)/(1/τ) over energies and bands, weighted with what each conducts; the
     boundary's 1/τ is what takes the conductivity of an energy from unbounded to bounded. Shares add up to 1.
@@ -59,7 +59,8 @@ def electrical_limits(one: Crystal, temperature: float, doping: float, size: flo
 def thermal_limits(one: Crystal, temperature: float, doping: float, size: float, shape: str) -> Limits:
     """What slows the phonons at one design point, as `electrical_limits`: processes that resist, by modes.
 
-    Normal processes do not resist; they only share out heat, and are left out. ArithmeticError as `fill`.
+    Arguments, one of each, as `electrical_limits`. Normal processes do not resist; they only share out heat, and
+    are left out. ArithmeticError as `fill`.
     Source: Matthiessen's rule for each mode, as Ziman, Electrons and Phonons (1960).
 
     >>> from legwright.candidate.library import load_candidate

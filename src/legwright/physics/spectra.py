@@ -21,7 +21,7 @@ _PER_PIECE = 12
 
 @dataclass(frozen=True)
 class PathMesh:
-    """Mean free paths from `shortest` to `longest` (m) on equal pieces of ln Λ; outside ones move to the ends."""
+    """Mean free paths from shortest to longest (m, > 0) on equal pieces of ln Λ; others move to the ends."""
 
     shortest: float
     longest: float
@@ -73,7 +73,7 @@ def through(weights: Array, factor: Array) -> Array:
     """Σ_j w_j F_j for every point: weights (..., k, paths), factor (..., paths), which broadcast; result (..., k).
 
     One dot product of fixed length for each number, so its bits do not depend on what else is computed. Units are
-    the weights'. Raises ValueError where the shapes do not broadcast. By definition.
+    the weights', the factor is dimensionless. Raises ValueError where the shapes do not broadcast. By definition.
 
     >>> through(np.array([[1.0, 2.0], [3.0, 4.0]]), np.array([1.0, 0.5])).tolist()
     [2.0, 5.0]

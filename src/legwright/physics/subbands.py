@@ -37,8 +37,10 @@ class WireBand:
 
 
 def confinement_energy(diameter: ArrayLike, across_mass: ArrayLike) -> Array:
-    """E_R = ħ²/(2 m_t R²), J: the unit of a round wire's subbands; diameter 2R > 0 (m), across_mass m_t (kg).
-    Source: Hicks & Dresselhaus, Physical Review B 47, 16631 (1993).
+    """E_R = ħ²/(2 m_t R²), J: the unit of a round wire's subbands.
+
+    diameter 2R > 0 (m), across_mass m_t (kg); broadcast. Source: Hicks & Dresselhaus, Physical Review B 47, 16631
+    (1993).
 
     >>> from scipy import constants as c
     >>> round(float(confinement_energy(10e-9, 0.1 * c.m_e)) / c.e, 5)
@@ -50,6 +52,7 @@ def confinement_energy(diameter: ArrayLike, across_mass: ArrayLike) -> Array:
 def subband_edges(highest: float) -> tuple[NDArray[np.intp], Array]:
     """Angular orders m and zeros χ_mn of J_m up to `highest`, by rising χ; edges lie at χ² E_R, twofold for m > 0.
 
+    highest and zeros are dimensionless; two arrays of one shape, empty where no zero is so low.
     Source: Hicks & Dresselhaus, Physical Review B 47, 16631 (1993) for the one-dimensional subbands; a hard wall
     at the surface makes them those of a drum (Abramowitz & Stegun 1964, section 9.5).
 
@@ -155,6 +158,7 @@ def subband_density(band: WireBand, temperature: ArrayLike, eta: ArrayLike, diam
     broadcast. Where edges that carriers reach are more than the 900 tabulated ones the sum is replaced by its
     expansion for thick wires, bulk less surface plus curvature, F_½/4ε − √π F₀/(4√ε) + F_(−½)/6 +
     √(πε) F₋₁/128 with ε = E_R/k_B T, exact to a share of ε²; oscillations of cold thick wires are left out.
+    ValueError for a level η that is not finite.
     Sources: Hicks & Dresselhaus, Physical Review B 47, 16631 (1993); Stewartson & Waechter, Proc. Cambridge
     Phil. Soc. 69, 353 (1971) for the expansion.
 

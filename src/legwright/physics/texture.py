@@ -11,8 +11,8 @@ Array = NDArray[np.float64]
 def porous_share(porosity: ArrayLike) -> Array:
     """Conductivity, of heat as of charge, of a body with closed round pores over that of the dense one, 0 … 1.
 
-    (1 − φ)/(1 + φ/2), φ in [0, 1): the share of volume that is pores. Lowers σ and κ alike, so zT stays.
-    Good for separate pores, φ up to about 0.3. ValueError outside [0, 1).
+    (1 − φ)/(1 + φ/2), porosity φ in [0, 1), any shape: the share of volume that is pores. Lowers σ and κ alike, so
+    zT stays. Good for separate pores, φ up to about 0.3. ValueError outside [0, 1).
     Sources: Maxwell, A Treatise on Electricity and Magnetism (1873); Eucken, Forschungsheft 353 (1932).
 
     >>> round(float(porous_share(0.1)), 4)
@@ -27,8 +27,9 @@ def porous_share(porosity: ArrayLike) -> Array:
 def effective_size_ratio(log_spread: ArrayLike) -> Array:
     """The one size that acts as log-normal grains do, ⟨d³⟩/⟨d²⟩, over their median: exp(5 s²/2), dimensionless.
 
-    log_spread s ≥ 0: standard deviation of ln d. Volume over surface of the grains, hence of their boundaries.
-    ValueError below 0. Source: Aitchison & Brown, The Lognormal Distribution (Cambridge, 1957), for the moments.
+    log_spread s ≥ 0, any shape: standard deviation of ln d. Volume over surface of the grains, hence of their
+    boundaries. ValueError below 0. Source: Aitchison & Brown, The Lognormal Distribution (Cambridge, 1957), for the
+    moments.
 
     >>> round(float(effective_size_ratio(0.5)), 4)
     1.8682
