@@ -199,7 +199,7 @@ def cool_past_peak(material: LegMaterial, hot: float, cold: float, peak: float, 
     >>> nodes = np.linspace(240.0, 360.0, 9)
     >>> same = np.ones_like(nodes)
     >>> material = LegMaterial.from_nodes(nodes, 2e-4 * same, 1e-5 * same, 4 / 3 * same)  # Z = 3e-3 / K
-    >>> lifted = [cool_past_peak(material, 300.0, 280.0, t, 96).heat_times_length for t in np.arange(300.0, 350.0)]
+    >>> lifted = [cool_past_peak(material, 300.0, 280.0, t, 96).heat_times_length for t in np.arange(315.0, 335.0)]
     >>> f"{max(lifted):.1f}", f"{(2e-4 * 280) ** 2 / 2e-5 - 4 / 3 * 20:.1f}"  # S²T_c²/2ρ − κ ΔT: Ioffe (1957)
     ('130.1', '130.1')
     """
