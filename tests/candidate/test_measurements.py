@@ -80,6 +80,20 @@ def test_even_steps_from_room_temperature_in_celsius_are_noticed(table):
         read_measurements(table("temperature [K],seebeck [uV/K]\n" + rows), "n")
 
 
+@pytest.mark.parametrize(
+    ("first", "last", "celsius"),
+    [(25, 400, True), (50, 500, True), (50, 300, False), (100, 400, False), (300, 800, False)],
+)
+def test_a_cryostat_s_steps_are_not_taken_for_celsius(first, last, celsius, table):
+    rows = "".join(f"{t},-{100 + t / 10}\n" for t in range(first, last + 1, 25))
+    path = table("temperature [K],seebeck [uV/K]\n" + rows)
+    if celsius:
+        with pytest.raises(InputError, match="degrees Celsius given as kelvin"):
+            read_measurements(path, "n")
+    else:
+        assert len(read_measurements(path, "n")) == len(rows.splitlines())
+
+
 def test_one_quantity_in_two_columns_must_not_be_filled_twice(table):
     text = "temperature [K],resistivity [mohm cm],resistivity [ohm m]\n300,1.0,1e-5\n"
     with pytest.raises(InputError, match=r"row 2: 'resistivity' is given twice"):

@@ -15,7 +15,7 @@ from legwright.base.errors import InputError, nearest
 from legwright.base.files import datasets_folder, read_toml
 from legwright.base.reading import Table, read_as
 from legwright.base.units import si_factor
-from legwright.candidate.library import Candidate, check_sources, load_candidate, stamp
+from legwright.candidate.library import Candidate, check_sources, load_candidate, named_file, stamp
 from legwright.candidate.model import CandidateFile, Length, numbers
 from legwright.candidate.number import Measure
 
@@ -121,11 +121,8 @@ def load_family(name_or_path: str | Path) -> Family:
     ('Si', 'Ge')
     """
     text = str(name_or_path)
-    if text in family_names():
-        path = families_folder() / f"{text}.toml"
-    elif "/" in text or text.endswith(".toml"):
-        path = Path(text)
-    else:
+    path = named_file(text, family_names(), families_folder())
+    if path is None:
         raise InputError(f"no family '{text}' in the library; {nearest(text, family_names())}")
     return _read(path, text, stamp(path))
 

@@ -73,15 +73,18 @@ def load_candidate(name_or_path: str | Path) -> Candidate:
     if composed := family.family_of(text):
         name, shares = composed
         return family.member(family.load_family(name), shares)
-    if text in library_names():
-        path = candidates_folder() / f"{text}.toml"
-    elif "/" in text or text.endswith(".toml") or stamp(Path(text)):
-        path = Path(text)
-    elif text in family.family_names():
+    if path := named_file(text, library_names(), candidates_folder()):
+        return _read(path, text, stamp(path), stamp(path.parent / "sources.bib"))
+    if text in family.family_names():
         raise InputError(f"'{text}' is a family: give a composition, such as '{text}:0.2'")
-    else:
-        raise InputError(f"no candidate '{text}' in the library; {nearest(text, library_names())}")
-    return _read(path, text, stamp(path), stamp(path.parent / "sources.bib"))
+    raise InputError(f"no candidate '{text}' in the library; {nearest(text, library_names())}")
+
+
+def named_file(text: str, names: tuple[str, ...], folder: Path) -> Path | None:
+    """The library file of that name in `folder`, or the file at that path; None where it is neither."""
+    if text in names:
+        return folder / f"{text}.toml"
+    return Path(text) if "/" in text or text.endswith(".toml") or stamp(Path(text)) else None
 
 
 def stamp(path: Path) -> tuple[int, int] | None:

@@ -202,10 +202,12 @@ def _check_wiedemann_franz(table: Measurements) -> None:
 
 
 def _check_kelvin(table: Measurements) -> None:
-    """A furnace's even steps of 25 degrees that start below any laboratory's room: degrees Celsius, most likely."""
+    """Even steps of 25 degrees from a room's 15 to 35, or from under 60 to where no cryostat goes: Celsius."""
     temperature = table.of("temperature")
     steps = np.unique(np.round(np.diff(np.unique(temperature)), 6))
     even = steps.size == 1 and steps[0] % 25 == 0
-    if temperature.size > 2 and even and np.min(temperature) < 60 and np.max(temperature) > 150:
-        what = f"temperatures from {np.min(temperature):g} to {np.max(temperature):g} in even steps"
+    low, high = np.min(temperature), np.max(temperature)
+    from_a_room, too_wide = 15 <= low <= 35 and high > 150, low < 60 and high > 400
+    if temperature.size > 2 and even and (from_a_room or too_wide):
+        what = f"temperatures from {low:g} to {high:g} in even steps"
         raise _fault(table.path, table.rows[0], f"{what}: degrees Celsius given as kelvin? Add 273.15")

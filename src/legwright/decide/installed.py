@@ -6,12 +6,11 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from legwright.base.errors import InputError
 from legwright.base.flags import ordered
 from legwright.candidate.library import Candidate
 from legwright.decide.brief import Brief
-from legwright.decide.rank import rank_one
-from legwright.decide.score import leg_material
+from legwright.decide.rank import design_or_best
+from legwright.decide.score import leg_material, nodes_between
 from legwright.decide.warnings import point_flags
 from legwright.leg.duty import Duty
 from legwright.leg.installed import PEAK_RISE, Running, Setting, best_running, largest_reach
@@ -39,17 +38,9 @@ def deliver(candidate: Candidate, brief: Brief, doping: float | None, size: floa
 
     Raises InputError where the candidate cannot serve the brief and no design is given.
     """
-    if doping is None or size is None:
-        best = rank_one(brief, candidate)
-        if best.doping is None or best.size is None:
-            raise InputError(
-                f"{candidate.name} cannot serve this brief ({best.flags[0]}); give --doping and --size"
-            )
-        doping, size = doping or best.doping, size or best.size
+    doping, size = design_or_best(candidate, brief, doping, size)
     duty, shape = brief.task, brief.size.shape
-    low, high = _span(duty)
-    nodes = low + (high - low) * 0.5 * (1 - np.cos(np.pi * np.arange(_NODES) / (_NODES - 1)))
-    made = evaluate(candidate, nodes, doping, size, shape)
+    made = evaluate(candidate, nodes_between(*_span(duty), _NODES), doping, size, shape)
     material = leg_material(candidate, made)
     running, ideal = (best_running(material, _served(duty), setting) for setting in (brief.setting, Setting()))
     reach = largest_reach(material, duty, brief.setting) if duty.kind == "cooler" else None

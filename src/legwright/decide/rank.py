@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.interpolate import CubicSpline
 
+from legwright.base.errors import InputError
 from legwright.base.flags import ordered
 from legwright.base.units import NM, PER_CM3
 from legwright.candidate.library import Candidate
@@ -61,6 +62,21 @@ def rank(brief: Brief, path: str | Path, workers: int = 1) -> list[Row]:
         rows = Parallel(n_jobs=workers)(delayed(rank_one)(brief, candidate) for candidate in candidates)
     rows.sort(key=lambda row: (-row.score, row.candidate.name))
     return [replace(row, rank=place) for place, row in enumerate(rows, start=1)]
+
+
+def design_or_best(
+    candidate: Candidate, brief: Brief, doping: float | None, size: float | None
+) -> tuple[float, float]:
+    """Doping (1/m³) and size (m): as given, else those of the brief's best design.
+
+    Raises InputError where the candidate cannot serve the brief and they are not given.
+    """
+    if doping is not None and size is not None:
+        return doping, size
+    best = rank_one(brief, candidate)
+    if best.doping is None or best.size is None:
+        raise InputError(f"{candidate.name} cannot serve this brief ({best.flags[0]}); give --doping and --size")
+    return doping or best.doping, size or best.size
 
 
 def rank_one(brief: Brief, candidate: Candidate) -> Row:

@@ -14,8 +14,12 @@ Array = NDArray[np.float64]
 
 
 def span_nodes(duty: Duty, count: int) -> Array:
-    """Chebyshev–Lobatto temperatures over the duty's span, K, ascending: splines through them do not wiggle."""
-    low, high = duty.span
+    """Temperatures over the duty's span, K, as `nodes_between`."""
+    return nodes_between(*duty.span, count)
+
+
+def nodes_between(low: float, high: float, count: int) -> Array:
+    """Chebyshev–Lobatto temperatures, K, ascending: splines through them do not wiggle."""
     return np.asarray(low + (high - low) * 0.5 * (1 - np.cos(np.pi * np.arange(count) / (count - 1))))
 
 

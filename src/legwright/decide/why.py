@@ -12,7 +12,7 @@ from legwright.base.flags import ordered
 from legwright.base.units import NM
 from legwright.candidate.library import Candidate
 from legwright.decide.brief import Brief
-from legwright.decide.rank import rank_one
+from legwright.decide.rank import design_or_best
 from legwright.decide.warnings import point_flags
 from legwright.physics.crystal import crystal
 from legwright.physics.properties import Properties, evaluate, evaluate_crystal
@@ -94,13 +94,7 @@ def design_of(
             raise InputError("needs --doping and --size, or a brief that finds them")
         assert temperature is not None
         return np.array([temperature]), doping, size, shape or "grain"
-    if doping is None or size is None:
-        best = rank_one(brief, candidate)
-        if best.doping is None or best.size is None:
-            raise InputError(
-                f"{candidate.name} cannot serve this brief ({best.flags[0]}); give --doping and --size"
-            )
-        doping, size = doping or best.doping, size or best.size
+    doping, size = design_or_best(candidate, brief, doping, size)
     kelvin = np.linspace(brief.duty.cold_K, brief.duty.hot_K, _DUTY_POINTS)
     return kelvin, doping, size, shape or brief.size.shape
 

@@ -88,9 +88,7 @@ def run_generator(material: LegMaterial, duty: Duty, setting: Setting, w_hot: fl
         heat = float(made.heat_times_length) / duty.length - joule
         return heat, heat - float(made.power_times_length) / duty.length + 2 * joule, current
 
-    hot, cold = _ends(at, duty, setting, -1.0)
-    heat_hot, heat_cold, current = at(hot, cold)
-    return Running(heat_hot, heat_cold, heat_hot - heat_cold, current, hot, cold)
+    return _settled(at, duty, setting, -1.0)
 
 
 def run_cooler(material: LegMaterial, duty: Duty, setting: Setting, drive: float, steps: int = 96) -> Running:
@@ -122,14 +120,21 @@ def run_cooler(material: LegMaterial, duty: Duty, setting: Setting, drive: float
         heat = float(made.heat_times_length) / duty.length - joule
         return heat + float(made.power_times_length) / duty.length + 2 * joule, heat, current
 
-    hot, cold = _ends(at, duty, setting, +1.0)
+    return _settled(at, duty, setting, +1.0)
+
+
+#: heat at the hot and at the cold contact (W/m²) and current (A/m²) for the temperatures of the leg's ends (K)
+_Fluxes = Callable[[float, float], tuple[float, float, float]]
+
+
+def _settled(at: _Fluxes, duty: Duty, setting: Setting, sense: float) -> Running:
+    """The operating point at which the exchangers carry what the leg takes in and gives off."""
+    hot, cold = _ends(at, duty, setting, sense)
     heat_hot, heat_cold, current = at(hot, cold)
     return Running(heat_hot, heat_cold, heat_hot - heat_cold, current, hot, cold)
 
 
-def _ends(
-    at: Callable[[float, float], tuple[float, float, float]], duty: Duty, setting: Setting, sense: float
-) -> tuple[float, float]:
+def _ends(at: _Fluxes, duty: Duty, setting: Setting, sense: float) -> tuple[float, float]:
     """Temperatures of the leg's ends; `sense` −1: heat comes in at the hot end, +1: it leaves there."""
     if not (setting.hot_resistance or setting.cold_resistance):
         return duty.hot, duty.cold
