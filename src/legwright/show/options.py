@@ -1,0 +1,74 @@
+"""What the verbs share: their number type, their common options, and how a result leaves."""
+
+from __future__ import annotations
+
+import math
+import sys
+from collections.abc import Callable
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from legwright.base.errors import InputError
+
+if TYPE_CHECKING:
+    from legwright.show.records import Record
+
+
+class Positive(click.ParamType[float]):
+    """A finite number above zero, and where allowed a word that stands for coarse material."""
+
+    def __init__(self, name: str, bulk: bool = False) -> None:
+        self.name = name
+        self.bulk = bulk
+
+    def convert(self, value: Any, param: click.Parameter | None, ctx: click.Context | None) -> float:
+        if isinstance(value, float):
+            return value
+        if self.bulk and value == "bulk":
+            return math.inf
+        try:
+            number = float(value)
+        except ValueError:
+            number = math.nan
+        if not (math.isfinite(number) and number > 0):
+            word = " or the word bulk" if self.bulk else ""
+            self.fail(f"value '{value}' is not allowed; a finite number above 0{word}", param, ctx)
+        return number
+
+
+def output(command: Callable[..., Any]) -> Callable[..., Any]:
+    """The options that every verb has."""
+    for option in (
+        click.option("--markdown", is_flag=True, help="Print tables as Markdown."),
+        click.option("--csv", "csv_file", type=click.Path(path_type=Path), help="Also write the rows to FILE."),
+        click.option("--json", "as_json", is_flag=True, help="Print one JSON object and nothing else."),
+    ):
+        command = option(command)
+    return command
+
+
+shape_option = click.option("--shape", default="grain", show_default=True, metavar="grain|wire|film")
+
+
+def publish(
+    verb: str,
+    content: Record,
+    rows: list[Record],
+    as_json: bool,
+    csv_file: Path | None,
+    table: Callable[[], None],
+) -> None:
+    """Write the CSV if asked for, then one JSON object or the table."""
+    from legwright.base.files import write_whole
+    from legwright.show import records
+
+    if csv_file == Path():
+        raise InputError("needs the name of a file", key="--csv")
+    if csv_file is not None:
+        write_whole(csv_file, records.as_csv(rows))
+    if as_json:
+        sys.stdout.write(records.as_json(verb, content))
+    else:
+        table()

@@ -1,0 +1,47 @@
+"""The verb `fit`."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import click
+
+from legwright.base.errors import InputError
+from legwright.show.options import output, publish
+
+
+@click.command("fit")
+@click.argument("measurements", type=click.Path(path_type=Path))
+@click.option("--like", metavar="CANDIDATE", required=True, help="Candidate to start from: name or file.")
+@click.option("--into", type=click.Path(path_type=Path), help="Write the calibrated candidate to this TOML file.")
+@output
+def fit_verb(
+    measurements: Path, like: str, into: Path | None, as_json: bool, csv_file: Path | None, markdown: bool
+) -> None:
+    """Calibrate a candidate to the table MEASUREMENTS (CSV with the unit in each header)."""
+    from legwright.base.files import write_whole
+    from legwright.candidate.library import load_candidate
+    from legwright.candidate.measurements import read_measurements
+    from legwright.decide.fit import candidate_text, fit
+    from legwright.show import records, tables
+
+    if into is not None and into.suffix != ".toml":
+        raise InputError(f"value '{into}' is not allowed; a name that ends in .toml", key="--into")
+    start = load_candidate(like)
+    found = fit(read_measurements(measurements, start.data.carrier), start)
+    content = records.fit_record(found, into)
+    if into is not None:
+        write_whole(into, candidate_text(found))
+
+    def table() -> None:
+        out = tables.console(markdown)
+        for each in tables.fit_tables(content, markdown):
+            out.print(each)
+        out.print(f"Fit: {found.reason}. Heat capacity: {found.heat_capacity}.", markup=False)
+        open_ones = [row["parameter"] for row in content["parameters"] if not row["determined"]]
+        if open_ones:
+            out.print(f"These data do not determine: {', '.join(open_ones)}.", markup=False)
+        if into is not None:
+            out.print(f"Written: {into}", markup=False)
+
+    publish("fit", content, content["parameters"], as_json, csv_file, table)

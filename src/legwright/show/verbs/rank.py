@@ -1,0 +1,52 @@
+"""The verb `rank`."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import click
+
+from legwright.base.errors import NothingFeasible
+from legwright.show.options import output, publish
+
+
+@click.command("rank")
+@click.argument("brief", type=click.Path(path_type=Path))
+@click.option("--workers", type=click.IntRange(1, 64), default=1, show_default=True, help="Processes.")
+@click.option(
+    "--draws", type=click.IntRange(0, 65536), default=0, show_default=True, help="For confidence; 0: none."
+)
+@click.option("--seed", type=click.IntRange(0), default=0, show_default=True, help="Of the draws.")
+@output
+def rank_verb(
+    brief: Path,
+    workers: int,
+    draws: int,
+    seed: int,
+    as_json: bool,
+    csv_file: Path | None,
+    markdown: bool,
+) -> None:
+    """Rank the candidates of BRIEF, each at its best size and doping."""
+    from legwright.decide.brief import load_brief
+    from legwright.decide.draws import confidences
+    from legwright.decide.rank import rank
+    from legwright.show import records, tables
+
+    job = load_brief(brief)
+    found = rank(job, brief, workers)
+    sure = confidences(job, found, draws, seed) if draws else None
+    rows = [records.rank_record(row, sure) for row in found]
+    under = records.notes((f for row in found for f in row.flags), (row.candidate for row in found if row.score))
+    content = {"title": job.title, "rows": rows, **under}
+
+    def table() -> None:
+        out = tables.console(markdown)
+        duty = job.duty
+        heading = f"{job.title}: {duty.kind} leg, {duty.cold_K:g} to {duty.hot_K:g} K, {job.size.shape} size"
+        out.print(tables.rank_table(heading, rows, markdown))
+        tables.footnotes(out, tables.flag_numbers(rows), under["flag_meanings"], under["cautions"])
+
+    publish("rank", content, rows, as_json, csv_file, table)
+    if not any(row["score"] for row in rows):
+        raise NothingFeasible("no candidate can serve this brief; the flags say why")
