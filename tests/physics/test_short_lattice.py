@@ -116,9 +116,9 @@ KELVIN = np.array([50.0, 100.0, 150.0, 200.0, 300.0, 600.0, 1300.0])
 WITH_CARRIERS = np.array([2e-2, 7e-4, 1.3e-5, 1.2e-6, 1.5e-9, ROUNDING * 10, ROUNDING * 10])
 UNDOPED = np.full(KELVIN.shape, ROUNDING)
 #: the edge at twice the Fermi wave number lies where the mesh is wider (light or very many carriers), so that 128
-#: modes give 2.8e-5 at 200 K (p-Ge), 1.2e-6 (InSb) to 1e-9 (ZnO) at 300 K, and 1.7e-9 at 1300 K (BiSb): thrice the
-#: largest of each
-SHARP = {"bisb-n", "ge-p", "insb-n", "pbse-p", "snte-p", "zno-n"}
+#: modes give 2.8e-5 at 200 K (p-Ge), 1.2e-6 (InSb) to 1e-9 (ZnO) at 300 K, 6.7e-10 at 600 K (p-Si), and 1.7e-9 at
+#: 1300 K (BiSb): thrice the largest of each
+SHARP = {"bisb-n", "ge-p", "insb-n", "pbse-p", "si-p", "snte-p", "zno-n"}
 OF_SHARP = np.array([2e-2, 2.4e-3, 4.6e-4, 8.6e-5, 3.7e-6, 2.4e-9, 5.1e-9])
 
 

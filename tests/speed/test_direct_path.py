@@ -165,7 +165,15 @@ class Plain:
             top = v * c.hbar / c.k * (6 * math.pi**2 / p.volume_per_atom) ** (1 / 3) / self.t
             value = quad(lambda x: x**3 / 4 / math.sinh(x / 2) ** 2, top * p.atoms ** (-1 / 3), top, **TIGHT)[0]
             total += many * v / top**2 * value
-        return (math.pi / 6) ** (1 / 3) * c.k * p.volume_per_atom ** (-2 / 3) * total
+        least = (math.pi / 6) ** (1 / 3) * c.k * p.volume_per_atom ** (-2 / 3) * total
+        highest = 2 * max(p.speed) / math.pi * (6 * math.pi**2 / (p.atoms * p.volume_per_atom)) ** (1 / 3)
+
+        def held(t):
+            x = c.hbar * highest / (c.k * t)
+            return (x / 2 / math.sinh(x / 2)) ** 2
+
+        known_at = p.optical_temperature
+        return least + p.optical_excess * held(self.t) / held(known_at) * known_at / self.t
 
 
 def window(x):
