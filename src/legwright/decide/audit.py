@@ -44,6 +44,8 @@ WIDTH = float(ndtri(0.5 + COVER / 2))
 UNDOPED = 1e14 * PER_CM3
 ROOM = 300.0
 UNSTATED = "not published: that of the best zT"
+#: carriers that bring less than this share of the heat leave a lattice conductivity
+_NO_ELECTRONS = 0.01
 #: blind: nobody looked at it, and nothing like it fixed the candidate; unlike: blind too, of a sample that its file
 #: does not describe; seen: looked at while parameters were chosen, but fixed nothing
 KINDS = ("blind", "unlike", "seen", "fitted")
@@ -241,22 +243,27 @@ def _sample(table: Measurements, candidate: Candidate, name: str, rows: list[int
 
 
 def judge(sample: Sample, one: Crystal | None = None) -> list[Verdict]:
-    """Each published figure of a sample that did not fix its doping; `one` in place of the candidate's crystal."""
+    """Each published figure of a sample that did not fix its doping; `one` in place of the candidate's crystal.
+
+    A whole conductivity of which carriers bring less than 1 % (undoped silicon) is a lattice conductivity.
+    """
     one = crystal(sample.candidate) if one is None else one
     doping = doping_of(sample, one)
     made = evaluate_crystal(one, sample.temperature, doping.density, sample.size, sample.shape)
     predicted = _quantities(made)
+    electronic_share = made.electronic_thermal_conductivity / made.thermal_conductivity
     drawn = _drawn_spread(sample, one, doping)
     verdicts = []
     for quantity in QUANTITIES:
         for i in np.flatnonzero(np.isfinite(sample.published[quantity])):
             if doping.anchor == (quantity, int(i)):
                 continue
+            bare = quantity == "thermal_conductivity" and electronic_share[i] < _NO_ELECTRONS
             verdicts.append(
                 Verdict(
                     sample.name,
                     sample.candidate.name,
-                    quantity,
+                    "lattice_conductivity" if bare else quantity,
                     sample.shape,
                     sample.size,
                     float(sample.temperature[i]),
