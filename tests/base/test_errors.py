@@ -30,3 +30,10 @@ def test_nearest(name, allowed, clause):
 def test_input_error_says_where(where, text):
     assert str(InputError("is wrong", **where)) == text
     assert isinstance(InputError("is wrong"), ValueError)
+
+
+def test_a_refusal_is_one_printable_line_of_bounded_length():
+    said = str(InputError("value 'a\nb\x1b[31m\u202e' " + "x" * 5000, file="odd\tname.toml"))
+    assert said.isprintable()
+    assert len(said) < 2100
+    assert said.startswith("odd name.toml: value 'a b\\x1b[31m")

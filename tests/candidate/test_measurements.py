@@ -44,6 +44,7 @@ FAULTS = {
     "another unit": ("seebeck [uV/K]", "seebeck [W/m/K]", "not a unit that converts"),
     "celsius in the header": ("temperature [K]", "temperature [degC]", "add 273.15"),
     "unknown column": ("seebeck [uV/K]", "seebek [uV/K]", "did you mean 'seebeck'"),
+    "a gap filled with zero": ("-220", "0", "row 3: the Seebeck coefficient is 0"),
     "not a number": ("-220", "n.a.", "row 3: 'seebeck' is 'n.a.', not a number"),
     "wrong sign": ("-220", "220", "row 3: the Seebeck coefficient has the wrong sign"),
     "no such Seebeck coefficient": ("-220", "-2.2e5", "row 3.*are two columns swapped"),

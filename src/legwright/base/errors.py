@@ -11,7 +11,17 @@ class InputError(ValueError):
 
     def __init__(self, message: str, *, file: object = None, key: str | None = None) -> None:
         where = ": ".join(str(part) for part in (file, key) if part)
-        super().__init__(f"{where}: {message}" if where else message)
+        super().__init__(_one_line(f"{where}: {message}" if where else message))
+
+
+#: characters of a refusal; what a file holds may be longer
+_LONGEST = 2000
+
+
+def _one_line(text: str) -> str:
+    """Nothing that a terminal obeys, however odd the quoted value: one line, printable, not endless."""
+    plain = "".join(each if each.isprintable() else ascii(each)[1:-1] for each in " ".join(text.split()))
+    return plain if len(plain) <= _LONGEST else f"{plain[: _LONGEST - 200]} … {plain[-195:]}"
 
 
 class NothingFeasible(Exception):

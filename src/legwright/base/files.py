@@ -30,19 +30,31 @@ def read_toml(path: Path, shown: Path | str | None = None) -> dict[str, Any]:
 
     name = path if shown is None else shown
     try:
-        if path.is_dir():
-            raise InputError("is a directory; a TOML file is needed", file=name)
-        if path.stat().st_size > LARGEST_INPUT_BYTES:
-            raise InputError(f"is larger than {LARGEST_INPUT_BYTES} bytes", file=name)
-        return tomli.loads(path.read_text(encoding="utf-8-sig"))
-    except FileNotFoundError as error:
-        raise InputError("no such file", file=name) from error
-    except UnicodeDecodeError as error:
-        raise InputError("is not UTF-8 text; a TOML file is needed", file=name) from error
+        return tomli.loads(read_text(path, shown))
     except tomli.TOMLDecodeError as error:
         raise InputError(f"is not valid TOML: {error}", file=name) from error
     except RecursionError as error:
         raise InputError("is nested too deeply for a TOML file of ours", file=name) from error
+    except ValueError as error:
+        if isinstance(error, InputError):
+            raise
+        raise InputError(f"is not valid TOML: {error}", file=name) from error
+
+
+def read_text(path: Path, shown: Path | str | None = None) -> str:
+    """The text of a file; InputError that names it (as `shown`) where it cannot be read or is no UTF-8."""
+    name = path if shown is None else shown
+    needed = f"a {path.suffix[1:].upper() or 'text'} file is needed"
+    try:
+        if path.is_dir():
+            raise InputError(f"is a directory; {needed}", file=name)
+        if path.stat().st_size > LARGEST_INPUT_BYTES:
+            raise InputError(f"is larger than {LARGEST_INPUT_BYTES} bytes", file=name)
+        return path.read_text(encoding="utf-8-sig")
+    except FileNotFoundError as error:
+        raise InputError("no such file", file=name) from error
+    except UnicodeDecodeError as error:
+        raise InputError(f"is not UTF-8 text; {needed}", file=name) from error
     except OSError as error:
         raise InputError(f"cannot be read ({error.strerror})", file=name) from error
     except ValueError as error:

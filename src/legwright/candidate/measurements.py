@@ -13,6 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from legwright.base.errors import InputError, nearest
+from legwright.base.files import read_text
 from legwright.base.units import si_factor
 
 Array = NDArray[np.float64]
@@ -83,11 +84,11 @@ def read_measurements(path: str | Path, carrier: str | None = None) -> Measureme
     Raises InputError naming file, row and the likely cause.
     """
     shown = Path(path)
+    read = csv.reader(io.StringIO(read_text(shown, path)))
     try:
-        text = shown.read_text(encoding="utf-8-sig")
-    except (OSError, UnicodeDecodeError) as error:
-        raise InputError(f"cannot be read: {error}", file=path) from error
-    lines = [(number, line) for number, line in enumerate(csv.reader(io.StringIO(text)), start=1) if any(line)]
+        lines = [(number, line) for number, line in enumerate(read, start=1) if any(line)]
+    except csv.Error as error:
+        raise InputError(f"is not a table of comma-separated values: {error}", file=path) from error
     if len(lines) < 2:
         raise InputError("holds no rows under its header", file=path)
     columns = [_column(cell, path) for cell in lines[0][1]]
@@ -178,6 +179,8 @@ def _check_rows(table: Measurements, carrier: str | None) -> None:
         if key in seen:
             raise _fault(table.path, row, f"repeats row {seen[key]}")
         seen[key] = row
+        if thermopower[index] == 0:
+            raise _fault(table.path, row, "the Seebeck coefficient is 0: a gap that was filled?")
         if carrier is not None and not math.isnan(thermopower[index]):
             expected = -1 if carrier == "n" else 1
             if thermopower[index] * expected < 0:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from pathlib import Path
 from typing import Annotated, Literal
 
-from pydantic import Field, PlainValidator, model_validator
+from pydantic import BeforeValidator, Field, model_validator
 
 from legwright.base.errors import InputError, nearest
 from legwright.base.files import read_toml
@@ -80,7 +80,7 @@ def _all_or_names(value: object) -> object:
 class CandidatesTable(Table):
     """Who is considered."""
 
-    use: Annotated[Literal["all"] | tuple[str, ...], PlainValidator(_all_or_names)] = "all"
+    use: Annotated[Literal["all"] | tuple[str, ...], BeforeValidator(_all_or_names)] = "all"
     carrier: Literal["n", "p", "either"] = "either"
 
 

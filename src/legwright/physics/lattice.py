@@ -173,8 +173,12 @@ def mode_heat(omega: Array, temperature: Array) -> Array:
     >>> f"{float(mode_heat(np.array(1e10), np.array(300.0))) / K_B:.6f}"
     '1.000000'
     """
-    half = 0.5 * HBAR * omega / (K_B * temperature)
-    return np.asarray(K_B * (half / np.sinh(half)) ** 2)
+    return np.asarray(K_B * _excited(0.5 * HBAR * omega / (K_B * temperature)) ** 2)
+
+
+def _excited(half: Array) -> Array:
+    """h/sinh h, which is 0 where sinh would overflow."""
+    return np.asarray(half / np.sinh(np.minimum(half, 700.0)))
 
 
 @dataclass(frozen=True)
@@ -501,8 +505,7 @@ def _glass_integral(phonons: Phonons, temperature: Array, from_share: float) -> 
     nodes, weights = _gauss(24)
     share = from_share + (1 - from_share) * 0.5 * (nodes + 1)
     x = edge[:, None] * share / temperature[..., None, None]
-    half = 0.5 * x
-    kernel = x * (half / np.sinh(half)) ** 2 * (edge[:, None] / temperature[..., None, None])
+    kernel = x * _excited(0.5 * x) ** 2 * (edge[:, None] / temperature[..., None, None])
     integral = np.sum(kernel * weights * 0.5 * (1 - from_share), axis=-1)
     by_branch = DEGENERACY * phonons.speed * (temperature[..., None] / edge) ** 2 * integral
     return np.asarray((np.pi / 6) ** (1 / 3) * K_B * atoms_per_volume ** (2 / 3) * np.sum(by_branch, axis=-1))
