@@ -35,9 +35,10 @@ _LEAST_SEEBECK = 1e-6
 #: tolerances that can be asked: the direct path itself has steps of 1e-9, where paths move from piece to piece
 FINEST, COARSEST = 1e-7, 1e-2
 
-_FIRST_DOPINGS, _MOST_DOPINGS = 10, 33
-_FIRST_SIZES, _MOST_SIZES = 36, 200
-#: terms in size whose sum is below this share of the tolerance are left out
+#: terms in ln doping on a piece: one more than a power of two; how many dopings between are asked again; sizes
+_FEWEST_DOPINGS, _MOST_DOPINGS, _CHECKED_DOPINGS = 9, 33, 8
+_MOST_SIZES = 300
+#: last terms whose sum is below this share of the tolerance are left out
 _SPARED = 0.1
 #: how often a piece of doping may be halved before the tolerance is refused
 _HALVINGS = 4
@@ -53,8 +54,7 @@ class CompressedMap:
     """Properties of one crystal in one shape over dopings and sizes, as Chebyshev series; SI.
 
     crystal and shape as in `Properties`; temperature (K), of any shape; edges of the pieces of doping (1/m³),
-    ascending; sizes: smallest and largest finite size (m); tolerance asked for and error estimated, relative;
-    points: how many of the direct path stand behind it, with those of the checks.
+    ascending; sizes: smallest and largest finite size (m); tolerance asked for and error estimated, relative.
     coefficients: (temperatures, quantities, terms in ln doping piece by piece, terms in ln size and then coarse
     material); amorphous_minimum (W/(m K)) hangs on temperature alone.
     """
@@ -66,7 +66,6 @@ class CompressedMap:
     sizes: tuple[float, float]
     tolerance: float
     error: float
-    points: int
     coefficients: Array = field(repr=False, compare=False)
     amorphous_minimum: Array = field(repr=False, compare=False)
 
@@ -212,7 +211,7 @@ def compress(
     Terms are added until the last ones, and the misses at the extremes of the interpolation's error, where the
     direct path is asked again, are below `tolerance`; where terms do not help, the range of doping is halved.
     It is relative, for zT too, but for two: S, and zT by it, in shares of |S| or of 1 µV/K, whichever is larger;
-    the bipolar part in shares of κ_e. The map's `error` is the larger of the last terms and twice those misses.
+    the bipolar part in shares of κ_e. The map's `error` is the last terms and twice those misses together.
     Raises InputError where the tolerance is out of reach, with what was reached and where, and as `evaluate`.
     Source: Trefethen, Approximation Theory and Approximation Practice (SIAM, 2013).
 
@@ -247,7 +246,6 @@ def compress(
         sizes,
         tolerance,
         max(piece.error for piece in pieces),
-        sum(piece.points for piece in pieces),
         whole.reshape(t.size, _QUANTITIES, -1, longest),
         np.asarray(one.dense_share * amorphous_minimum(one.phonons, t)),
     )
@@ -264,15 +262,18 @@ def _corners(one: Crystal) -> list[float]:
 
 @dataclass(frozen=True)
 class _Direct:
-    """The direct path as that which has series: (temperatures, quantities, dopings, sizes and coarse material)."""
+    """The direct path as that which has series: (temperatures, quantities, dopings, sizes)."""
 
     crystal: Crystal
     temperature: Array
     sizes: tuple[float, float]
     shape: str
 
-    def __call__(self, doping: Array, local_size: Array) -> Array:
-        size = np.append(_there(local_size, *self.sizes), np.inf)
+    def sizes_at(self, local: Array) -> Array:
+        """Finite sizes at places −1 … 1 of their range, and coarse material."""
+        return np.append(_there(local, *self.sizes), np.inf)
+
+    def __call__(self, doping: Array, size: Array) -> Array:
         made = evaluate_crystal(self.crystal, self.temperature[:, None, None], doping[:, None], size, self.shape)
         electronic = made.electronic_thermal_conductivity
         positive = (made.electrical_conductivity, electronic, made.lattice_thermal_conductivity, made.mobility)
@@ -283,46 +284,43 @@ class _Direct:
 
 @dataclass(frozen=True)
 class _Piece:
-    """Series on one piece of doping from the last one's end to `high`, their error and the points they took."""
+    """Series on one piece of doping, from where the one before ends to `high`, and their error."""
 
     high: float
     coefficients: Array
     error: float
-    points: int
 
 
 def _pieces(direct: _Direct, low: float, high: float, tolerance: float, halvings: int) -> Iterator[_Piece]:
-    """Series from low to high doping with as few terms as do; on halves of it where the most do not."""
-    terms, lengths = _FIRST_DOPINGS, _FIRST_SIZES
-    points = 0
-    while terms <= _MOST_DOPINGS and lengths <= _MOST_SIZES:
-        nodes, local = chebpts1(terms), chebpts1(lengths)
-        values = direct(_there(nodes, low, high), local)
-        points += values[:, 0].size
-        unit = _units(values)
-        in_size = np.concatenate([_series(values[..., :-1], local, -1), values[..., -1:]], axis=-1)
-        by_length = np.max(np.abs(in_size[..., :-1]) / np.min(unit, axis=-1, keepdims=True), axis=(0, 1, 2))
-        by_term = np.max(np.abs(_series(values, nodes, -2)) / np.min(unit, axis=-2, keepdims=True), axis=(0, 1, 3))
-        last = np.array([by_term[-2:].sum(), by_length[-2:].sum()])
-        kept = int(np.flatnonzero(np.cumsum(by_length[::-1])[::-1] > _SPARED * tolerance)[-1]) + 1
-        coefficients = _series(np.delete(in_size, np.s_[kept:lengths], axis=-1), nodes, -2)
-        error = float(last.sum())
+    """Series from low to high doping with as few terms as do; on halves of it where the most do not.
+
+    Twice the terms keep the dopings that there are, and those between them are where the fewer terms miss most.
+    """
+    nodes, local = chebpts2(_FEWEST_DOPINGS), chebpts1(_enough_sizes(direct.sizes, tolerance))
+    values = direct(_there(nodes, low, high), direct.sizes_at(local))
+    while True:
+        coefficients, last_doping, last_size = _fit(values, nodes, local, _SPARED * tolerance)
+        error = last_doping + last_size
         if error <= tolerance:
-            between, local = chebpts2(terms + 1), chebpts2(kept + 1)
-            asked = direct(_there(between, low, high), local)
-            points += asked[:, 0].size
-            held = np.column_stack([chebvander(local, kept - 1), np.zeros(kept + 1)])
-            held = np.vstack([held, np.append(np.zeros(kept), 1.0)])
-            made = chebvander(between, terms - 1) @ coefficients @ held.T
-            error = max(error, 2 * _missed(made, asked))
+            between = chebpts1(nodes.size - 1)
+            some = between[:: between.size // _CHECKED_DOPINGS]
+            error += 2 * _missed(direct, _there(some, low, high), some, coefficients)
             if error <= tolerance:
-                yield _Piece(high, coefficients, error, points)
+                yield _Piece(high, coefficients, error)
                 return
-        if last[0] > tolerance / 4 or last[1] <= tolerance / 4:
-            terms += terms // 2
-        if last[1] > tolerance / 4:
-            lengths += lengths // 2
-    if not halvings or lengths > _MOST_SIZES:
+        if last_size > tolerance / 4 and local.size < _MOST_SIZES:
+            local = chebpts1(2 * local.size)
+            values = direct(_there(nodes, low, high), direct.sizes_at(local))
+        elif nodes.size < _MOST_DOPINGS:
+            between = chebpts1(nodes.size - 1)
+            nodes = chebpts2(2 * nodes.size - 1)
+            places = np.arange(1, nodes.size - 1)
+            values = np.insert(
+                values, places[: between.size], direct(_there(between, low, high), direct.sizes_at(local)), axis=-2
+            )
+        else:
+            break
+    if not halvings:
         raise InputError(
             f"value {tolerance:g} is not allowed; from {low:.3g} to {high:.3g} 1/m³ series of the most terms come "
             f"within {error:.0e}",
@@ -331,6 +329,25 @@ def _pieces(direct: _Direct, low: float, high: float, tolerance: float, halvings
     middle = float(np.sqrt(low * high))
     for ends in ((low, middle), (middle, high)):
         yield from _pieces(direct, *ends, tolerance, halvings - 1)
+
+
+def _enough_sizes(sizes: tuple[float, float], tolerance: float) -> int:
+    """Terms in ln size: coefficients fall as ρ^−k, and walls keep ln ρ = arsinh(π/ln(d_max/d_min)) (Trefethen)."""
+    return int(np.ceil(np.log(10 / tolerance) / np.arcsinh(np.pi / np.log(sizes[1] / sizes[0])))) + 4
+
+
+def _fit(values: Array, nodes: Array, local: Array, spared: float) -> tuple[Array, float, float]:
+    """Coefficients without the last that sum to less than is spared, and the last two, by doping and by size."""
+    unit = _units(values)
+    in_size = _series(values[..., :-1], local, -1)
+    by_size = np.max(np.abs(in_size) / np.min(unit, axis=-1, keepdims=True), axis=(0, 1, 2))
+    by_doping = np.max(np.abs(_series(values, nodes, -2)) / np.min(unit, axis=-2, keepdims=True), axis=(0, 1, 3))
+
+    def kept(each: Array) -> int:
+        return int(np.flatnonzero(np.cumsum(each[::-1])[::-1] > spared)[-1]) + 1
+
+    whole = _series(np.concatenate([in_size[..., : kept(by_size)], values[..., -1:]], axis=-1), nodes, -2)
+    return whole[..., : kept(by_doping), :], float(np.sum(by_doping[-2:])), float(np.sum(by_size[-2:]))
 
 
 def _series(values: Array, nodes: Array, axis: int) -> Array:
@@ -349,8 +366,12 @@ def _units(values: Array) -> Array:
     return unit
 
 
-def _missed(made: Array, asked: Array) -> float:
-    """Largest miss of all quantities and of zT."""
+def _missed(direct: _Direct, doping: Array, local: Array, coefficients: Array) -> float:
+    """Largest miss of all quantities and of zT at those dopings, for sizes between which the series turns."""
+    terms, lengths = coefficients.shape[-2], coefficients.shape[-1] - 1
+    size = direct.sizes_at(chebpts2(lengths + 1))
+    asked = direct(doping, size)
+    made = chebvander(local, terms - 1) @ coefficients @ _in_size(size, direct.sizes, lengths).T
     least = np.maximum(np.abs(asked[:, _SEEBECK]), _LEAST_SEEBECK)
 
     def figure(values: Array, seebeck: Array) -> Array:
