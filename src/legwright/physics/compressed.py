@@ -16,6 +16,7 @@ from itertools import pairwise
 import numpy as np
 from numpy.polynomial.chebyshev import chebpts1, chebpts2, chebvander
 from numpy.typing import ArrayLike, NDArray
+from scipy.fft import dct
 
 from legwright.base.errors import InputError
 from legwright.candidate.library import Candidate
@@ -296,28 +297,22 @@ def _pieces(direct: _Direct, low: float, high: float, tolerance: float, halvings
 
     Twice the terms keep the dopings that there are, and those between them are where the fewer terms miss most.
     """
-    nodes, local = chebpts2(_FEWEST_DOPINGS), chebpts1(_enough_sizes(direct.sizes, tolerance))
-    values = direct(_there(nodes, low, high), direct.sizes_at(local))
+    nodes, sizes = chebpts2(_FEWEST_DOPINGS), direct.sizes_at(chebpts1(_enough_sizes(direct.sizes, tolerance)))
+    values = direct(_there(nodes, low, high), sizes)
     while True:
-        coefficients, last_doping, last_size = _fit(values, nodes, local, _SPARED * tolerance)
-        error = last_doping + last_size
+        coefficients, last_doping, last_size = _fit(values, _SPARED * tolerance)
+        error, between = last_doping + last_size, chebpts1(nodes.size - 1)
         if error <= tolerance:
-            between = chebpts1(nodes.size - 1)
-            some = between[:: between.size // _CHECKED_DOPINGS]
-            error += 2 * _missed(direct, _there(some, low, high), some, coefficients)
+            error += 2 * _missed(direct, low, high, between[:: between.size // _CHECKED_DOPINGS], coefficients)
             if error <= tolerance:
                 yield _Piece(high, coefficients, error)
                 return
-        if last_size > tolerance / 4 and local.size < _MOST_SIZES:
-            local = chebpts1(2 * local.size)
-            values = direct(_there(nodes, low, high), direct.sizes_at(local))
+        if last_size > tolerance / 4 and sizes.size < _MOST_SIZES:
+            sizes = direct.sizes_at(chebpts1(2 * sizes.size))
+            values = direct(_there(nodes, low, high), sizes)
         elif nodes.size < _MOST_DOPINGS:
-            between = chebpts1(nodes.size - 1)
+            values = np.insert(values, range(1, nodes.size), direct(_there(between, low, high), sizes), axis=-2)
             nodes = chebpts2(2 * nodes.size - 1)
-            places = np.arange(1, nodes.size - 1)
-            values = np.insert(
-                values, places[: between.size], direct(_there(between, low, high), direct.sizes_at(local)), axis=-2
-            )
         else:
             break
     if not halvings:
@@ -336,25 +331,32 @@ def _enough_sizes(sizes: tuple[float, float], tolerance: float) -> int:
     return int(np.ceil(np.log(10 / tolerance) / np.arcsinh(np.pi / np.log(sizes[1] / sizes[0])))) + 4
 
 
-def _fit(values: Array, nodes: Array, local: Array, spared: float) -> tuple[Array, float, float]:
+def _fit(values: Array, spared: float) -> tuple[Array, float, float]:
     """Coefficients without the last that sum to less than is spared, and the last two, by doping and by size."""
     unit = _units(values)
-    in_size = _series(values[..., :-1], local, -1)
+    in_size = _from_roots(values[..., :-1])
     by_size = np.max(np.abs(in_size) / np.min(unit, axis=-1, keepdims=True), axis=(0, 1, 2))
-    by_doping = np.max(np.abs(_series(values, nodes, -2)) / np.min(unit, axis=-2, keepdims=True), axis=(0, 1, 3))
+    by_doping = np.max(np.abs(_from_extremes(values)) / np.min(unit, axis=-2, keepdims=True), axis=(0, 1, 3))
 
     def kept(each: Array) -> int:
         return int(np.flatnonzero(np.cumsum(each[::-1])[::-1] > spared)[-1]) + 1
 
-    whole = _series(np.concatenate([in_size[..., : kept(by_size)], values[..., -1:]], axis=-1), nodes, -2)
+    whole = _from_extremes(np.concatenate([in_size[..., : kept(by_size)], values[..., -1:]], axis=-1))
     return whole[..., : kept(by_doping), :], float(np.sum(by_doping[-2:])), float(np.sum(by_size[-2:]))
 
 
-def _series(values: Array, nodes: Array, axis: int) -> Array:
-    """Chebyshev coefficients along an axis from values at all the nodes."""
-    along = np.moveaxis(values, axis, 0)
-    found = np.linalg.solve(chebvander(nodes, nodes.size - 1), along.reshape(nodes.size, -1))
-    return np.asarray(np.moveaxis(found.reshape(along.shape), 0, axis), dtype=np.float64)
+def _from_roots(values: Array) -> Array:
+    """Chebyshev coefficients along the last axis of what was read at `chebpts1` points."""
+    found = dct(values[..., ::-1], type=2) / values.shape[-1]
+    found[..., 0] /= 2
+    return np.asarray(found)
+
+
+def _from_extremes(values: Array) -> Array:
+    """Chebyshev coefficients along the last axis but one of what was read at `chebpts2` points."""
+    found = dct(values[..., ::-1, :], type=1, axis=-2) / (values.shape[-2] - 1)
+    found[..., [0, -1], :] /= 2
+    return np.asarray(found)
 
 
 def _units(values: Array) -> Array:
@@ -366,11 +368,11 @@ def _units(values: Array) -> Array:
     return unit
 
 
-def _missed(direct: _Direct, doping: Array, local: Array, coefficients: Array) -> float:
-    """Largest miss of all quantities and of zT at those dopings, for sizes between which the series turns."""
+def _missed(direct: _Direct, low: float, high: float, local: Array, coefficients: Array) -> float:
+    """Largest miss, of any quantity or zT, at those places of doping and at sizes where the error turns."""
     terms, lengths = coefficients.shape[-2], coefficients.shape[-1] - 1
     size = direct.sizes_at(chebpts2(lengths + 1))
-    asked = direct(doping, size)
+    asked = direct(_there(local, low, high), size)
     made = chebvander(local, terms - 1) @ coefficients @ _in_size(size, direct.sizes, lengths).T
     least = np.maximum(np.abs(asked[:, _SEEBECK]), _LEAST_SEEBECK)
 
