@@ -22,7 +22,7 @@ from legwright.base.errors import InputError
 from legwright.candidate.library import Candidate
 from legwright.physics.crystal import Crystal, crystal
 from legwright.physics.lattice import amorphous_minimum
-from legwright.physics.properties import Properties, evaluate_crystal, within
+from legwright.physics.properties import DENSEST, LARGEST, SMALLEST, THINNEST, Properties, evaluate_crystal, within
 
 Array = NDArray[np.float64]
 
@@ -36,11 +36,13 @@ _LEAST_SEEBECK = 1e-6
 #: tolerances that can be asked: the direct path itself has steps of 1e-9, where paths move from piece to piece
 FINEST, COARSEST = 1e-7, 1e-2
 
-#: terms in ln doping on a piece: one more than a power of two; how many dopings between are asked again; sizes
-_FEWEST_DOPINGS, _MOST_DOPINGS, _CHECKED_DOPINGS = 9, 33, 8
+#: terms in ln doping on a piece, one more than a power of two, and in ln size
+_FEWEST_DOPINGS, _MOST_DOPINGS = 9, 33
 _MOST_SIZES = 300
 #: last terms whose sum is below this share of the tolerance are left out
 _SPARED = 0.1
+#: the slowest fall of terms that is taken for one
+_SLOWEST = 0.99
 #: how often a piece of doping may be halved before the tolerance is refused
 _HALVINGS = 4
 
@@ -209,10 +211,11 @@ def compress(
     shape 'grain', 'wire' or 'film'; dopings: lowest and highest (1/m³); sizes: smallest and largest (m), both
     finite; coarse material (inf) comes along by itself.
 
-    Terms are added until the last ones, and the misses at the extremes of the interpolation's error, where the
-    direct path is asked again, are below `tolerance`; where terms do not help, the range of doping is halved.
-    It is relative, for zT too, but for two: S, and zT by it, in shares of |S| or of 1 µV/K, whichever is larger;
-    the bipolar part in shares of κ_e. The map's `error` is the last terms and twice those misses together.
+    Terms are added until `tolerance` is kept by what would follow the last and by the misses where the series'
+    error turns, at dopings and sizes between the nodes, for which the direct path is asked again; where terms do
+    not help, the range of doping is halved. The map's `error` is that rest and twice the largest miss together.
+    All errors are relative, zT's too, but two: S, and zT by it, in shares of |S| or of 1 µV/K, whichever is larger;
+    the bipolar part in shares of κ_e.
     Raises InputError where the tolerance is out of reach, with what was reached and where, and as `evaluate`.
     Source: Trefethen, Approximation Theory and Approximation Practice (SIAM, 2013).
 
@@ -226,9 +229,11 @@ def compress(
     """
     one = candidate if isinstance(candidate, Crystal) else crystal(candidate)
     within(tolerance, "tolerance", FINEST, COARSEST, "(relative)")
+    within(dopings, "dopings", THINNEST, DENSEST, "1/m³")
+    within(sizes, "sizes", SMALLEST, LARGEST, "m")
     for key, (low, high) in (("dopings", dopings), ("sizes", sizes)):
-        if not 0 < low < high < np.inf:
-            raise InputError(f"value {low:g} to {high:g} is not allowed; a finite range that ascends", key=key)
+        if low >= high:
+            raise InputError(f"value {low:g} to {high:g} is not allowed; a range ascends", key=key)
     t = np.asarray(temperature, dtype=float)
     direct = _Direct(one, t.ravel(), sizes, shape)
     ends = pairwise([dopings[0], *(x for x in _corners(one) if dopings[0] < x < dopings[1]), dopings[1]])
@@ -300,14 +305,14 @@ def _pieces(direct: _Direct, low: float, high: float, tolerance: float, halvings
     nodes, sizes = chebpts2(_FEWEST_DOPINGS), direct.sizes_at(chebpts1(_enough_sizes(direct.sizes, tolerance)))
     values = direct(_there(nodes, low, high), sizes)
     while True:
-        coefficients, last_doping, last_size = _fit(values, _SPARED * tolerance)
-        error, between = last_doping + last_size, chebpts1(nodes.size - 1)
+        coefficients, rest_doping, rest_size = _fit(values, _SPARED * tolerance)
+        error, between = rest_doping + rest_size, chebpts1(nodes.size - 1)
         if error <= tolerance:
-            error += 2 * _missed(direct, low, high, between[:: between.size // _CHECKED_DOPINGS], coefficients)
+            error += 2 * _missed(direct, low, high, between, coefficients)
             if error <= tolerance:
                 yield _Piece(high, coefficients, error)
                 return
-        if last_size > tolerance / 4 and sizes.size < _MOST_SIZES:
+        if rest_size > tolerance / 4 and sizes.size < _MOST_SIZES:
             sizes = direct.sizes_at(chebpts1(2 * sizes.size))
             values = direct(_there(nodes, low, high), sizes)
         elif nodes.size < _MOST_DOPINGS:
@@ -332,7 +337,7 @@ def _enough_sizes(sizes: tuple[float, float], tolerance: float) -> int:
 
 
 def _fit(values: Array, spared: float) -> tuple[Array, float, float]:
-    """Coefficients without the last that sum to less than is spared, and the last two, by doping and by size."""
+    """Coefficients without the last that sum to less than is spared, and what is missing by doping and by size."""
     unit = _units(values)
     in_size = _from_roots(values[..., :-1])
     by_size = np.max(np.abs(in_size) / np.min(unit, axis=-1, keepdims=True), axis=(0, 1, 2))
@@ -342,7 +347,18 @@ def _fit(values: Array, spared: float) -> tuple[Array, float, float]:
         return int(np.flatnonzero(np.cumsum(each[::-1])[::-1] > spared)[-1]) + 1
 
     whole = _from_extremes(np.concatenate([in_size[..., : kept(by_size)], values[..., -1:]], axis=-1))
-    return whole[..., : kept(by_doping), :], float(np.sum(by_doping[-2:])), float(np.sum(by_size[-2:]))
+    return whole[..., : kept(by_doping), :], _rest(by_doping), _rest(by_size)
+
+
+def _rest(terms: Array) -> float:
+    """Sum of the terms that would follow if they went on falling as from the middle to the last; pairs hide zeros.
+
+    At a corner terms fall slowly, and the rest is many times the last: without one it is about the last.
+    """
+    pairs = terms[:-1] + terms[1:]
+    middle = pairs.size // 2
+    fall = min((pairs[-1] / pairs[middle]) ** (1 / (pairs.size - 1 - middle)), _SLOWEST)
+    return float(pairs[-1] * fall / (1 - fall))
 
 
 def _from_roots(values: Array) -> Array:
