@@ -212,7 +212,7 @@ def compress(
     finite; coarse material (inf) comes along by itself.
 
     Terms are added until `tolerance` is kept by what would follow the last and by the misses where the series'
-    error turns, at dopings and sizes between the nodes, for which the direct path is asked again; where terms do
+    error turns, at the ends and between the nodes, where the direct path is asked again; where terms do
     not help, the range of doping is halved. The map's `error` is that rest and twice the largest miss together.
     All errors are relative, zT's too, but two: S, and zT by it, in shares of |S| or of 1 µV/K, whichever is larger;
     the bipolar part in shares of κ_e.
@@ -308,7 +308,7 @@ def _pieces(direct: _Direct, low: float, high: float, tolerance: float, halvings
         coefficients, rest_doping, rest_size = _fit(values, _SPARED * tolerance)
         error, between = rest_doping + rest_size, chebpts1(nodes.size - 1)
         if error <= tolerance:
-            error += 2 * _missed(direct, low, high, between, coefficients)
+            error += 2 * _missed(direct, low, high, np.array([-1.0, *between, 1.0]), coefficients)
             if error <= tolerance:
                 yield _Piece(high, coefficients, error)
                 return
