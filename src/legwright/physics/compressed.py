@@ -357,7 +357,8 @@ def _rest(terms: Array) -> float:
     """
     pairs = terms[:-1] + terms[1:]
     middle = pairs.size // 2
-    fall = min((pairs[-1] / pairs[middle]) ** (1 / (pairs.size - 1 - middle)), _SLOWEST)
+    ratio = pairs[-1] / max(pairs[middle], np.finfo(float).tiny)  # all may vanish in a range next to nothing
+    fall = min(ratio ** (1 / (pairs.size - 1 - middle)), _SLOWEST)
     return float(pairs[-1] * fall / (1 - fall))
 
 
