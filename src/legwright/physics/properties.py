@@ -183,9 +183,9 @@ def evaluate_crystal(
     """
     if shape not in SHAPES:
         raise InputError(f"value '{shape}' is not allowed; {nearest(shape, SHAPES)}", key="shape")
-    t = _within(temperature, "temperature", COLDEST, HOTTEST, "K")
-    n = _within(doping, "doping", THINNEST, DENSEST, "1/m³")
-    d = _within(size, "size", SMALLEST, LARGEST, "m", infinite=True)
+    t = within(temperature, "temperature", COLDEST, HOTTEST, "K")
+    n = within(doping, "doping", THINNEST, DENSEST, "1/m³")
+    d = within(size, "size", SMALLEST, LARGEST, "m", infinite=True)
     rank = max(t.ndim, n.ndim, d.ndim)
     t, n, d = (np.reshape(a, (1,) * (rank - a.ndim) + a.shape) for a in (t, n, d))
     parts = _evaluate_blocks(one, t, n, one.acting_size(d, shape), shape, _evaluate_block)
@@ -194,7 +194,14 @@ def evaluate_crystal(
     return Properties(t, n, d, shape, **parts, crystal=one)
 
 
-def _within(value: ArrayLike, key: str, low: float, high: float, unit: str, *, infinite: bool = False) -> Array:
+def within(value: ArrayLike, key: str, low: float, high: float, unit: str, *, infinite: bool = False) -> Array:
+    """`value` (of any shape, in SI) as an array, where all of it lies from `low` to `high` or, if so said, is inf.
+
+    Raises InputError that names `key`, the first value outside and what is allowed. By definition.
+
+    >>> float(within(300.0, "temperature", 2.0, 3000.0, "K"))
+    300.0
+    """
     array = np.asarray(value, dtype=float)
     allowed = ((array >= low) & (array <= high)) | (infinite & np.isposinf(array))
     if not np.all(allowed):
