@@ -147,8 +147,10 @@ def search(
                 if resume and kept is None:
                     _write(resume, key, [value for _, value in told])
         except KeyboardInterrupt:
+            if not any(value > 0 for _, value in told):
+                raise
             complete = False
-    if not told or max(value for _, value in told) <= 0:
+    if max(value for _, value in told) <= 0:
         raise InputError(f"no design of '{subject.name}' that was tried can serve this brief")
     best, before = max(told, key=lambda pair: pair[1])
     polish: dict[str, Any] = {"maxfev": _POLISH_TRIALS, "xatol": 1e-5, "fatol": 1e-9 * before}

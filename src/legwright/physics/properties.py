@@ -119,11 +119,9 @@ class Properties:
         parts = _evaluate_blocks(self.crystal, t, n, acting, self.shape, _hall_block)
         return {name: np.broadcast_to(part, self.size.shape) for name, part in parts.items()}
 
-    def to_frame(self) -> pd.DataFrame:
-        """One row a design point, in trade units that each column names."""
-        import pandas as pd
-
-        columns = {
+    def columns(self) -> dict[str, Array]:
+        """Everything by name and trade unit; one value a design point."""
+        named = {
             "temperature [K]": self.temperature,
             "doping [1/cm^3]": self.doping / PER_CM3,
             "size [nm]": self.size / NM,
@@ -141,7 +139,13 @@ class Properties:
             "power factor [W/m/K^2]": self.power_factor,
             "zT [1]": self.zt,
         }
-        return pd.DataFrame({name: np.ravel(values) for name, values in columns.items()})
+        return {name: np.ravel(values) for name, values in named.items()}
+
+    def to_frame(self) -> pd.DataFrame:
+        """One row a design point, in trade units that each column names."""
+        import pandas as pd
+
+        return pd.DataFrame(self.columns())
 
 
 def evaluate(

@@ -6,28 +6,30 @@ import json
 import math
 from collections.abc import Iterable
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from legwright.base.flags import MEANINGS
 from legwright.base.units import CM2, MICRO, NM, PER_CM3
 from legwright.base.version import VERSION
-from legwright.candidate.family import Family
 from legwright.candidate.hazards import cautions
-from legwright.candidate.library import Candidate
 from legwright.candidate.model import numbers
 from legwright.candidate.sources import bibliography
 from legwright.candidate.supply import cost_per_kg, hazardous_elements, mass_density, supply_concentration
-from legwright.decide.audit import Total, Verdict
-from legwright.decide.brief import Brief
-from legwright.decide.draws import Confidence
-from legwright.decide.fit import Fit, Parameter
-from legwright.decide.installed import Delivered
-from legwright.decide.peak import Peak
-from legwright.decide.rank import Row
-from legwright.decide.search import Found
-from legwright.decide.why import Why
-from legwright.physics.properties import Properties
 from legwright.physics.solubility import atomic_percent
+
+if TYPE_CHECKING:
+    from legwright.candidate.family import Family
+    from legwright.candidate.library import Candidate
+    from legwright.decide.audit import Total, Verdict
+    from legwright.decide.brief import Brief
+    from legwright.decide.draws import Confidence
+    from legwright.decide.fit import Fit, Parameter
+    from legwright.decide.installed import Delivered
+    from legwright.decide.peak import Peak
+    from legwright.decide.rank import Row
+    from legwright.decide.search import Found
+    from legwright.decide.why import Why
+    from legwright.physics.properties import Properties
 
 SCHEMA = 1
 Record = dict[str, Any]
@@ -57,7 +59,9 @@ def rank_record(row: Row, sure: dict[str, Confidence] | None = None) -> Record:
         "flags": list(row.flags),
     }
     if sure is not None:
-        known = sure.get(row.candidate.name, Confidence(0.0, 0.0, 0.0))
+        from legwright.decide.draws import Confidence
+
+        known = sure.get(row.candidate.name) or Confidence(0.0, 0.0, 0.0)
         content |= {"score_low": known.low, "score_high": known.high, "win_share": known.win_share}
     return content
 

@@ -42,8 +42,10 @@ def sheet_verb(
 
     def table() -> None:
         out = tables.console(markdown)
-        parts = made.to_frame().iloc[0].drop(["temperature [K]", "doping [1/cm^3]", "size [nm]"])
-        pairs = [(str(name), tables.figure(value, 4)) for name, value in parts.items()]
+        asked = ("temperature [K]", "doping [1/cm^3]", "size [nm]")
+        pairs = [
+            (name, tables.figure(float(value[0]), 4)) for name, value in made.columns().items() if name not in asked
+        ]
         where = "coarse" if math.isinf(size) else f"{size:g} nm {shape}"
         heading = f"{one.name} ({content['formula']}) at {temperature:g} K, {doping:.3g} cm⁻³, {where}"
         out.print(tables.pairs_table(heading, pairs, markdown))
