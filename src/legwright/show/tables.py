@@ -5,57 +5,11 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping, Sequence
 from typing import Any
 
-from rich import box
 from rich.console import Console
-from rich.table import Table
-from rich.text import Text
+
+from legwright.show.layout import Layout, draw, figure, figure_within, percent, span
 
 Record = Mapping[str, Any]
-#: columns that a table gets off a terminal; Markdown rows must not fold at all
-_OFF_TERMINAL, _UNFOLDED = 150, 100_000
-
-
-def console(markdown: bool) -> Console:
-    """A console on stdout; wide enough for the tables when nothing says how wide the screen is."""
-    if markdown:
-        return Console(highlight=False, width=_UNFOLDED, no_color=True, soft_wrap=True)
-    out = Console(highlight=False)
-    if not out.is_terminal:
-        out = Console(highlight=False, width=max(out.width, _OFF_TERMINAL), no_color=True)
-    return out
-
-
-def draw(title: str, columns: Sequence[str], rows: Iterable[Sequence[str]], markdown: bool) -> Table:
-    """A table whose first column is text on the left and whose others stand to the right."""
-    table = Table(
-        title=None if markdown else title,
-        title_justify="left",
-        box=box.MARKDOWN if markdown else box.SIMPLE_HEAD,
-        title_style="bold",
-    )
-    for index, name in enumerate(columns):
-        table.add_column(name, justify="left" if index == 0 else "right", overflow="fold")
-    for row in rows:
-        table.add_row(*(Text(cell) for cell in row))
-    return table
-
-
-def figure(value: float | None, digits: int = 3) -> str:
-    """A rounded figure without trailing noise; a dash for none.
-
-    >>> figure(0.123456), figure(148.3), figure(None), figure(2.2e20)
-    ('0.123', '148', '–', '2.20e+20')
-    """
-    if value is None:
-        return "–"
-    if value and not 1e-3 <= abs(value) < 1e5:
-        return f"{value:.{digits - 1}e}"
-    return f"{value:.{digits}g}" if abs(value) < 10**digits else f"{value:.0f}"
-
-
-def _span(ends: Sequence[float] | None) -> str:
-    return "–" if ends is None else f"{figure(ends[0])} … {figure(ends[1])}"
-
 
 SCORE_TITLES = {
     "efficiency": "efficiency",
@@ -66,62 +20,55 @@ SCORE_TITLES = {
 }
 
 
-def rank_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
-    """The ranking; flags are numbered and explained under the table. With draws, how sure each score is."""
-    numbers = flag_numbers(rows)
+def rank_table(title: str, rows: Sequence[Record], markdown: bool) -> Layout:
+    """The ranking, its flags as words that are explained under it. With draws, how sure each score is."""
     drawn = "win_share" in rows[0]
     columns = (
         "candidate",
-        "formula",
-        "carrier",
+        SCORE_TITLES[rows[0]["score_name"]],
+        *(("5 to 95 %", "wins") if drawn else ()),
         "size [nm]",
         "window [nm]",
         "doping [cm⁻³]",
-        SCORE_TITLES[rows[0]["score_name"]],
-        *(("5 to 95 %", "wins") if drawn else ()),
+        "gain over coarse",
         "zT mean",
         "zT peak",
-        "gain over coarse",
-        "notes",
+        "formula",
+        "flags",
     )
     cells = (
         (
-            f"{row['rank']}. {row['candidate']}",
-            row["formula"],
-            row["carrier"],
+            f"{row['rank']:>2}. {row['candidate']}",
+            *(_sureness(row) if drawn else (figure(row["score"]),)),
             figure(row["size_nm"]),
-            _span(row["window_nm"]),
+            span(row["window_nm"]),
             figure(row["doping_per_cm3"]),
-            figure(row["score"]),
-            *(_sureness(row) if drawn else ()),
+            "–" if row["gain_over_bulk"] is None else f"×{row['gain_over_bulk']:.2f}",
             figure(row["zt_mean"]),
             figure(row["zt_peak"]),
-            "–" if row["gain_over_bulk"] is None else f"×{row['gain_over_bulk']:.2f}",
-            " ".join(str(numbers[flag]) for flag in row["flags"]),
+            row["formula"],
+            " ".join(row["flags"]),
         )
         for row in rows
     )
     return draw(title, columns, cells, markdown)
 
 
-def _sureness(row: Record) -> tuple[str, str]:
+def _sureness(row: Record) -> tuple[str, str, str]:
     if not row["score"]:
-        return "–", "–"
-    return f"{figure(row['score_low'], 2)} … {figure(row['score_high'], 2)}", f"{100 * row['win_share']:.0f} %"
+        return figure(row["score"]), "–", "–"
+    low, high = row["score_low"], row["score_high"]
+    within = (figure_within(value, low, high) for value in (row["score"], low, high))
+    score, *ends = within
+    return score, " … ".join(ends), percent(row["win_share"])
 
 
-def flag_numbers(rows: Iterable[Record]) -> dict[str, int]:
-    """Footnote numbers of the flags, in order of first use."""
-    used = dict.fromkeys(flag for row in rows for flag in row["flags"])
-    return {flag: number for number, flag in enumerate(used, start=1)}
-
-
-def pairs_table(title: str, pairs: Iterable[tuple[str, str]], markdown: bool) -> Table:
+def pairs_table(title: str, pairs: Iterable[tuple[str, str]], markdown: bool) -> Layout:
     """Two columns: what, and how much."""
     return draw(title, ("property", "value"), pairs, markdown)
 
 
-def why_tables(found: Record, markdown: bool) -> list[Table]:
+def why_tables(found: Record, markdown: bool) -> list[Layout]:
     """Shares of the two resistances, and the flow by free path, coarse."""
     shares = [
         draw(
@@ -154,7 +101,7 @@ def why_tables(found: Record, markdown: bool) -> list[Table]:
 _BASES = ("measured", "published model", "calibrated on bulk", "common practice", "from memory")
 
 
-def library_table(rows: Sequence[Record], markdown: bool) -> Table:
+def library_table(rows: Sequence[Record], markdown: bool) -> Layout:
     """One line a candidate, with the share of its numbers by basis."""
     columns = ("candidate", "formula", "up to [K]", "doping [cm⁻³]", "numbers", *_BASES, "direction")
     cells = (
@@ -162,7 +109,7 @@ def library_table(rows: Sequence[Record], markdown: bool) -> Table:
             row["candidate"],
             row["formula"],
             figure(row["highest_temperature_K"], 4),
-            _span((row["doping_min_per_cm3"], row["doping_max_per_cm3"])),
+            span((row["doping_min_per_cm3"], row["doping_max_per_cm3"])),
             str(row["numbers"]),
             *(f"{100 * row['numbers_by_basis'].get(basis, 0) / row['numbers']:.0f} %" for basis in _BASES),
             row["direction"],
@@ -172,7 +119,7 @@ def library_table(rows: Sequence[Record], markdown: bool) -> Table:
     return draw("Library (shares of the numbers by where they came from)", columns, cells, markdown)
 
 
-def make_up_table(rows: Sequence[Record], markdown: bool) -> Table:
+def make_up_table(rows: Sequence[Record], markdown: bool) -> Layout:
     """One line a candidate: what it weighs, costs and holds."""
     columns = (
         "candidate",
@@ -188,7 +135,7 @@ def make_up_table(rows: Sequence[Record], markdown: bool) -> Table:
             figure(row["density_g_per_cm3"]),
             figure(row["cost_USD_per_kg"], 2),
             figure(row["supply_concentration"], 2),
-            f"{row['dopant']} {_span(row['dopant_atomic_percent'])}",
+            f"{row['dopant']} {span(row['dopant_atomic_percent'])}",
             " ".join(row["hazardous_elements"]) or "none listed",
         )
         for row in rows
@@ -196,7 +143,7 @@ def make_up_table(rows: Sequence[Record], markdown: bool) -> Table:
     return draw("Make-up (element prices of 2013; supply: Herfindahl–Hirschman index)", columns, cells, markdown)
 
 
-def families_table(rows: Sequence[Record], markdown: bool) -> Table:
+def families_table(rows: Sequence[Record], markdown: bool) -> Layout:
     """One line an alloy line, and how its members are named."""
     columns = ("family", "a member", "share of", "up to", "through")
     cells = (
@@ -212,7 +159,7 @@ def families_table(rows: Sequence[Record], markdown: bool) -> Table:
     return draw("Alloy lines", columns, cells, markdown)
 
 
-def search_table(found: Record, markdown: bool) -> Table:
+def search_table(found: Record, markdown: bool) -> Layout:
     """The best design, and what certifies it."""
     pairs = [
         ("best", f"{found['candidate']} ({found['formula']})"),
@@ -248,7 +195,7 @@ _LEG_LABELS = {
 }
 
 
-def leg_table(found: Record, markdown: bool) -> Table:
+def leg_table(found: Record, markdown: bool) -> Layout:
     """What a leg delivers."""
     size = "coarse" if found["size_nm"] is None else f"{figure(found['size_nm'])} nm"
     title = (
@@ -258,7 +205,7 @@ def leg_table(found: Record, markdown: bool) -> Table:
     return pairs_table(title, pairs, markdown)
 
 
-def fit_tables(found: Record, markdown: bool) -> list[Table]:
+def fit_tables(found: Record, markdown: bool) -> list[Layout]:
     """Parameters with their intervals, and how well each quantity is met."""
     parameters = draw(
         f"Fitted to {found['measurements']}, starting from {found['start']} (factors on the start's; 90 %)",
@@ -267,7 +214,7 @@ def fit_tables(found: Record, markdown: bool) -> list[Table]:
             (
                 row["parameter"],
                 figure(row["value"]),
-                _span((row["low"], row["high"])),
+                span((row["low"], row["high"])),
                 row["unit"],
                 "yes" if row["determined"] else "no",
             )
@@ -298,7 +245,7 @@ AUDIT_WORDS = (
 )
 
 
-def totals_table(rows: Sequence[Record], markdown: bool) -> Table:
+def totals_table(rows: Sequence[Record], markdown: bool) -> Layout:
     """How far off, and how often inside."""
     columns = (
         "material",
@@ -321,22 +268,18 @@ def totals_table(rows: Sequence[Record], markdown: bool) -> Table:
             row["quantity"].replace("_", " "),
             str(row["values"]),
             str(row["papers"]),
-            _percent(row["median_error"]),
-            _percent(row["median_half_width"]),
-            _percent(row["coverage"]),
-            " … ".join(map(_percent, row["coverage_95"])),
-            _percent(row["coverage_by_paper"]),
+            percent(row["median_error"]),
+            percent(row["median_half_width"]),
+            percent(row["coverage"]),
+            " … ".join(map(percent, row["coverage_95"])),
+            percent(row["coverage_by_paper"]),
         )
         for row in rows
     )
     return draw("Predictions against published samples (90 % intervals)", columns, cells, markdown)
 
 
-def _percent(share: float) -> str:
-    return f"{100 * share:.0f} %"
-
-
-def misses_table(rows: Sequence[Record], markdown: bool) -> Table:
+def misses_table(rows: Sequence[Record], markdown: bool) -> Layout:
     """Every value outside its interval, by name, but for those that fixed a candidate."""
     columns = (
         "material",
@@ -358,7 +301,7 @@ def misses_table(rows: Sequence[Record], markdown: bool) -> Table:
             figure(row["temperature_K"], 4),
             "bulk" if row["size_nm"] is None else figure(row["size_nm"]),
             f"{figure(row['measured'])} {row['unit']}",
-            _span((row["low"], row["high"])),
+            span((row["low"], row["high"])),
             row["likely_cause"],
         )
         for row in rows
@@ -367,7 +310,7 @@ def misses_table(rows: Sequence[Record], markdown: bool) -> Table:
     return draw("Outside their interval", columns, cells, markdown)
 
 
-def numbers_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
+def numbers_table(title: str, rows: Sequence[Record], markdown: bool) -> Layout:
     """Every number of a candidate."""
     columns = ("key", "value", "unit", "spread (1 σ)", "basis", "source", "note")
     cells = (
@@ -385,12 +328,10 @@ def numbers_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
     return draw(title, columns, cells, markdown)
 
 
-def footnotes(
-    out: Console, numbers: Mapping[str, int], meanings: Mapping[str, str], cautions: Iterable[str]
-) -> None:
-    """Meaning of each numbered flag, then the cautions, once."""
-    for flag, number in numbers.items():
-        out.print(f"{number}  {flag}: {meanings[flag]}", markup=False)
+def footnotes(out: Console, meanings: Mapping[str, str], cautions: Iterable[str]) -> None:
+    """Meaning of each flag used, then the cautions, once."""
+    for flag, meaning in meanings.items():
+        out.print(f"{flag}: {meaning}", markup=False)
     reminders = list(cautions)
     if reminders:
         out.print()

@@ -18,7 +18,7 @@ if TYPE_CHECKING:
 def audit_verb(as_json: bool, csv_file: Path | None, markdown: bool) -> None:
     """The library against published samples: how far off, how often inside its own intervals."""
     from legwright.decide.audit import audit, totals
-    from legwright.show import records, tables
+    from legwright.show import layout, records, tables
 
     found = audit()
     rows = [records.verdict_record(one) for one in found.verdicts]
@@ -26,7 +26,7 @@ def audit_verb(as_json: bool, csv_file: Path | None, markdown: bool) -> None:
     content: Record = {"samples": rows, "totals": sums, "without_candidate": found.without_candidate}
 
     def table() -> None:
-        out = tables.console(markdown)
+        out = layout.console(markdown)
         out.print(tables.totals_table(sums, markdown))
         out.print(tables.misses_table(rows, markdown))
         out.print(tables.AUDIT_WORDS, markup=False)

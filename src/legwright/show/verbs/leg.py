@@ -30,7 +30,7 @@ def leg_verb(
     from legwright.candidate.library import load_candidate
     from legwright.decide.brief import load_brief
     from legwright.decide.installed import deliver
-    from legwright.show import records, tables
+    from legwright.show import layout, records, tables
 
     one, job = load_candidate(candidate), load_brief(brief)
     found = deliver(one, job, None if doping is None else doping * PER_CM3, None if size is None else size * NM)
@@ -38,9 +38,9 @@ def leg_verb(
     under = records.notes(found.flags, [one])
 
     def table() -> None:
-        out = tables.console(markdown)
+        out = layout.console(markdown)
         out.print(tables.leg_table(content, markdown))
-        tables.footnotes(out, tables.flag_numbers([content]), under["flag_meanings"], under["cautions"])
+        tables.footnotes(out, under["flag_meanings"], under["cautions"])
 
     publish("leg", {**content, **under}, [content], as_json, csv_file, table)
     if found.running is None:

@@ -31,7 +31,7 @@ def rank_verb(
     from legwright.decide.brief import load_brief
     from legwright.decide.draws import confidences
     from legwright.decide.rank import rank
-    from legwright.show import records, tables
+    from legwright.show import layout, records, tables
 
     job = load_brief(brief)
     found = rank(job, brief, workers)
@@ -41,11 +41,11 @@ def rank_verb(
     content = {"title": job.title, "rows": rows, **under}
 
     def table() -> None:
-        out = tables.console(markdown)
+        out = layout.console(markdown)
         duty = job.duty
         heading = f"{job.title}: {duty.kind} leg, {duty.cold_K:g} to {duty.hot_K:g} K, {job.size.shape} size"
         out.print(tables.rank_table(heading, rows, markdown))
-        tables.footnotes(out, tables.flag_numbers(rows), under["flag_meanings"], under["cautions"])
+        tables.footnotes(out, under["flag_meanings"], under["cautions"])
 
     publish("rank", content, rows, as_json, csv_file, table)
     if not any(row["score"] for row in rows):
