@@ -13,7 +13,7 @@ from legwright.base.reading import Table, read_as
 from legwright.base.units import CM2, MICRO, NM, PER_CM3
 from legwright.candidate.library import Candidate, library_names, load_candidate
 from legwright.leg.duty import GOALS, Duty, Goal, Kind
-from legwright.leg.installed import Setting
+from legwright.leg.duty import Setting
 from legwright.physics.properties import COLDEST, DENSEST, HOTTEST, LARGEST, SMALLEST, THINNEST, Shape
 
 Temperature = Annotated[float, Field(ge=COLDEST, le=HOTTEST)]

@@ -18,7 +18,7 @@ from legwright.decide.brief import Brief, candidates_of
 from legwright.decide.score import leg_material, properties_over_span, score
 from legwright.decide.warnings import point_flags
 from legwright.leg.duty import SCORE_NAMES, Duty, best_score
-from legwright.leg.installed import Setting
+from legwright.leg.duty import Setting
 from legwright.physics.properties import Properties
 
 Array = NDArray[np.float64]

@@ -38,6 +38,11 @@ class LegMaterial:
         return cls(*(CubicSpline(temperature, values) for values in (seebeck, resistivity, thermal_conductivity)))
 
     @property
+    def shape(self) -> tuple[int, ...]:
+        """Shape of the legs."""
+        return self.seebeck.c.shape[2:]
+
+    @property
     def lowest(self) -> float:
         """Lowest temperature of the nodes, K."""
         return float(self.seebeck.x[0])
