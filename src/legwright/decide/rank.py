@@ -18,7 +18,6 @@ from legwright.decide.brief import Brief, candidates_of
 from legwright.decide.score import leg_material, properties_over_span, score
 from legwright.decide.warnings import point_flags
 from legwright.leg.duty import SCORE_NAMES, Duty, best_score
-from legwright.leg.duty import Setting
 from legwright.physics.properties import Properties
 
 Array = NDArray[np.float64]
@@ -251,8 +250,6 @@ def _design_flags(
     flags = point_flags(candidate, made, brief.size.shape)
     if not sizes[0] * 1.001 < size < sizes[1] * 0.999:
         flags.append("size-at-limit")
-    if brief.setting != Setting():
-        flags.append("ideal-contacts")
     if not dopings[0] * 1.001 < doping < dopings[1] * 0.999:
         flags.append("doping-at-limit")
     return flags

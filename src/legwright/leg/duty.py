@@ -10,8 +10,9 @@ from numpy.typing import NDArray
 
 from legwright.leg.balance import (
     LegMaterial,
-    cool,
     cool_past_peak,
+    cop_by_w,
+    efficiency_by_w,
     generate,
     largest_difference,
     zoom,
@@ -107,7 +108,8 @@ def best_score(material: LegMaterial, duty: Duty, rounds: int = 4) -> Array:
     Efficiency 1 − Φ_c/Φ_h, COP Φ_c/(Φ_h − Φ_c), power j (Φ_h − Φ_c) or heat lifted j Φ_c with Φ = S T + w, or ΔT.
     Efficiency and COP are fractions, areal figures W/cm² of leg, ΔT in K; the shape is that of the legs. `rounds`
     sets how closely the best current is found: each divides the bracket by three. A setting that is not ideal, or a
-    free length, goes through `best_running`, whose currents are closer than any rounds. Raises nothing of its own.
+    free length, goes through `best_running`, whose currents are closer than any rounds, and
+    whose AssertionError is a fault of the program.
     Sources: Ioffe, Semiconductor Thermoelements and Thermoelectric Cooling (1957); Snyder & Ursell, Physical Review
     Letters 91, 148301 (2003).
 
@@ -126,22 +128,20 @@ def best_score(material: LegMaterial, duty: Duty, rounds: int = 4) -> Array:
     pull = np.maximum(material.seebeck(duty.hot) * duty.hot, 1e-12)
     root = np.sqrt(1 + _figure_of_merit(material, duty) * 0.5 * (duty.hot + duty.cold))
     if duty.kind == "cooler":
-        _, score = zoom(
-            lambda w: cool(material, duty.hot, duty.cold, w).cop, np.zeros_like(pull), pull, 7, rounds + 1
-        )
-        return _serving(score)
+        cop = cop_by_w(material, duty.hot, duty.cold)
+        return _serving(zoom(cop, np.zeros_like(pull), pull, 7, rounds + 1)[1])
+    expected = np.log(pull / np.maximum(root - 1, 1e-9))
+    if duty.maximise == "efficiency":
+        efficiency = efficiency_by_w(material, duty.hot, duty.cold)
+        made = zoom(lambda log_w: efficiency(np.exp(log_w)), expected - 2.5, expected + 2.5, 7, rounds + 1)
+        return _serving(made[1])
 
-    def generated(log_w: Array) -> Array:
+    def power(log_w: Array) -> Array:
         made = generate(material, duty.hot, duty.cold, np.exp(log_w))
-        if duty.maximise == "efficiency":
-            return made.efficiency
         return np.where(np.isfinite(made.efficiency), made.power_times_length, -np.inf)
 
-    expected = np.log(pull / np.maximum(root - 1, 1e-9))
-    _, score = zoom(generated, expected - 2.5, expected + 2.5, 7, rounds + 1)
-    if duty.maximise == "power":
-        score = score / duty.length / _PER_CM2
-    return _serving(score)
+    _, score = zoom(power, expected - 2.5, expected + 2.5, 7, rounds + 1)
+    return _serving(score / duty.length / _PER_CM2)
 
 
 def score_of(running: Running, duty: Duty) -> Array:

@@ -40,11 +40,12 @@ _CLOSES = 1e-9
 
 @dataclass(frozen=True)
 class Running:
-    """Operating points, areal, arrays of the legs' shape; figures mean nothing where the leg does not `serve`.
+    """Operating points, areal, arrays of the legs' shape.
 
-    heat_hot: taken from the hot reservoir by a generator, given to it by a cooler; heat_cold: given to the cold
-    one, or lifted from it; side_heat lost through the sides; power made (generator) or spent (cooler), all W/m²;
-    current (A/m²); length (m); hot_end and cold_end: temperatures of the leg's ends (K).
+    serves: whether the leg does; its other figures are nan where it does not. heat_hot: taken from the hot
+    reservoir by a generator, given to it by a cooler; heat_cold: given to the cold one, or lifted from it;
+    side_heat: lost through the sides; power: made (generator) or spent (cooler), all W/m²; current (A/m²); length
+    (m); hot_end and cold_end: temperatures of the leg's ends (K).
     """
 
     serves: NDArray[np.bool_]
@@ -68,9 +69,7 @@ class Running:
         return self.heat_cold / self.power
 
 
-def running_at(
-    material: LegMaterial, duty: Duty, current: ArrayLike, points: int = ANSWERING
-) -> Running:
+def running_at(material: LegMaterial, duty: Duty, current: ArrayLike, points: int = ANSWERING) -> Running:
     """Operating points at a current density (A/m², > 0), which broadcasts with the legs.
 
     q_h = j Φ_h ∓ j² ρ_c and q_c = j Φ_c ± j² ρ_c with the upper signs for a generator, T_end,h = T_h ∓ q_h R_h,
@@ -107,10 +106,11 @@ def best_running(material: LegMaterial, duty: Duty) -> Running:
     """The operating points that the duty's goal wants, for each leg; where there is none it does not serve.
 
     The current j at which the goal (P/q_h, P, q_c/P, q_c, or T_h − T_c at q_c = 0) has no slope; with
-    `duty.lengths` also the length where it has none, or that end of the range towards which the goal rises. Currents that would carry part of the
-    leg beyond the temperatures of the material's nodes are not considered.
+    `duty.lengths` also the length where it has none, or that end of the range towards which the goal rises.
+    Currents that would carry part of the leg beyond the temperatures of the material's nodes are not considered.
+    SI; arrays have the shape of the legs.
     AssertionError if energy did not close or Carnot was beaten: a fault of the program, never of the input.
-    Sources: as `running_at`.
+    Source: Ioffe, Semiconductor Thermoelements and Thermoelectric Cooling (1957).
 
     >>> from legwright.leg.duty import Duty
     >>> t = np.linspace(290.0, 610.0, 9)
@@ -144,13 +144,17 @@ def _sense(duty: Duty) -> float:
 
 
 def _ends(duty: Duty, length: Array) -> Ends:
-    one = np.ones_like(length)
-    ambient = _ambient(duty)
+    one, setting = np.ones_like(length), duty.setting
     return Ends(
-        duty.hot * one, duty.cold * one, duty.setting.hot_resistance / length, duty.setting.cold_resistance / length,
-        duty.setting.contact / length, duty.setting.side_loss * length**2, ambient * one,
-        np.full(length.size, duty.maximise == "delta_t"),
-    )  # fmt: skip
+        hot=duty.hot * one,
+        cold=duty.cold * one,
+        hot_resistance=setting.hot_resistance / length,
+        cold_resistance=setting.cold_resistance / length,
+        contact=setting.contact / length,
+        side=setting.side_loss * length**2,
+        ambient=_ambient(duty) * one,
+        idle=np.full(length.size, duty.maximise == "delta_t"),
+    )
 
 
 def _ambient(duty: Duty) -> float:
@@ -177,7 +181,7 @@ def _slope(duty: Duty, made: Profiles, by: int) -> Array:
         return np.asarray(lifted[0] * power[by] - lifted[by] * power[0])
     if duty.maximise == "heat_lifted":
         return np.asarray(lifted[by] - areal * lifted[0])
-    return -made.cold_end[by]
+    return np.asarray(-made.cold_end[by])
 
 
 def _best(legs: Legs, which: Indices, duty: Duty, length: Array) -> Running:
@@ -229,7 +233,9 @@ def _expected(legs: Legs, which: Indices, duty: Duty, ends: Ends) -> Array:
     middle = 0.5 * (duty.hot + duty.cold)
     s, rho, kappa = (each[:, 0] for each in legs.look_up(which, np.full((which.size, 1), middle))[:3])
     span = np.linspace(duty.cold, duty.hot, 9)
-    s = np.maximum(np.abs(s), np.mean(np.abs(legs.look_up(which, np.broadcast_to(span, (which.size, 9)))[0]), axis=1))
+    s = np.maximum(
+        np.abs(s), np.mean(np.abs(legs.look_up(which, np.broadcast_to(span, (which.size, 9)))[0]), axis=1)
+    )
     rho = rho + 2 * ends.contact
     difference = (duty.hot - duty.cold) / (1 + kappa * (ends.hot_resistance + ends.cold_resistance))
     root = np.sqrt(1 + s**2 / (rho * kappa) * middle)
@@ -238,13 +244,13 @@ def _expected(legs: Legs, which: Indices, duty: Duty, ends: Ends) -> Array:
     if duty.maximise == "power":
         return np.asarray(s * difference / (2 * rho))
     if duty.maximise == "cop":
-        return np.asarray(s * difference / (rho * (root - 1)))
-    return np.asarray(s * duty.cold / (rho * (1 + s**2 / rho * (ends.hot_resistance + ends.cold_resistance) * middle)))
+        return np.asarray(s * difference / (rho * np.maximum(root - 1, 1e-9)))
+    return np.asarray(
+        s * duty.cold / (rho * (1 + s**2 / rho * (ends.hot_resistance + ends.cold_resistance) * middle))
+    )
 
 
-def _best_length(
-    legs: Legs, which: Indices, duty: Duty, length: tuple[float, float]
-) -> Array:
+def _best_length(legs: Legs, which: Indices, duty: Duty, length: tuple[float, float]) -> Array:
     """Where the goal at the best current has no slope over ln L, or the end of the range towards which it rises."""
     low, high = np.log(length)
 

@@ -134,7 +134,7 @@ def _to_degrees(points: int) -> Array:
 def profiles(
     legs: Legs, which: Indices, ends: Ends, current: Array, start: Array | None = None, points: int = POINTS
 ) -> Profiles:
-    """Steady states of the legs `which` (their places in `legs`) at J = j L (A/m), negative in a cooler.
+    """Steady states of the legs `which` (places in `legs`, shape (n,)) at J = j L (A/m), negative in a cooler.
 
     ends and current: one value for each of `which`; start: `state` to begin from, else a straight line between
     the ends of a leg without current; `points`: Gauss points along the leg. Each leg stops when its own step is
@@ -169,7 +169,19 @@ def profiles(
 
 
 def straight(legs: Legs, which: Indices, ends: Ends, points: int) -> Array:
-    """First guesses at a state: a straight line through a leg without current; arguments as `profiles`."""
+    """First guesses at `state`: a straight line of temperature through a leg without current.
+
+    κ (T_h − T_c) reaches from end to end, in series with both exchangers. Arguments, units and shapes as
+    `profiles`. Raises nothing of its own. By definition.
+
+    >>> t = np.linspace(280.0, 620.0, 9)
+    >>> same = np.ones_like(t)
+    >>> legs = Legs(LegMaterial.from_nodes(t, 2e-4 * same, 1e-5 * same, 1.5 * same))
+    >>> one, none = np.ones(1), np.zeros(1)
+    >>> ends = Ends(600 * one, 300 * one, one / 3, one / 3, none, none, none, none > 0)
+    >>> straight(legs, np.zeros(1, dtype=int), ends, 2).round(9).tolist()  # slope and slope, hot end, heat
+    [[-150.0, -150.0, 525.0, 225.0]]
+    """
     middle = 0.5 * (ends.hot + ends.cold)
     kappa = legs.look_up(which, middle[:, None])[2][:, 0]
     beyond = ends.hot_resistance + np.where(ends.idle, 0.0, ends.cold_resistance)
@@ -182,8 +194,16 @@ def straight(legs: Legs, which: Indices, ends: Ends, points: int) -> Array:
 
 
 def finer(state: Array, points: int) -> Array:
-    """The same states with another number of Gauss points."""
-    return np.column_stack([np.einsum("ik,mk->mi", _between(state.shape[1] - 2, points), state[:, :-2]), state[:, -2:]])
+    """The same `state`, rows as in `Profiles` (K, W/m; shape (n, points + 2)), with other Gauss `points`.
+
+    The polynomial through the old points, at the new ones. Raises nothing of its own. By definition.
+
+    >>> finer(np.array([[-1.0, 1.0, 500.0, 3.0]]), 3).round(6).tolist()
+    [[-1.341641, 0.0, 1.341641, 500.0, 3.0]]
+    """
+    return np.column_stack(
+        [np.einsum("ik,mk->mi", _between(state.shape[1] - 2, points), state[:, :-2]), state[:, -2:]]
+    )
 
 
 @cache
@@ -269,7 +289,10 @@ class _Balance:
         hot_end, q_hot, t_cold, sideways, electric = ([value] for value in (
             self.t_hot, self.q_hot, self.t_cold, self._whole(self.sides), self._whole(self.electric)
         ))  # fmt: skip
-        own = ((by_current, 2 * self.j * self.rho + self.s * self.p, zero), (by_length, zero[:, None], 2 * sideways[0]))
+        own = (
+            (by_current, 2 * self.j * self.rho + self.s * self.p, zero),
+            (by_length, zero[:, None], 2 * sideways[0]),
+        )
         for change, electric_own, sideways_own in own:
             p, t_hot, q = change[:, :-2], change[:, -2], change[:, -1]
             t = t_hot[:, None] + self._upto(p)
