@@ -10,7 +10,7 @@ Thermoelectric Cooling (1957).
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, fields, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -24,14 +24,17 @@ if TYPE_CHECKING:
 
 Array = NDArray[np.float64]
 
-#: Gauss points while the best current is sought, where the goal is flat, and of the answer
-_SEEKING, ANSWERING = 8, 20
+#: Gauss points while the best current is sought, where the goal is flat; then of the answer, more until it changes
+#: by no more than this share: what is left is some ten times less
+_SEEKING, _ANSWERING, _SETTLED = 8, (16, 32, 64), 3e-7
 #: the best current and length are found to this share, and so the flat goal to its square
 _FOUND, _TRIALS = 1e-6, 60
 #: the first step of a search, and the longest, as shares of where it stands
 _FIRST_STEP, _LONGEST = 0.15, 0.6
 #: legs of one block: their matrices stay in the fast memory
 _BLOCK = 512
+#: power is looked at this closely, as a share of the heat
+_SMALL_POWER = 1e-3
 #: rounding may carry a leg's end this far past the last node, K
 _GRACE = 1e-6
 #: what the energy may miss, and by what Carnot may seem beaten, as a share of the heat: rounding
@@ -69,12 +72,12 @@ class Running:
         return self.heat_cold / self.power
 
 
-def running_at(material: LegMaterial, duty: Duty, current: ArrayLike, points: int = ANSWERING) -> Running:
+def running_at(material: LegMaterial, duty: Duty, current: ArrayLike) -> Running:
     """Operating points at a current density (A/m², > 0), which broadcasts with the legs.
 
     q_h = j Φ_h ∓ j² ρ_c and q_c = j Φ_c ± j² ρ_c with the upper signs for a generator, T_end,h = T_h ∓ q_h R_h,
-    T_end,c = T_c ± q_c R_c; P = ±(q_h − q_c − sides). `points`: Gauss points along each leg. Legs whose balance has
-    no steady state, or one beyond the temperatures of the material's nodes, do not serve.
+    T_end,c = T_c ± q_c R_c; P = ±(q_h − q_c − sides). Legs whose balance has no steady state, or one beyond the
+    temperatures of the material's nodes, do not serve.
     AssertionError if energy did not close or Carnot was beaten: a fault of the program, never of the input.
     Source: Rowe & Min, Journal of Power Sources 73, 193 (1998).
 
@@ -95,9 +98,9 @@ def running_at(material: LegMaterial, duty: Duty, current: ArrayLike, points: in
 
     def run(part: slice) -> Running:
         own, span = which[part], length[part]
-        sense = _sense(duty)
-        made = profiles(legs, own, _ends(duty, span), sense * density[part] * span, points=points)
-        return _told(made, _within(legs, made), duty, sense * density[part] * span, span)
+        flow = _sense(duty) * density[part] * span
+        begin = straight(legs, own, _ends(duty, span), _SEEKING)
+        return _settled(legs, own, duty, span, flow, begin, _GRACE)
 
     return _in_blocks(run, which.size, shape)
 
@@ -163,9 +166,9 @@ def _ambient(duty: Duty) -> float:
     return duty.cold if duty.kind == "generator" else duty.hot
 
 
-def _within(legs: Legs, made: Profiles) -> NDArray[np.bool_]:
-    """Which profiles are steady states between the nodes of the material."""
-    inside = (made.lowest > legs.nodes[0] - _GRACE) & (made.highest < legs.nodes[-1] + _GRACE)
+def _within(legs: Legs, made: Profiles, grace: float = _GRACE) -> NDArray[np.bool_]:
+    """Which profiles are steady states between the nodes of the material, or that near to them (K)."""
+    inside = (made.lowest > legs.nodes[0] - grace) & (made.highest < legs.nodes[-1] + grace)
     return np.asarray(made.found & inside)
 
 
@@ -187,41 +190,64 @@ def _slope(duty: Duty, made: Profiles, by: int) -> Array:
 def _best(legs: Legs, which: Indices, duty: Duty, length: Array) -> Running:
     """Best current of each leg at its length: safeguarded secant steps on the goal's slope."""
     current, state = _best_current(legs, which, duty, length)
+    found = _settled(legs, which, duty, length, current, state, np.inf)
+    serves = found.serves & (current != 0) & _useful(duty, found)
+    figures = {name: np.where(serves, values, np.nan) for name, values in vars(found).items() if name != "serves"}
+    return replace(found, **figures, serves=serves)
+
+
+def _settled(
+    legs: Legs, which: Indices, duty: Duty, length: Array, current: Array, state: Array, grace: float
+) -> Running:
+    """Operating points at J from rough profiles on, with as many Gauss points as each leg needs.
+
+    They do not serve where the leg passes the material's last nodes by more than `grace` (K).
+    """
     ends = _ends(duty, length)
-    made = profiles(legs, which, ends, current, finer(state, ANSWERING), ANSWERING)
-    return _told(made, made.found & (current != 0) & _useful(duty, made), duty, current, length)
+    made = profiles(legs, which, ends, current, state)
+    answer = _told(legs, made, duty, current, length, grace)
+    left = np.arange(which.size)
+    for points in _ANSWERING:
+        before, begin = _heats(made), finer(made.state, points)
+        made = profiles(legs, which[left], ends.of(left), current[left], begin)
+        for name, values in vars(_told(legs, made, duty, current[left], length[left], grace)).items():
+            getattr(answer, name)[left] = values
+        now = _heats(made)
+        heat = np.maximum(np.abs(now[0]), np.abs(now[1]))
+        scale = np.stack([heat, heat, np.maximum(np.abs(now[2]), _SMALL_POWER * heat)])
+        more = made.found & np.any(np.abs(now - before) > _SETTLED * scale, axis=0)
+        if not np.any(more):
+            break
+        left, made = left[more], made.of(more)
+    return answer
 
 
-def _useful(duty: Duty, made: Profiles) -> NDArray[np.bool_]:
+def _heats(made: Profiles) -> Array:
+    return np.stack([made.from_hot[0], made.to_cold[0], made.power[0]])
+
+
+def _useful(duty: Duty, found: Running) -> NDArray[np.bool_]:
     """Whether the goal is reached at all: power made, heat lifted, a difference held."""
-    if duty.kind == "generator":
-        return np.asarray((made.power[0] > 0) & (made.from_hot[0] > 0))
     if duty.maximise == "delta_t":
-        return np.asarray(made.cold_end[0] < duty.hot)
-    return np.asarray((made.to_cold[0] < 0) & (made.power[0] < 0))
+        return np.asarray(found.cold_end < duty.hot)
+    heat = found.heat_hot if duty.kind == "generator" else found.heat_cold
+    return np.asarray((found.power > 0) & (heat > 0))
 
 
 def _best_current(legs: Legs, which: Indices, duty: Duty, length: Array) -> tuple[Array, Array]:
     """J of the best current and the profile there, sought with few points; J = 0 where no current serves."""
     ends = _ends(duty, length)
     expected = _sense(duty) * _expected(legs, which, duty, ends)
-    state = np.zeros((which.size, _SEEKING + 2))
+    state = straight(legs, which, ends, _SEEKING)
     by_current, at = np.zeros_like(state), np.zeros(which.size)
-    new = np.ones(which.size, dtype=bool)
 
     def slope(some: Indices, share: Array) -> tuple[NDArray[np.bool_], Array]:
         current = share * expected[some]
-        near, own = ends.of(some), which[some]
         start = state[some] + (current - at[some])[:, None] * by_current[some]
-        fresh = new[some]
-        if np.any(fresh):
-            start[fresh] = straight(legs, own[fresh], near.of(fresh), _SEEKING)
-        made = profiles(legs, own, near, current, start)
+        made = profiles(legs, which[some], ends.of(some), current, start)
         good = _within(legs, made)
         kept = some[good]
-        state[kept], by_current[kept], at[kept], new[kept] = (
-            made.state[good], made.by_current[good], current[good], False
-        )  # fmt: skip
+        state[kept], by_current[kept], at[kept] = made.state[good], made.by_current[good], current[good]
         return good, expected[some] * _slope(duty, made, 1)
 
     share = _where_flat(slope, np.ones(which.size), np.zeros(which.size), np.full(which.size, np.inf))
@@ -302,8 +328,9 @@ def _where_flat(slope: _SlopeAt, guess: Array, low: Array, high: Array) -> Array
     return best
 
 
-def _told(made: Profiles, good: NDArray[np.bool_], duty: Duty, current: Array, length: Array) -> Running:
+def _told(legs: Legs, made: Profiles, duty: Duty, current: Array, length: Array, grace: float) -> Running:
     """Operating points per area, nan where there is none; energy and Carnot are held at run time."""
+    good = _within(legs, made, grace)
     _hold(made, good, duty)
     sense = _sense(duty)
 
@@ -319,14 +346,9 @@ def _told(made: Profiles, good: NDArray[np.bool_], duty: Duty, current: Array, l
 
 def _hold(made: Profiles, good: NDArray[np.bool_], duty: Duty) -> None:
     """Energy and the second law, at run time: what is said must be possible."""
-    from_hot, to_cold, sideways, power = (
-        each[0][good] for each in (made.from_hot, made.to_cold, made.sideways, made.power)
-    )
-    scale = np.abs(from_hot) + np.abs(to_cold) + np.abs(sideways)
-    missed = np.maximum(np.abs(from_hot - to_cold - sideways - power), made.unbalanced[good] * scale)
-    if np.any(missed > _CLOSES * scale):
+    if np.any(made.unbalanced[good] > _CLOSES):
         raise AssertionError("the leg's energy does not close")
-    cold = made.cold_end[0][good] if duty.maximise == "delta_t" else duty.cold
-    made_entropy = to_cold / cold + sideways / _ambient(duty) - from_hot / duty.hot
-    if np.any(made_entropy < -_CLOSES * scale / duty.cold):
+    cold = made.cold_end[0] if duty.maximise == "delta_t" else duty.cold
+    entropy = made.to_cold[0] / cold + made.sideways[0] / _ambient(duty) - made.from_hot[0] / duty.hot
+    if np.any((entropy < -_CLOSES * made.flowing / duty.cold)[good]):
         raise AssertionError("the leg beats Carnot")

@@ -23,10 +23,10 @@ from legwright.leg.balance import LegMaterial
 Array = NDArray[np.float64]
 Indices = NDArray[np.intp]
 
-#: Gauss points along a leg
-POINTS = 16
 #: Newton's steps at most; the last one is this small, the longest this long (shares of the hot temperature)
 _ROUNDS, _LAST_STEP, _LONGEST_STEP = 25, 1e-7, 0.2
+#: heat conducted counts as at least this share of κ T
+_STILL = 1e-3
 #: where the hottest and coldest places are looked for, a Gauss point
 _LOOKS = 4
 #: a search that leaves the nodes by this factor does not come back
@@ -64,7 +64,8 @@ class Profiles:
     lowest and highest temperature in the leg (K). The others hold the value, its derivative by J and its derivative
     by ln L (at constant J) along their first axis: from_hot, heat from the hot reservoir; to_cold, to the cold
     one; sideways, through the sides; power delivered, from voltage and current (W/m: times length); hot_end,
-    cold_end (K). unbalanced: what the energy misses, as a share of what flows.
+    cold_end (K). flowing: the size of what flows
+    (W/m), not less than a small share of κ T; unbalanced: what the energy misses, as a share of that.
     """
 
     found: NDArray[np.bool_]
@@ -78,7 +79,16 @@ class Profiles:
     power: Array
     hot_end: Array
     cold_end: Array
+    flowing: Array
     unbalanced: Array
+
+    def of(self, some: NDArray[np.bool_]) -> Profiles:
+        """The same of some legs."""
+        rows = {"state", "by_current"}
+        values = {one.name: getattr(self, one.name) for one in fields(self)}
+        return Profiles(
+            **{name: value[some] if name in rows else value[..., some] for name, value in values.items()}
+        )
 
 
 class Legs:
@@ -131,13 +141,11 @@ def _to_degrees(points: int) -> Array:
     return np.asarray((legvander(nodes, points - 1) * weights[:, None] * (np.arange(points) + 0.5)).T)
 
 
-def profiles(
-    legs: Legs, which: Indices, ends: Ends, current: Array, start: Array | None = None, points: int = POINTS
-) -> Profiles:
+def profiles(legs: Legs, which: Indices, ends: Ends, current: Array, start: Array) -> Profiles:
     """Steady states of the legs `which` (places in `legs`, shape (n,)) at J = j L (A/m), negative in a cooler.
 
-    ends and current: one value for each of `which`; start: `state` to begin from, else a straight line between
-    the ends of a leg without current; `points`: Gauss points along the leg. Each leg stops when its own step is
+    ends and current: one value for each of `which`; start: `state` to begin from, which sets how many Gauss points
+    are taken along the leg. Each leg stops when its own step is
     small. Raises nothing of its own. Source: Domenicali, Reviews of Modern Physics 26, 237 (1954).
 
     >>> t = np.linspace(280.0, 620.0, 9)
@@ -145,11 +153,12 @@ def profiles(
     >>> legs = Legs(LegMaterial.from_nodes(t, 2e-4 * same, 1e-5 * same, 1.5 * same))
     >>> one, none = np.ones(1), np.zeros(1)
     >>> ends = Ends(600 * one, 300 * one, none, none, none, none, none, none > 0)
-    >>> made = profiles(legs, np.zeros(1, dtype=int), ends, np.array([3000.0]))
+    >>> which = np.zeros(1, dtype=int)
+    >>> made = profiles(legs, which, ends, np.array([3000.0]), straight(legs, which, ends, 8))
     >>> f"{made.power[0, 0]:.6f}"  # J S ΔT − J² ρ
     '90.000000'
     """
-    state = straight(legs, which, ends, points) if start is None else start.copy()
+    state = start.copy()
     by_current, by_length = np.zeros_like(state), np.zeros_like(state)
     found = np.zeros(which.size, dtype=bool)
     active = np.arange(which.size)
@@ -306,10 +315,26 @@ class _Balance:
         lost, spent = np.stack(sideways), np.stack(electric)
         to_cold = np.stack(q_hot) + spent - lost + joule
         power = -spent - 2 * joule
-        flowing = np.abs(j) * np.max(np.abs(self.s * self.t), axis=1) + np.max(np.abs(self.kappa * self.p), axis=1)
-        unbalanced = np.max(np.abs(self.short), axis=1) / flowing
+        carried, conducted = (
+            np.abs(self.j * self.s * self.t),
+            self.kappa * np.maximum(np.abs(self.p), _STILL * self.t),
+        )
+        flowing = np.max(carried, axis=1) + np.max(conducted, axis=1)
+        closing = np.abs(from_hot[0] - to_cold[0] - lost[0] - power[0])
+        unbalanced = np.maximum(np.max(np.abs(self.short), axis=1), closing) / flowing
         t = self.t_hot[:, None] + np.einsum("ik,mk->mi", self.looks, self.p)
         return Profiles(
-            found, self.state, by_current, np.min(t, axis=1), np.max(t, axis=1), from_hot, to_cold, lost, power,
-            np.stack(hot_end), np.stack(t_cold), unbalanced,
-        )  # fmt: skip
+            found=found,
+            state=self.state,
+            by_current=by_current,
+            lowest=np.min(t, axis=1),
+            highest=np.max(t, axis=1),
+            from_hot=from_hot,
+            to_cold=to_cold,
+            sideways=lost,
+            power=power,
+            hot_end=np.stack(hot_end),
+            cold_end=np.stack(t_cold),
+            flowing=flowing,
+            unbalanced=unbalanced,
+        )
