@@ -13,8 +13,8 @@ from legwright.leg.balance import (
     cool_past_peak,
     cop_by_w,
     efficiency_by_w,
-    generate,
     largest_difference,
+    power_by_w,
     zoom,
 )
 from legwright.leg.installed import Running, best_running
@@ -131,17 +131,10 @@ def best_score(material: LegMaterial, duty: Duty, rounds: int = 4) -> Array:
         cop = cop_by_w(material, duty.hot, duty.cold)
         return _serving(zoom(cop, np.zeros_like(pull), pull, 7, rounds + 1)[1])
     expected = np.log(pull / np.maximum(root - 1, 1e-9))
-    if duty.maximise == "efficiency":
-        efficiency = efficiency_by_w(material, duty.hot, duty.cold)
-        made = zoom(lambda log_w: efficiency(np.exp(log_w)), expected - 2.5, expected + 2.5, 7, rounds + 1)
-        return _serving(made[1])
-
-    def power(log_w: Array) -> Array:
-        made = generate(material, duty.hot, duty.cold, np.exp(log_w))
-        return np.where(np.isfinite(made.efficiency), made.power_times_length, -np.inf)
-
-    _, score = zoom(power, expected - 2.5, expected + 2.5, 7, rounds + 1)
-    return _serving(score / duty.length / _PER_CM2)
+    trial = efficiency_by_w if duty.maximise == "efficiency" else power_by_w
+    figure = trial(material, duty.hot, duty.cold)
+    _, score = zoom(lambda log_w: figure(np.exp(log_w)), expected - 2.5, expected + 2.5, 7, rounds + 1)
+    return _serving(score if duty.maximise == "efficiency" else score / duty.length / _PER_CM2)
 
 
 def score_of(running: Running, duty: Duty) -> Array:
