@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from pathlib import Path
 from typing import Annotated, Literal
 
@@ -96,6 +97,7 @@ class AvoidTable(Table):
 class LegTable(Table):
     """The leg itself and what surrounds it; ideal where nothing is said.
 
+    Free paths of carriers and phonons feel a length that is named; else, and where it is free, the leg is long.
     Contacts, electric and thermal, are those of one end, alike at both. side_loss is a heat-transfer coefficient
     times the leg's perimeter over its area: 10 W/(m² K) on a leg 2 mm square is 2e4 W/(m³ K).
     """
@@ -148,6 +150,7 @@ class Brief(Table):
             leg.length_mm * 1e6 * NM,
             setting,
             None if free is None else (free[0] * 1e6 * NM, free[1] * 1e6 * NM),
+            leg.length_mm * 1e6 * NM if free is None and "length_mm" in leg.model_fields_set else math.inf,
         )
 
 

@@ -53,12 +53,14 @@ def deliver(candidate: Candidate, brief: Brief, doping: float | None, size: floa
         return Delivered(candidate, doping, size, shape, None, None, None, flag, why)
     doping, size = _design(brief, candidate, doping, size)
     low, high = duty.reach
-    made = evaluate(candidate, nodes_between(max(low, COLDEST), high, _NODES), doping, size, shape)
+    made = evaluate(
+        candidate, nodes_between(max(low, COLDEST), high, _NODES), doping, size, shape, duty.felt_length
+    )
     material = leg_material(candidate, made)
     job = _served(duty)
     running, ideal = (_one(material, each) for each in (job, replace(job, setting=Setting(), lengths=None)))
     reach = _largest_difference(material, duty) if duty.kind == "cooler" else None
-    inside = evaluate(candidate, np.linspace(duty.cold, duty.hot, 5), doping, size, shape)
+    inside = evaluate(candidate, np.linspace(duty.cold, duty.hot, 5), doping, size, shape, duty.felt_length)
     flags = point_flags(candidate, inside, shape)
     if running is None:
         flags.append("duty-out-of-reach")
@@ -97,5 +99,6 @@ def _nearest(duty: Duty, reach: float | None) -> str:
     """The duty that the leg could still do."""
     if not reach:
         return f"no current makes this leg a {duty.kind} between {duty.cold:g} and {duty.hot:g} K"
-    coldest = math.ceil(10 * (duty.hot - reach)) / 10
-    return f"largest ΔT {reach:.1f} K from {duty.hot:g} K: cold_K at least {coldest:g}"
+    step = 0.1 if reach > 1 else 10.0 ** (math.floor(math.log10(reach)) - 1)
+    coldest = duty.hot - step * math.floor(reach / step)
+    return f"largest ΔT {reach:.3g} K from {duty.hot:g} K: cold_K at least {coldest:.8g}"

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import Literal, get_args
 
@@ -72,7 +73,8 @@ class Duty:
 
     kind: generator or cooler; hot and cold, the temperatures of its ends (K); maximise: the goal that counts, one
     of `GOALS` of the kind; length of the leg (m); setting: contacts, exchangers and side loss; lengths: a range of
-    lengths (m) that are free, where the best one is wanted instead of `length`.
+    lengths (m) that are free, where the best one is wanted instead of `length`; felt_length: what free paths of
+    carriers and phonons feel of it (m), inf in a long leg.
     """
 
     kind: Kind
@@ -82,6 +84,7 @@ class Duty:
     length: float
     setting: Setting = Setting()
     lengths: tuple[float, float] | None = None
+    felt_length: float = math.inf
 
     @property
     def span(self) -> tuple[float, float]:
