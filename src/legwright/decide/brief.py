@@ -23,6 +23,8 @@ Active = Annotated[float, Field(ge=THINNEST / PER_CM3, le=DENSEST / PER_CM3)]
 
 #: leg length when the brief gives none: common practice for bulk legs is 1 to 5 mm
 DEFAULT_LENGTH_MM = 1.0
+#: side loss times length squared, W/(m K): against conductivities of about 1 that is a fin ten times its own reach
+LEAKIEST = 100.0
 
 
 class DutyTable(Table):
@@ -116,6 +118,13 @@ class LegTable(Table):
         if self.length_free_mm is not None and not self.length_free_mm[0] < self.length_free_mm[1]:
             low, high = self.length_free_mm
             raise ValueError(f"length_free_mm = [{low:g}, {high:g}] must be [shortest, longest]")
+        longest = max(self.length_free_mm or (self.length_mm,)) * 1e6 * NM
+        if self.side_loss_W_per_m3_K * longest**2 > LEAKIEST:
+            most = LEAKIEST / longest**2
+            raise ValueError(
+                f"side_loss_W_per_m3_K = {self.side_loss_W_per_m3_K:g} is not allowed; at most {most:.3g} "
+                f"in a leg of {longest * 1e3:g} mm: its heat would leave through its sides before it reached the other end"
+            )
         return self
 
 

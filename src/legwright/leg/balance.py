@@ -127,48 +127,45 @@ class Course:
     def _below(self, w_top: Array, with_length: bool) -> tuple[Array, Array]:
         shape = np.broadcast_shapes(self.kappa.shape[1:], np.shape(w_top))
         legs = int(np.prod(self.kappa.shape[1:]))
-        factor = self._beside(4 * self.step * self.theta)
-        gain = (factor * self.joule).reshape(-1, legs)
-        turn = (factor * self.thomson).reshape(-1, legs)
-        share = self._beside(2 * self.step * self.theta * self._simpson()) * self.kappa
+        joule, thomson, kappa = (each.reshape(-1, legs) for each in (self.joule, self.thomson, self.kappa))
         w = np.array(np.broadcast_to(w_top, shape), dtype=float).reshape(-1, legs)
         length = np.zeros_like(w)
-        for part in (slice(k, k + _BLOCK) for k in range(0, legs, _BLOCK)):
-            covered = share.reshape(-1, legs)[:, part] if with_length else None
-            w[:, part], length[:, part] = self._block_below(gain[:, part], turn[:, part], covered, w[:, part])
+        for part in (np.s_[:, k : k + _BLOCK] for k in range(0, legs, _BLOCK)):
+            w[part], length[part] = self._block_below(joule[part], thomson[part], kappa[part], w[part], with_length)
         return w.reshape(shape), length.reshape(shape)
 
-    def _simpson(self) -> Array:
-        """Weights of Simpson's rule over the steps, a place; zero between them."""
-        weights = np.zeros(2 * self.steps + 1)
-        weights[::2] = 2 / 3
-        weights[2::4] = 4 / 3
-        weights[[0, -1]] = 1 / 3
-        return weights
-
-    def _block_below(self, gain: Array, turn: Array, share: Array | None, w: Array) -> tuple[Array, Array | float]:
-        """Both for a block of legs that fits into fast memory; share: 2θ κ times Simpson's weights."""
-        y = w**2
-        whole, stage, change = (np.empty_like(y) for _ in range(3))
-        length: Array | float = 0.0 if share is None else np.zeros_like(y)
+    def _block_below(
+        self, joule: Array, thomson: Array, kappa: Array, w: Array, with_length: bool
+    ) -> tuple[Array, Array | float]:
+        """Both for a block of legs that fits into fast memory: to the bit as `march`, without keeping its steps."""
+        h, theta, y = self.step, self.theta, w**2
+        total, stage, middle, change = (np.empty_like(y) for _ in range(4))
+        before, between, sum_of_threes = np.zeros_like(y), np.zeros_like(y), np.zeros_like(y)
 
         def slope(i: int, at: Array) -> Array:
             np.sqrt(np.maximum(at, 0.0, out=change), out=change)
-            np.multiply(change, turn[i], out=change)
-            return np.asarray(np.add(change, gain[i], out=change))
+            np.add(np.multiply(change, thomson[i], out=change), joule[i], out=change)
+            return np.asarray(np.multiply(change, 4 * theta[i], out=change))
 
-        for k in range(0, 2 * self.steps, 2):
-            np.copyto(whole, slope(k, y))
-            np.add(y, np.multiply(change, 0.5, out=stage), out=stage)
-            for part in (0.5, 1.0):
-                np.add(whole, np.multiply(slope(k + 1, stage), 2.0, out=stage), out=whole)
-                np.add(y, np.multiply(change, part, out=change), out=stage)
-            np.add(whole, slope(k + 2, stage), out=whole)
-            np.add(y, np.multiply(whole, 1 / 6, out=whole), out=y)
-            if share is not None:
-                np.sqrt(np.maximum(y, _SMALLEST_W**2, out=stage), out=stage)
-                length += np.divide(share[k + 2], stage, out=stage)
-        return np.sqrt(np.maximum(y, 0.0)), length
+        for k in range(self.steps):
+            np.copyto(total, slope(2 * k, y))
+            np.add(y, np.multiply(change, 0.5 * h, out=stage), out=stage)
+            np.copyto(middle, slope(2 * k + 1, stage))
+            np.add(y, np.multiply(change, 0.5 * h, out=stage), out=stage)
+            np.add(middle, slope(2 * k + 1, stage), out=middle)
+            np.add(y, np.multiply(change, h, out=stage), out=stage)
+            np.add(total, np.multiply(middle, 2.0, out=middle), out=total)
+            np.add(total, slope(2 * k + 2, stage), out=total)
+            np.add(y, np.multiply(total, h / 6, out=total), out=y)
+            if with_length:  # by Simpson's rule
+                np.maximum(np.sqrt(np.maximum(y, 0.0, out=stage), out=stage), _SMALLEST_W, out=stage)
+                covered = 2 * theta[2 * k + 2] * kappa[2 * k + 2] / stage
+                if k % 2 == 0:
+                    between = covered
+                else:
+                    sum_of_threes += before + 4 * between + covered
+                    before = covered
+        return np.sqrt(np.maximum(y, 0.0)), sum_of_threes * (h / 3)
 
 
 def march_down(material: LegMaterial, top: float, bottom: float, sign: int, w_top: Array, steps: int) -> Along:
