@@ -30,6 +30,25 @@ def test_a_cooling_leg(brief, legwright):
     assert said["heat_lifted_W_per_cm2"] > 0
 
 
+def test_a_generator_tells_its_matched_load_beside_its_best_efficiency(brief, legwright):
+    economical = legwright("leg", "sige-n", brief(REAL), "--doping", "1e20", "--size", "bulk", "--json").json
+    strongest = brief(REAL | {"duty.maximise": '"power"'}, name="power.toml")
+    strong = legwright("leg", "sige-n", strongest, "--doping", "1e20", "--size", "bulk", "--json").json
+    assert economical["power_matched_load_W_per_cm2"] == strong["power_W_per_cm2"] > economical["power_W_per_cm2"]
+    assert economical["efficiency_matched_load"] == strong["efficiency"] < economical["efficiency"]
+
+
+@pytest.mark.parametrize("maximise", ["cop", "heat_lifted"])
+def test_rank_and_leg_give_a_cooler_the_same_figure_in_its_setting(maximise, brief, legwright):
+    job = brief({**COOLER, **REAL, "duty.maximise": f'"{maximise}"', "leg.side_loss_W_per_m3_K": "1e4"})
+    (row,) = legwright("rank", job, "--json").json["rows"]
+    said = legwright("leg", "bisbte-p", job, "--json").json
+    figure = said["cop"] if maximise == "cop" else said["heat_lifted_W_per_cm2"]
+    assert figure == pytest.approx(row["score"], rel=1e-9)
+    ideal = legwright("rank", brief({**COOLER, "duty.maximise": f'"{maximise}"'}, name="ideal.toml"), "--json").json
+    assert row["score"] < ideal["rows"][0]["score"]
+
+
 def test_a_given_design_is_kept(brief, legwright):
     said = legwright("leg", "sige-n", brief(), "--doping", "1e20", "--size", "bulk", "--json").json
     assert said["doping_per_cm3"] == pytest.approx(1e20, rel=1e-12)

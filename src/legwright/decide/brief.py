@@ -123,7 +123,7 @@ class LegTable(Table):
             most = LEAKIEST / longest**2
             raise ValueError(
                 f"side_loss_W_per_m3_K = {self.side_loss_W_per_m3_K:g} is not allowed; at most {most:.3g} "
-                f"in a leg of {longest * 1e3:g} mm: its heat would leave through its sides before it reached the other end"
+                f"in a leg of {longest * 1e3:g} mm: its heat would all leave through its sides"
             )
         return self
 

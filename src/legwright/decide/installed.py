@@ -14,7 +14,7 @@ from legwright.decide.rank import design_or_best, rank_one
 from legwright.decide.score import leg_material, nodes_between
 from legwright.decide.warnings import point_flags
 from legwright.leg.balance import LegMaterial
-from legwright.leg.duty import Duty, Setting, score_of
+from legwright.leg.duty import Duty, score_of
 from legwright.leg.installed import Running, best_running
 from legwright.physics.properties import COLDEST, evaluate
 
@@ -23,7 +23,8 @@ _NODES = 17
 
 @dataclass(frozen=True)
 class Delivered:
-    """A leg in its duty; SI. `ideal`: the same leg with nothing between it and its reservoirs.
+    """A leg in its duty; SI. `ideal`: the same leg with nothing between it and its reservoirs; `matched`: a
+    generator of the same length at the load that draws the most power.
 
     None where the leg cannot serve; `refusal` then says why, and what would be the nearest that it could.
     """
@@ -34,6 +35,7 @@ class Delivered:
     shape: str
     running: Running | None
     ideal: Running | None
+    matched: Running | None
     largest_difference: float | None
     flags: tuple[str, ...]
     refusal: str | None
@@ -50,7 +52,7 @@ def deliver(candidate: Candidate, brief: Brief, doping: float | None, size: floa
     if duty.hot > highest:
         why = f"{candidate.name} serves up to {highest:g} K: hot_K at most {highest:g}"
         flag = ("above-service-temperature",)
-        return Delivered(candidate, doping, size, shape, None, None, None, flag, why)
+        return Delivered(candidate, doping, size, shape, None, None, None, None, flag, why)
     doping, size = _design(brief, candidate, doping, size)
     low, high = duty.reach
     made = evaluate(
@@ -58,14 +60,17 @@ def deliver(candidate: Candidate, brief: Brief, doping: float | None, size: floa
     )
     material = leg_material(candidate, made)
     job = _served(duty)
-    running, ideal = (_one(material, each) for each in (job, replace(job, setting=Setting(), lengths=None)))
+    running, ideal = (_one(material, each) for each in (job, job.alone))
+    matched = None
+    if running is not None and duty.kind == "generator":
+        matched = _one(material, replace(job, maximise="power", length=float(running.length), lengths=None))
     reach = _largest_difference(material, duty) if duty.kind == "cooler" else None
     inside = evaluate(candidate, np.linspace(duty.cold, duty.hot, 5), doping, size, shape, duty.felt_length)
     flags = point_flags(candidate, inside, shape)
     if running is None:
         flags.append("duty-out-of-reach")
     nearest = None if running is not None else _nearest(duty, reach)
-    return Delivered(candidate, doping, size, shape, running, ideal, reach, ordered(flags), nearest)
+    return Delivered(candidate, doping, size, shape, running, ideal, matched, reach, ordered(flags), nearest)
 
 
 def _design(brief: Brief, candidate: Candidate, doping: float | None, size: float | None) -> tuple[float, float]:

@@ -94,8 +94,11 @@ def rank_one(brief: Brief, candidate: Candidate) -> Row:
         return _infeasible(brief, candidate, "duty-out-of-reach")
     low, high, open_ended = window(candidate, duty, doping, size, sizes, shape)
     bulk = best_coarse_score(found, candidate, duty, shape)
-    zt_mean, zt_peak = zt_over(made, duty)
-    flags = _design_flags(candidate, brief, made, doping, size, dopings, sizes)
+    inside = made
+    if not duty.setting.ideal:  # properties that the leg only meets in its setting are not the duty's
+        inside = properties_over_span(candidate, duty.alone, doping, size, shape, _FINE_NODES)
+    zt_mean, zt_peak = zt_over(inside, duty)
+    flags = _design_flags(candidate, brief, inside, doping, size, dopings, sizes)
     if open_ended:
         flags.append("window-open")
     if bulk == 0:

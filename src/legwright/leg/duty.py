@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Literal, get_args
 
 import numpy as np
@@ -85,6 +85,11 @@ class Duty:
     setting: Setting = Setting()
     lengths: tuple[float, float] | None = None
     felt_length: float = math.inf
+
+    @property
+    def alone(self) -> Duty:
+        """The same duty with nothing between the leg and its reservoirs."""
+        return replace(self, setting=Setting(), lengths=None)
 
     @property
     def span(self) -> tuple[float, float]:

@@ -259,6 +259,8 @@ def leg_record(found: Delivered, brief: Brief) -> Record:
         content["efficiency"] = figure("efficiency")
         content["efficiency_ideal_contacts"] = figure("efficiency", running=found.ideal)
         content["power_W_per_cm2"] = figure("power", CM2)
+        content["power_matched_load_W_per_cm2"] = figure("power", CM2, found.matched)
+        content["efficiency_matched_load"] = figure("efficiency", running=found.matched)
     else:
         content["cop"] = figure("cop")
         content["cop_ideal_contacts"] = figure("cop", running=found.ideal)

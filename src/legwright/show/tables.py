@@ -232,6 +232,8 @@ _LEG_LABELS = {
     "efficiency": "efficiency",
     "efficiency_ideal_contacts": "efficiency, ideal contacts and exchangers",
     "power_W_per_cm2": "power [W/cm²]",
+    "power_matched_load_W_per_cm2": "power at the matched load [W/cm²]",
+    "efficiency_matched_load": "efficiency there",
     "cop": "COP",
     "cop_ideal_contacts": "COP, ideal contacts and exchangers",
     "heat_lifted_W_per_cm2": "heat lifted [W/cm²]",
