@@ -29,10 +29,6 @@ MEANINGS: dict[str, str] = {
     ),
     "doping-at-limit": "The best doping is a limit of the doping range; solubility or the brief stops it.",
     "no-gain-reference": "Coarse-grained material scores 0 under this duty, so the gain is undefined.",
-    "ideal-contacts": (
-        "The brief names contacts or exchangers, and the ranking takes ideal ones; `legwright leg` applies them to "
-        "one leg. A power that looks too good is mostly this."
-    ),
     "below-smallest-makeable-size": (
         "The size is below the smallest that the candidate's file says can be made; nobody is known to make it."
     ),

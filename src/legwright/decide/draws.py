@@ -116,7 +116,7 @@ def _scores(brief: Brief, row: Row, laws: int, seed: int) -> Array:
     found = []
     one = crystal(candidate)
     for k, law in enumerate(with_each_law(candidate, one, laws, seed)):
-        made = evaluate_crystal(law, temperature[:, None, None], doping, size, row.shape)
+        made = evaluate_crystal(law, temperature[:, None, None], doping, size, row.shape, duty.felt_length)
 
         def off(values: Array, factor: Array) -> Array:
             return values[:, None] * factor[:, None, None]

@@ -18,7 +18,6 @@ from legwright.decide.brief import Brief, candidates_of
 from legwright.decide.score import leg_material, properties_over_span, score
 from legwright.decide.warnings import point_flags
 from legwright.leg.duty import SCORE_NAMES, Duty, best_score
-from legwright.leg.installed import Setting
 from legwright.physics.properties import Properties
 
 Array = NDArray[np.float64]
@@ -95,8 +94,11 @@ def rank_one(brief: Brief, candidate: Candidate) -> Row:
         return _infeasible(brief, candidate, "duty-out-of-reach")
     low, high, open_ended = window(candidate, duty, doping, size, sizes, shape)
     bulk = best_coarse_score(found, candidate, duty, shape)
-    zt_mean, zt_peak = zt_over(made, duty)
-    flags = _design_flags(candidate, brief, made, doping, size, dopings, sizes)
+    inside = made
+    if not duty.setting.ideal:  # properties that the leg only meets in its setting are not the duty's
+        inside = properties_over_span(candidate, duty.alone, doping, size, shape, _FINE_NODES)
+    zt_mean, zt_peak = zt_over(inside, duty)
+    flags = _design_flags(candidate, brief, inside, doping, size, dopings, sizes)
     if open_ended:
         flags.append("window-open")
     if bulk == 0:
@@ -251,8 +253,6 @@ def _design_flags(
     flags = point_flags(candidate, made, brief.size.shape)
     if not sizes[0] * 1.001 < size < sizes[1] * 0.999:
         flags.append("size-at-limit")
-    if brief.setting != Setting():
-        flags.append("ideal-contacts")
     if not dopings[0] * 1.001 < doping < dopings[1] * 0.999:
         flags.append("doping-at-limit")
     return flags

@@ -166,7 +166,7 @@ def search(
     assert design is not None
     one, doping, size = design
     reached = space.worth(u)
-    made = properties_over_span(one, space.duty, doping, size, brief.size.shape, _NODES)
+    made = properties_over_span(one, space.duty.alone, doping, size, brief.size.shape, _NODES)
     touched = tuple(
         name for name, x in zip(space.names, u, strict=True) if not _TOUCHING < float(x) < 1 - _TOUCHING
     )

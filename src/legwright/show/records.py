@@ -29,6 +29,7 @@ if TYPE_CHECKING:
     from legwright.decide.rank import Row
     from legwright.decide.search import Found
     from legwright.decide.why import Why
+    from legwright.leg.installed import Running
     from legwright.physics.properties import Properties
 
 SCHEMA = 1
@@ -236,36 +237,41 @@ def search_record(found: Found) -> Record:
 
 def leg_record(found: Delivered, brief: Brief) -> Record:
     """The whole of `leg`; areal figures per cm² of leg."""
-    running, ideal, generates = found.running, found.ideal, brief.duty.kind == "generator"
+    generates, leg = brief.duty.kind == "generator", brief.leg
 
-    def per_cm2(value: float) -> float:
-        return value * CM2
+    def figure(name: str, scale: float = 1.0, running: Running | None = found.running) -> float | None:
+        return None if running is None else scale * float(getattr(running, name))
 
     content: Record = {
         "candidate": found.candidate.name,
         "formula": found.candidate.data.formula,
         "shape": found.shape,
         "size_nm": nanometres(found.size),
-        "doping_per_cm3": found.doping / PER_CM3,
-        "length_mm": brief.leg.length_mm,
-        "contact_uohm_cm2": brief.leg.contact_uohm_cm2,
-        "hot_exchanger_K_cm2_per_W": brief.leg.hot_exchanger_K_cm2_per_W,
-        "cold_exchanger_K_cm2_per_W": brief.leg.cold_exchanger_K_cm2_per_W,
+        "doping_per_cm3": None if found.doping is None else found.doping / PER_CM3,
+        "length_mm": leg.length_mm if leg.length_free_mm is None else figure("length", 1e3),
+        "contact_uohm_cm2": leg.contact_uohm_cm2,
+        "contact_K_cm2_per_W": leg.contact_K_cm2_per_W,
+        "hot_exchanger_K_cm2_per_W": leg.hot_exchanger_K_cm2_per_W,
+        "cold_exchanger_K_cm2_per_W": leg.cold_exchanger_K_cm2_per_W,
+        "side_loss_W_per_m3_K": leg.side_loss_W_per_m3_K,
     }
     if generates:
-        content["efficiency"] = running and running.efficiency
-        content["efficiency_ideal_contacts"] = ideal and ideal.efficiency
-        content["power_W_per_cm2"] = running and per_cm2(running.power)
+        content["efficiency"] = figure("efficiency")
+        content["efficiency_ideal_contacts"] = figure("efficiency", running=found.ideal)
+        content["power_W_per_cm2"] = figure("power", CM2)
+        content["power_matched_load_W_per_cm2"] = figure("power", CM2, found.matched)
+        content["efficiency_matched_load"] = figure("efficiency", running=found.matched)
     else:
-        content["cop"] = running and running.cop
-        content["cop_ideal_contacts"] = ideal and ideal.cop
-        content["heat_lifted_W_per_cm2"] = running and per_cm2(running.heat_cold)
+        content["cop"] = figure("cop")
+        content["cop_ideal_contacts"] = figure("cop", running=found.ideal)
+        content["heat_lifted_W_per_cm2"] = figure("heat_cold", CM2)
         content["delta_t_max_K"] = found.largest_difference
     return content | {
-        "current_A_per_cm2": running and per_cm2(running.current),
-        "heat_from_hot_W_per_cm2" if generates else "heat_to_hot_W_per_cm2": running and per_cm2(running.heat_hot),
-        "hot_end_K": running and running.hot_end,
-        "cold_end_K": running and running.cold_end,
+        "current_A_per_cm2": figure("current", CM2),
+        "heat_from_hot_W_per_cm2" if generates else "heat_to_hot_W_per_cm2": figure("heat_hot", CM2),
+        "heat_through_sides_W_per_cm2": figure("side_heat", CM2),
+        "hot_end_K": figure("hot_end"),
+        "cold_end_K": figure("cold_end"),
         "flags": list(found.flags),
     }
 

@@ -179,6 +179,8 @@ _LEG_LABELS = {
     "efficiency": "efficiency",
     "efficiency_ideal_contacts": "efficiency, ideal contacts and exchangers",
     "power_W_per_cm2": "power [W/cm²]",
+    "power_matched_load_W_per_cm2": "power at the matched load [W/cm²]",
+    "efficiency_matched_load": "efficiency there",
     "cop": "COP",
     "cop_ideal_contacts": "COP, ideal contacts and exchangers",
     "heat_lifted_W_per_cm2": "heat lifted [W/cm²]",
@@ -186,21 +188,24 @@ _LEG_LABELS = {
     "current_A_per_cm2": "current [A/cm²]",
     "heat_from_hot_W_per_cm2": "heat taken in [W/cm²]",
     "heat_to_hot_W_per_cm2": "heat given off [W/cm²]",
+    "heat_through_sides_W_per_cm2": "lost through the sides [W/cm²]",
     "hot_end_K": "hot end of the leg [K]",
     "cold_end_K": "cold end of the leg [K]",
     "length_mm": "length [mm]",
     "contact_uohm_cm2": "each contact [µΩ cm²]",
+    "contact_K_cm2_per_W": "each contact, to heat [K cm²/W]",
     "hot_exchanger_K_cm2_per_W": "hot exchanger [K cm²/W]",
     "cold_exchanger_K_cm2_per_W": "cold exchanger [K cm²/W]",
+    "side_loss_W_per_m3_K": "side loss [W/(m³ K)]",
 }
 
 
 def leg_table(found: Record, markdown: bool) -> Layout:
     """What a leg delivers."""
-    size = "coarse" if found["size_nm"] is None else f"{figure(found['size_nm'])} nm"
-    title = (
-        f"{found['candidate']} ({found['formula']}), {found['shape']} {size}, {found['doping_per_cm3']:.3g} cm⁻³"
-    )
+    title = f"{found['candidate']} ({found['formula']})"
+    if found["doping_per_cm3"] is not None:
+        size = "coarse" if found["size_nm"] is None else f"{figure(found['size_nm'])} nm"
+        title += f", {found['shape']} {size}, {found['doping_per_cm3']:.3g} cm⁻³"
     pairs = [(label, figure(found[key])) for key, label in _LEG_LABELS.items() if key in found]
     return pairs_table(title, pairs, markdown)
 

@@ -25,7 +25,7 @@ def leg_verb(
     csv_file: Path | None,
     markdown: bool,
 ) -> None:
-    """What a leg of CANDIDATE delivers in BRIEF, with the brief's contacts and exchangers."""
+    """What a leg of CANDIDATE delivers in BRIEF, with the brief's contacts, exchangers and side loss."""
     from legwright.base.units import NM, PER_CM3
     from legwright.candidate.library import load_candidate
     from legwright.decide.brief import load_brief
@@ -44,4 +44,4 @@ def leg_verb(
 
     publish("leg", {**content, **under}, [content], as_json, csv_file, table)
     if found.running is None:
-        raise NothingFeasible("this leg cannot serve this brief; the flags say why")
+        raise NothingFeasible(f"this leg cannot serve this brief: {found.refusal}")
