@@ -69,21 +69,23 @@ class Course:
     """The properties met on a march down in temperature, the same for any current.
 
     From `top` down to `bottom` (K) in θ = √(T_top − T), in `steps` of Runge–Kutta's fourth order, with w of the
-    given sign. d(w²)/dT = −2κρ − 2wT dS/dT.
+    given sign. d(w²)/dT = −2κρ − 2wT dS/dT. For a material of one leg top and bottom may be arrays.
     """
 
-    def __init__(self, material: LegMaterial, top: float, bottom: float, sign: int, steps: int) -> None:
+    def __init__(
+        self, material: LegMaterial, top: float | Array, bottom: float | Array, sign: int, steps: int
+    ) -> None:
         self.steps = steps
-        self.theta = np.sqrt(top - bottom) * np.linspace(0.0, 1.0, 2 * steps + 1)
+        self.theta = np.multiply.outer(np.linspace(0.0, 1.0, 2 * steps + 1), np.sqrt(top - bottom))
         self.temperature = top - self.theta**2
         self.kappa = material.thermal_conductivity(self.temperature)
         self.joule = self.kappa * material.resistivity(self.temperature)
         self.thomson = self._beside(sign * self.temperature) * material.seebeck(self.temperature, 1)
-        self.step = float(self.theta[2])
+        self.step = self.theta[2]
 
     def _beside(self, values: Array) -> Array:
         """Values along the march, shaped to go with those of the legs."""
-        return np.reshape(values, (-1, *(1,) * (self.kappa.ndim - 1)))
+        return np.reshape(values, (*values.shape, *(1,) * (self.kappa.ndim - values.ndim)))
 
     def march(self, w_top: Array) -> Along:
         """w at every step, and the length covered."""
@@ -114,7 +116,7 @@ class Course:
         covered[1:] = np.reshape(per_theta, (self.steps, *extra, *self.kappa.shape[1:])) / np.maximum(
             w[1:], _SMALLEST_W
         )
-        return Along(self.temperature[::2], w, np.asarray(simpson(covered, dx=h, axis=0)))
+        return Along(self.temperature[::2], w, np.asarray(h * simpson(covered, axis=0)))
 
     def w_below(self, w_top: Array) -> Array:
         """|w| at the bottom alone, for currents that flow at the top: quick, as nothing on the way is kept."""
@@ -168,13 +170,16 @@ class Course:
         return np.sqrt(np.maximum(y, 0.0)), sum_of_threes * (h / 3)
 
 
-def march_down(material: LegMaterial, top: float, bottom: float, sign: int, w_top: Array, steps: int) -> Along:
+def march_down(
+    material: LegMaterial, top: float | Array, bottom: float | Array, sign: int, w_top: Array, steps: int
+) -> Along:
     """Integrate d(w²)/dT = −2κρ − 2wT dS/dT from `top` down to `bottom` (K) with w = ±√(w²) of the given sign.
 
     Fourth-order Runge–Kutta in θ = √(T_top − T): for w² where current flows at the top, for w itself from rest
     (a temperature maximum inside the leg), where it is w that is smooth in θ. The length follows by Simpson's
     rule on the same `steps`, an even number of them. From rest the length converges as steps^−2.5 only.
-    w_top: |w| at the top (W/A), shape legs …; `w` has a first axis of steps + 1. Raises nothing of its own.
+    w_top: |w| at the top (W/A), shape legs …; `w` has a first axis of steps + 1. A material of one leg also takes
+    arrays of `top` and `bottom`, which broadcast with w_top. Raises nothing of its own.
     Source: Snyder & Ursell, Physical Review Letters 91, 148301 (2003), w being the inverse of their u.
 
     >>> nodes = np.linspace(280.0, 620.0, 9)
@@ -422,3 +427,28 @@ def zoom(score: Callable[[Array], Array], low: Array, high: Array, points: int, 
         low = np.take_along_axis(grid, np.maximum(best - 1, 0), axis=0)[0]
         high = np.take_along_axis(grid, np.minimum(best + 1, points - 1), axis=0)[0]
     return np.take_along_axis(grid, best, axis=0)[0], np.take_along_axis(values, best, axis=0)[0]
+
+
+#: coefficients of the quartic through five even points −2 … 2
+_QUARTIC = np.linalg.inv(np.vander(np.arange(-2.0, 3.0), increasing=True))
+
+
+def crest(five: Array) -> tuple[Array, Array]:
+    """Where the quartic through `five` even points (first axis) is highest, and how high.
+
+    The place is dimensionless, −2 … 2 in steps between points; the height in the unit of the points; both of the
+    shape of the other axes. Newton's method on the slope, from the middle point. Raises nothing of its own.
+    By definition.
+
+    >>> x = np.arange(-2.0, 3.0)
+    >>> where, top = crest(3 - (x - 0.4) ** 2)
+    >>> f"{float(where):.6f} {float(top):.6f}"
+    '0.400000 3.000000'
+    """
+    coefficients = np.tensordot(_QUARTIC, five, axes=1)
+    x = np.zeros(five.shape[1:])
+    for _ in range(4):
+        slope = sum(k * coefficients[k] * x ** (k - 1) for k in range(1, 5))
+        bend = sum(k * (k - 1) * coefficients[k] * x ** (k - 2) for k in range(2, 5))
+        x = np.clip(x - np.where(bend < 0, slope / np.where(bend < 0, bend, 1.0), 0.0), -2.0, 2.0)
+    return x, np.asarray(sum(coefficients[k] * x**k for k in range(5)))

@@ -13,6 +13,7 @@ from legwright.leg.balance import (
     LegMaterial,
     cool_past_peak,
     cop_by_w,
+    crest,
     efficiency_by_w,
     largest_difference,
     power_by_w,
@@ -189,16 +190,8 @@ def _best_lift(material: LegMaterial, duty: Duty) -> Array:
     )
     centre = np.clip(np.argmax(lifted, axis=0), 2, _PEAKS - 3)[None]
     five = np.stack([np.take_along_axis(lifted, centre + step, axis=0)[0] for step in range(-2, 3)])
-    coefficients = np.tensordot(_QUARTIC, five, axes=1)
-    x = np.zeros(five.shape[1:])
-    for _ in range(4):  # Newton on the quartic's slope, from the middle point
-        slope = sum(k * coefficients[k] * x ** (k - 1) for k in range(1, 5))
-        bend = sum(k * (k - 1) * coefficients[k] * x ** (k - 2) for k in range(2, 5))
-        x = np.clip(x - np.where(bend < 0, slope / np.where(bend < 0, bend, 1.0), 0.0), -2.0, 2.0)
-    top = sum(coefficients[k] * x**k for k in range(5))
+    _, top = crest(five)
     return np.asarray(np.maximum(np.max(lifted, axis=0), top))
 
 
 _PEAKS = 25
-#: coefficients of the quartic through five even points −2 … 2
-_QUARTIC = np.linalg.inv(np.vander(np.arange(-2.0, 3.0), increasing=True))
