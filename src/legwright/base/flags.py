@@ -61,6 +61,25 @@ MEANINGS: dict[str, str] = {
     "mixed-minority-carriers": (
         "Minority carriers carry more than a tenth of the electronic heat at the hot end (bipolar conduction)."
     ),
+    "score-of-couple": (
+        "The score is that of the couple with the brief's partner, both at their best areas; size, doping, window, "
+        "zT and gain are the leg's own, from its score alone."
+    ),
+    "legs-unlike": (
+        "Somewhere in the span the compatibility factors of the two legs differ by more than a factor of two: they "
+        "want unlike current densities, which only unlike cross-sections give (see the area ratio)."
+    ),
+    "segments-fight": (
+        "Where two segments meet their compatibility factors differ by more than a factor of two: one current does "
+        "not suit both, and the leg loses against the sum of its parts (Snyder & Ursell 2003; the factor is common "
+        "practice)."
+    ),
+    "segment-unused": "The best leg leaves less than a hundredth of its length to one of its segments.",
+    "expansion-mismatch": (
+        "Legs or segments differ in thermal expansion from each other, or from every listed strap, by more than "
+        "0.2 % between 300 K and their hottest joint: more than brittle semiconductors bear without a compliant "
+        "layer (common practice)."
+    ),
     "from-memory": "More than half of the numbers in this candidate's file were taken from memory, not read.",
     "direction": "The figures hold for the one crystal direction or texture named in the candidate's file.",
 }

@@ -112,6 +112,7 @@ class LegTable(Table):
     cold_exchanger_K_cm2_per_W: Annotated[float, Field(ge=0, le=1e4)] = 0.0
     side_loss_W_per_m3_K: Annotated[float, Field(ge=0, le=1e9)] = 0.0
     ambient_K: Temperature | None = None
+    partner: Annotated[str, Field(min_length=1)] | None = None
 
     @model_validator(mode="after")
     def _ordered(self) -> LegTable:
@@ -188,10 +189,7 @@ def candidates_of(brief: Brief, path: str | Path) -> list[Candidate]:
     wanted = library_names() if brief.candidates.use == "all" else brief.candidates.use
     found: dict[tuple[Path, str], Candidate] = {}
     for name in wanted:
-        try:
-            one = load_candidate(Path(path).parent / name if name.endswith(".toml") else name)
-        except InputError as error:
-            raise InputError(str(error), file=path, key="candidates.use") from error
+        one = _named(name, path, "candidates.use")
         found[one.path, one.name] = one
     chosen = [c for c in found.values() if brief.candidates.carrier in ("either", c.data.carrier)]
     if not chosen:
@@ -201,3 +199,16 @@ def candidates_of(brief: Brief, path: str | Path) -> list[Candidate]:
             key="candidates.carrier",
         )
     return sorted(chosen, key=lambda c: (c.name, str(c.path)))
+
+
+def partner_of(brief: Brief, path: str | Path) -> Candidate | None:
+    """The candidate of the other leg of a couple; None where the brief names none."""
+    return None if brief.leg.partner is None else _named(brief.leg.partner, path, "leg.partner")
+
+
+def _named(name: str, path: str | Path, key: str) -> Candidate:
+    """A candidate of the library, or one whose path is written from the brief on."""
+    try:
+        return load_candidate(Path(path).parent / name if name.endswith(".toml") else name)
+    except InputError as error:
+        raise InputError(str(error), file=path, key=key) from error

@@ -78,8 +78,8 @@ def best_couples(n_legs: Sequence[Segments], p_legs: Sequence[Segments], duty: D
     max over both current densities of Σ(Φ_h − Φ_c)/ΣΦ_h, Σ(Φ_h − Φ_c)/Σ(1/j), ΣΦ_c/Σ(Φ_h − Φ_c) or ΣΦ_c/Σ(1/j),
     where Φ counts the Joule heat of the setting's contacts; exchangers are left out. A leg's S counts positive
     for its own carrier. For constant properties Z is (S_n + S_p)²/(√(ρκ)_n + √(ρκ)_p)² and
-    A_n/A_p = √(ρ_n κ_p/(ρ_p κ_n)). Score as the goal (W/m² where areal), shape (n legs, p legs); the goal is not delta_t, which is
-    `largest_differences`; `steps`: of each march, even. Raises nothing of its own.
+    A_n/A_p = √(ρ_n κ_p/(ρ_p κ_n)). Figures in W/m², A/m² and K, of shape (n legs, p legs); the goal is not delta_t,
+    which is `largest_differences`; `steps`: of each march, even. Raises nothing of its own.
     Source: Ioffe, Semiconductor Thermoelements and Thermoelectric Cooling (1957).
 
     >>> from legwright.leg.balance import LegMaterial

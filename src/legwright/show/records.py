@@ -22,6 +22,7 @@ if TYPE_CHECKING:
     from legwright.candidate.library import Candidate
     from legwright.decide.audit import Total, Verdict
     from legwright.decide.brief import Brief
+    from legwright.decide.couple import Joined, Part
     from legwright.decide.draws import Confidence
     from legwright.decide.fit import Fit, Parameter
     from legwright.decide.installed import Delivered
@@ -29,6 +30,7 @@ if TYPE_CHECKING:
     from legwright.decide.rank import Row
     from legwright.decide.search import Found
     from legwright.decide.why import Why
+    from legwright.leg.couple import Operation
     from legwright.leg.installed import Running
     from legwright.physics.properties import Properties
 
@@ -249,11 +251,7 @@ def leg_record(found: Delivered, brief: Brief) -> Record:
         "size_nm": nanometres(found.size),
         "doping_per_cm3": None if found.doping is None else found.doping / PER_CM3,
         "length_mm": leg.length_mm if leg.length_free_mm is None else figure("length", 1e3),
-        "contact_uohm_cm2": leg.contact_uohm_cm2,
-        "contact_K_cm2_per_W": leg.contact_K_cm2_per_W,
-        "hot_exchanger_K_cm2_per_W": leg.hot_exchanger_K_cm2_per_W,
-        "cold_exchanger_K_cm2_per_W": leg.cold_exchanger_K_cm2_per_W,
-        "side_loss_W_per_m3_K": leg.side_loss_W_per_m3_K,
+        **_surroundings(brief),
     }
     if generates:
         content["efficiency"] = figure("efficiency")
@@ -273,6 +271,86 @@ def leg_record(found: Delivered, brief: Brief) -> Record:
         "hot_end_K": figure("hot_end"),
         "cold_end_K": figure("cold_end"),
         "flags": list(found.flags),
+    }
+
+
+def _surroundings(brief: Brief) -> Record:
+    leg = brief.leg
+    return {
+        "contact_uohm_cm2": leg.contact_uohm_cm2,
+        "contact_K_cm2_per_W": leg.contact_K_cm2_per_W,
+        "hot_exchanger_K_cm2_per_W": leg.hot_exchanger_K_cm2_per_W,
+        "cold_exchanger_K_cm2_per_W": leg.cold_exchanger_K_cm2_per_W,
+        "side_loss_W_per_m3_K": leg.side_loss_W_per_m3_K,
+    }
+
+
+def segments_record(found: Joined, first: Candidate, brief: Brief) -> Record:
+    """The whole of `leg` for a leg of several materials; the same fields, and its segments hot to cold."""
+    leg = next(parts for parts in found.legs if parts[0].candidate.name == first.name)
+    content: Record = {
+        "candidate": " > ".join(part.candidate.name for part in leg),
+        "shape": brief.size.shape,
+        "length_mm": brief.leg.length_mm,
+        **_surroundings(brief),
+    }
+    if len(found.legs) == 1:
+        content |= {**_joined_figures(found, brief), "strain": found.strains["parts"]}
+    return content | {"segments": [_part_record(part) for part in leg], "flags": list(found.flags)}
+
+
+def couple_record(found: Joined, partner: Candidate, brief: Brief) -> Record:
+    """What a couple adds to its leg's record; areal figures per cm² of both legs together, strains as fractions."""
+    leg = next(parts for parts in found.legs if parts[0].candidate.name == partner.name)
+    running = found.running
+    return {
+        "partner": partner.name,
+        "partner_size_nm": nanometres(leg[0].size),
+        "partner_doping_per_cm3": leg[0].doping / PER_CM3,
+        "area_ratio": None if running is None else float(running.area_ratio),
+        **{f"couple_{name}": value for name, value in _joined_figures(found, brief).items()},
+        "compatibility_per_V": {
+            " > ".join(part.candidate.name for part in parts): [
+                float(s) for part in parts for s in part.compatibility
+            ]
+            for parts in found.legs
+        },
+        "strain": found.strains["parts"],
+        "strain_to_strap": {name: strain for name, strain in found.strains.items() if name != "parts"},
+        "flags": list(found.flags),
+    }
+
+
+def _joined_figures(found: Joined, brief: Brief) -> Record:
+    """Figures of legs that share a current, as `leg_record` names them."""
+    generates = brief.duty.kind == "generator"
+
+    def figure(name: str, scale: float = 1.0, running: Operation | None = found.running) -> float | None:
+        return None if running is None else scale * float(getattr(running, name))
+
+    ratio = "efficiency" if generates else "cop"
+    return {
+        ratio: figure(ratio),
+        f"{ratio}_ideal_contacts": figure(ratio, running=found.ideal),
+        "power_W_per_cm2" if generates else "heat_lifted_W_per_cm2": figure(
+            "power" if generates else "heat_cold", CM2
+        ),
+        **({} if generates else {"delta_t_max_K": found.largest_difference}),
+        "current_A_per_cm2": figure("current", CM2),
+        "hot_end_K": figure("hot_end"),
+        "cold_end_K": figure("cold_end"),
+    }
+
+
+def _part_record(part: Part) -> Record:
+    return {
+        "candidate": part.candidate.name,
+        "size_nm": nanometres(part.size),
+        "doping_per_cm3": part.doping / PER_CM3,
+        "hot_K": part.hot,
+        "cold_K": part.cold,
+        "length_share": None if math.isnan(part.share) else part.share,
+        "compatibility_per_V": [float(s) for s in part.compatibility],
     }
 
 

@@ -200,10 +200,57 @@ _LEG_LABELS = {
 }
 
 
-def leg_table(found: Record, markdown: bool) -> Layout:
+_COUPLE_LABELS = {"area_ratio": "cross-section of n over p"} | {
+    f"couple_{key}": f"couple's {label.replace(' of the leg', '')}"
+    for key, label in _LEG_LABELS.items()
+    if not key.startswith(("heat_from", "heat_to", "heat_through"))
+}
+
+
+def leg_tables(found: Record, markdown: bool) -> list[Layout]:
+    """What a leg delivers; then, where it has them, its segments and what it delivers in a couple."""
+    tables = [_leg_table(found, markdown)]
+    if "segments" in found:
+        tables.append(_segments_table(found["segments"], markdown))
+    if "partner" in found:
+        size = "coarse" if found["partner_size_nm"] is None else f"{figure(found['partner_size_nm'])} nm"
+        title = f"Couple with {found['partner']}, {size}, {found['partner_doping_per_cm3']:.3g} cm⁻³"
+        pairs = [(label, figure(found[key])) for key, label in _COUPLE_LABELS.items() if key in found]
+        pairs += [
+            (f"compatibility of {name}, hot to cold [1/V]", " … ".join(figure(s, 2) for s in (all_s[0], all_s[-1])))
+            for name, all_s in found["compatibility_per_V"].items()
+        ]
+        pairs.append(("strain between the legs", _percents(found["strain"])))
+        pairs += [(f"strain to {strap}", _percents(value)) for strap, value in found["strain_to_strap"].items()]
+        tables.append(pairs_table(title, pairs, markdown))
+    return tables
+
+
+def _percents(share: float | None) -> str:
+    return "–" if share is None else f"{100 * share:.2f} %"
+
+
+def _segments_table(rows: Sequence[Record], markdown: bool) -> Layout:
+    columns = ("segment", "hot [K]", "cold [K]", "length", "size [nm]", "doping [cm⁻³]", "compatibility [1/V]")
+    cells = (
+        (
+            row["candidate"],
+            figure(row["hot_K"]),
+            figure(row["cold_K"]),
+            "–" if row["length_share"] is None else percent(row["length_share"]),
+            "coarse" if row["size_nm"] is None else figure(row["size_nm"]),
+            f"{row['doping_per_cm3']:.3g}",
+            " … ".join(figure(s, 2) for s in (row["compatibility_per_V"][0], row["compatibility_per_V"][-1])),
+        )
+        for row in rows
+    )
+    return draw("Segments, hot to cold", columns, cells, markdown)
+
+
+def _leg_table(found: Record, markdown: bool) -> Layout:
     """What a leg delivers."""
-    title = f"{found['candidate']} ({found['formula']})"
-    if found["doping_per_cm3"] is not None:
+    title = found["candidate"] + (f" ({found['formula']})" if "formula" in found else "")
+    if found.get("doping_per_cm3") is not None:
         size = "coarse" if found["size_nm"] is None else f"{figure(found['size_nm'])} nm"
         title += f", {found['shape']} {size}, {found['doping_per_cm3']:.3g} cm⁻³"
     pairs = [(label, figure(found[key])) for key, label in _LEG_LABELS.items() if key in found]

@@ -6,7 +6,7 @@ from pathlib import Path
 
 import click
 
-from legwright.base.errors import NothingFeasible
+from legwright.base.errors import InputError, NothingFeasible
 from legwright.show.options import output, publish
 
 
@@ -28,13 +28,17 @@ def rank_verb(
     markdown: bool,
 ) -> None:
     """Rank the candidates of BRIEF, each at its best size and doping."""
-    from legwright.decide.brief import load_brief
+    from legwright.decide.brief import load_brief, partner_of
+    from legwright.decide.couple import rank_with
     from legwright.decide.draws import confidences
     from legwright.decide.rank import rank
     from legwright.show import layout, records, tables
 
     job = load_brief(brief)
-    found = rank(job, brief, workers)
+    partner = partner_of(job, brief)
+    if partner and draws:
+        raise InputError("gives intervals to legs alone: leave it out, or the partner", key="--draws")
+    found = rank_with(job, brief, partner, workers) if partner else rank(job, brief, workers)
     sure = confidences(job, found, draws, seed) if draws else None
     rows = [records.rank_record(row, sure) for row in found]
     under = records.notes((f for row in found for f in row.flags), (row.candidate for row in found if row.score))
@@ -43,7 +47,8 @@ def rank_verb(
     def table() -> None:
         out = layout.console(markdown)
         duty = job.duty
-        heading = f"{job.title}: {duty.kind} leg, {duty.cold_K:g} to {duty.hot_K:g} K, {job.size.shape} size"
+        what = f"couple with {partner.name}" if partner else "leg"
+        heading = f"{job.title}: {duty.kind} {what}, {duty.cold_K:g} to {duty.hot_K:g} K, {job.size.shape} size"
         out.print(tables.rank_table(heading, rows, markdown))
         tables.footnotes(out, under["flag_meanings"], under["cautions"])
 
