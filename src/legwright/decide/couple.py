@@ -16,8 +16,8 @@ from legwright.base.units import CM2
 from legwright.candidate.library import Candidate
 from legwright.candidate.straps import load_straps
 from legwright.decide.brief import Brief, LegTable
-from legwright.decide.rank import Row, design_or_best, rank
-from legwright.decide.score import leg_material, nodes_between
+from legwright.decide.rank import Row, design_or_best, doping_range, rank
+from legwright.decide.score import leg_material, nodes_between, score
 from legwright.decide.warnings import point_flags
 from legwright.leg.balance import LegMaterial
 from legwright.leg.couple import (
@@ -40,6 +40,8 @@ _SUITED = 2.0
 _BORNE, ROOM = 2e-3, 300.0
 #: nodes of each material's splines, and temperatures at which parts are compared
 _NODES, _LOOKS = 17, 5
+#: dopings looked at where the size is given
+_DOPINGS = 81
 #: rounds of design and interfaces in turn; no segment is designed for less than this (K) or has less of the length
 _ROUNDS, _LEAST_SPAN, _LEAST_SHARE = 2, 20.0, 0.01
 
@@ -123,16 +125,16 @@ def best_pairs(brief: Brief, path: str | Path, count: int | None = None, workers
     order = sorted(np.ndindex(*scores.shape), key=lambda at: (-scores[at], at))[:count]
     pairs = []
     for i, j in order:
-        score, ratio = float(scores[i, j]), float(ratios[i, j])
+        best, ratio = float(scores[i, j]), float(ratios[i, j])
         if duty.setting.hot_resistance or duty.setting.cold_resistance:
-            score, ratio = _exact([n_legs[i], p_legs[j]], duty)
+            best, ratio = _exact([n_legs[i], p_legs[j]], duty)
         pairs.append(
             Pair(
                 n_rows[i],
                 p_rows[j],
-                _shown(score, duty),
+                _shown(best, duty),
                 SCORE_NAMES[duty.maximise],
-                ratio if score and np.isfinite(ratio) else None,
+                ratio if best and np.isfinite(ratio) else None,
             )
         )
     return sorted(pairs, key=lambda one: (-one.score, one.n.candidate.name, one.p.candidate.name))
@@ -151,9 +153,9 @@ def rank_with(brief: Brief, path: str | Path, partner: Candidate, workers: int =
         if not row.score:
             return row
         leg = Segments((_material(brief, row.candidate, *_design_of(row)),))
-        score, _ = _exact([leg, beside] if wanted == "n" else [beside, leg], duty)
-        flags = ordered([*row.flags, "score-of-couple", *(() if score else ("duty-out-of-reach",))])
-        return replace(row, score=_shown(score, duty), flags=flags)
+        best, _ = _exact([leg, beside] if wanted == "n" else [beside, leg], duty)
+        flags = ordered([*row.flags, "score-of-couple", *(() if best else ("duty-out-of-reach",))])
+        return replace(row, score=_shown(best, duty), flags=flags)
 
     rows = [of_couple(row) for row in rank(brief.model_copy(update={"candidates": use}), path, workers)]
     rows.sort(key=lambda row: (-row.score, row.candidate.name))
@@ -165,12 +167,13 @@ def designed(
 ) -> Design:
     """The leg of these materials, hot to cold, each at its best doping and size for the span it gets.
 
-    Of one material: as given, else the brief's best. Raises InputError where one cannot serve.
+    Of one material: as given, else the brief's best. A size given for several is that of all.
+    Raises InputError where one cannot serve.
     """
     if len(candidates) == 1:
         return ((candidates[0], *design_or_best(candidates[0], brief, doping, size)),)
-    if doping is not None or size is not None:
-        raise InputError("a leg of several materials has several designs: leave doping and size out", key="--then")
+    if doping is not None:
+        raise InputError("a leg of several materials has several dopings: leave it out", key="--doping")
     carriers = {one.data.carrier for one in candidates}
     if len(carriers) > 1:
         raise InputError(
@@ -181,7 +184,7 @@ def designed(
     ends = [duty.hot, *_capped(np.linspace(duty.hot, duty.cold, len(candidates) + 1)[1:-1], ceilings), duty.cold]
     for _ in range(_ROUNDS):
         design = tuple(
-            (one, *_design_for(brief, one, hot, cold))
+            (one, *_design_for(brief, one, hot, cold, size))
             for one, hot, cold in zip(candidates, ends, ends[1:], strict=False)
         )
         ends = [float(t) for t in _meeting(design, brief, duty).ends(duty.hot, duty.cold)]
@@ -248,13 +251,27 @@ def _capped(interfaces: Array, ceilings: Sequence[float]) -> list[float]:
     return [float(t) for t in np.minimum.accumulate(np.minimum(interfaces, ceilings[1:]))]
 
 
-def _design_for(brief: Brief, candidate: Candidate, hot: float, cold: float) -> tuple[float, float]:
+def best_doping(brief: Brief, candidate: Candidate, size: float) -> float:
+    """The doping (1/m³) within the candidate's and the brief's range that serves best at that size (m)."""
+    limits = doping_range(brief, candidate)
+    if limits is None:
+        raise InputError(f"no doping of {candidate.name} lies within the brief's range", key="doping")
+    dopings = np.geomspace(*limits, _DOPINGS)
+    return float(dopings[np.argmax(score(candidate, brief.task, dopings, size, brief.size.shape))])
+
+
+def _design_for(
+    brief: Brief, candidate: Candidate, hot: float, cold: float, size: float | None
+) -> tuple[float, float]:
     """Best doping and size over a part of the duty's span, with nothing between the part and its ends."""
     duty = brief.duty
     middle, half = 0.5 * (hot + cold), 0.5 * max(hot - cold, _LEAST_SPAN)
     goal = "cop" if duty.maximise == "delta_t" else duty.maximise
     part = duty.model_copy(update={"hot_K": middle + half, "cold_K": middle - half, "maximise": goal})
-    return design_or_best(candidate, brief.model_copy(update={"duty": part, "leg": LegTable()}), None, None)
+    alone = brief.model_copy(update={"duty": part, "leg": LegTable()})
+    if size is not None:
+        return best_doping(alone, candidate, size), size
+    return design_or_best(candidate, alone, None, None)
 
 
 def _material(brief: Brief, candidate: Candidate, doping: float, size: float) -> LegMaterial:
@@ -277,9 +294,9 @@ def _exact(legs: Sequence[Segments], duty: Duty) -> tuple[float, float]:
     return float(made.score), float(made.area_ratio)
 
 
-def _shown(score: float, duty: Duty) -> float:
+def _shown(value: float, duty: Duty) -> float:
     """Fractions and K as they are, areal figures in W/cm²."""
-    return score * CM2 if duty.maximise in ("power", "heat_lifted") else score
+    return value * CM2 if duty.maximise in ("power", "heat_lifted") else value
 
 
 def _held(made: Operation, duty: Duty) -> Operation | None:

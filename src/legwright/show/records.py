@@ -23,6 +23,7 @@ if TYPE_CHECKING:
     from legwright.decide.audit import Total, Verdict
     from legwright.decide.brief import Brief
     from legwright.decide.couple import Joined, Part
+    from legwright.decide.devices import DeviceVerdict
     from legwright.decide.draws import Confidence
     from legwright.decide.fit import Fit, Parameter
     from legwright.decide.installed import Delivered
@@ -400,6 +401,30 @@ def total_record(one: Total) -> Record:
         "coverage_95": list(one.cover_interval),
         "coverage_by_paper": one.paper_cover,
         "coverage_by_paper_95": list(one.paper_interval),
+    }
+
+
+def device_record(one: DeviceVerdict) -> Record:
+    """One published leg, couple or module of `audit`; powers in W/cm²."""
+    device = one.device
+    unit, factor = {"efficiency": ("1", 1.0), "power": ("W/cm^2", 1 / CM2), "delta_t": ("K", 1.0)}[device.quantity]
+    return {
+        "device": device.device,
+        "n": " > ".join(device.n) or None,
+        "p": " > ".join(device.p) or None,
+        "n_size_nm": nanometres(device.n_size),
+        "p_size_nm": nanometres(device.p_size),
+        "hot_K": device.hot,
+        "cold_K": device.cold,
+        "quantity": device.quantity,
+        "unit": unit,
+        "measured": device.measured / factor,
+        "computed": one.computed / factor,
+        "ratio": one.ratio,
+        "fixed": one.fixed,
+        "source": device.source,
+        "basis": device.basis,
+        "note": device.note,
     }
 
 
