@@ -128,3 +128,80 @@ def test_free_paths_feel_a_length_that_is_named(brief, legwright):
         for k, change in enumerate(({"leg.length_mm": "0.003"}, {}))
     )
     assert 1 < thin < long  # grains gain less where the leg already stops the long paths
+
+
+PARTNER = {"leg.partner": '"sige-p"'}
+
+
+def test_a_partner_adds_the_couple_and_leaves_the_leg(brief, legwright):
+    alone = legwright("leg", "sige-n", brief(name="alone.toml"), "--json").json
+    said = legwright("leg", "sige-n", brief(PARTNER, name="couple.toml"), "--json").json
+    assert {key: said[key] for key in ("efficiency", "power_W_per_cm2", "current_A_per_cm2", "hot_end_K")} == {
+        key: alone[key] for key in ("efficiency", "power_W_per_cm2", "current_A_per_cm2", "hot_end_K")
+    }
+    assert said["partner"] == "sige-p"
+    assert 0 < said["area_ratio"] < 10
+    assert 0 < said["couple_efficiency"] < 1 - 400 / 700
+    assert set(said["compatibility_per_V"]) == {"sige-n", "sige-p"}
+    assert said["strain"] is not None
+    assert {"copper", "nickel", "molybdenum"} <= set(said["strain_to_strap"])
+    named = legwright("leg", "sige-n", brief(name="alone.toml"), "--partner", "sige-p", "--json").json
+    assert named == said
+
+
+def test_a_cooling_couple(brief, legwright):
+    changes = {**COOLER, "duty.maximise": '"cop"', "leg.partner": '"bitese-n"'}
+    said = legwright("leg", "bisbte-p", brief(changes), "--json").json
+    assert 0 < said["couple_cop"] < 280 / 20
+    assert 40 < said["couple_delta_t_max_K"] < 110
+    assert said["couple_heat_lifted_W_per_cm2"] > 0
+
+
+def test_segments_are_told_hot_to_cold(brief, legwright):
+    said = legwright("leg", "pbte-p", brief({"duty.hot_K": "700"}), "--then", "bisbte-p", "--json").json
+    assert said["candidate"] == "pbte-p > bisbte-p"
+    upper, lower = said["segments"]
+    assert upper["hot_K"] == 700
+    assert upper["cold_K"] == lower["hot_K"]
+    assert upper["length_share"] + lower["length_share"] == pytest.approx(1.0)
+    assert said["efficiency"] > 0
+    assert said["power_W_per_cm2"] > 0
+
+
+def test_the_tables_of_couple_and_segments_name_their_figures(brief, legwright):
+    said = legwright("leg", "pbte-p", brief({"duty.hot_K": "700"}), "--then", "bisbte-p", "--partner", "pbte-n")
+    assert said.code == 0
+    for words in ("Segments, hot to cold", "Couple with pbte-n", "cross-section of n over p", "strain to copper"):
+        assert words in said.out
+
+
+@pytest.mark.parametrize(
+    ("arguments", "words"),
+    [
+        (("--partner", "si-n"), "both n"),
+        (("--partner", "sige-q"), "no candidate"),
+        (("--then", "sige-p"), "of one carrier"),
+        (("--then", "si-n", "--doping", "1e20"), "several dopings"),
+    ],
+)
+def test_legs_that_cannot_be_joined_are_refused(arguments, words, brief, legwright):
+    said = legwright("leg", "sige-n", brief(), *arguments)
+    assert said.code == 2
+    assert said.out == ""
+    assert words in said.err
+
+
+def test_rank_with_a_partner_takes_the_other_carrier_and_no_draws(brief, legwright):
+    changes = {**PARTNER, "candidates.use": '["sige-n", "sige-p", "si-n"]'}
+    rows = legwright("rank", brief(changes), "--json").json["rows"]
+    assert {row["candidate"] for row in rows} == {"sige-n", "si-n"}
+    assert all("score-of-couple" in row["flags"] for row in rows)
+    said = legwright("rank", brief(changes), "--draws", "8")
+    assert said.code == 2
+    assert "--draws" in said.err
+
+
+def test_a_partner_that_is_not_there_is_refused_by_its_key(brief, legwright):
+    said = legwright("rank", brief({"leg.partner": '"sige-x"'}))
+    assert said.code == 2
+    assert "leg.partner" in said.err
