@@ -37,7 +37,8 @@ def test_a_couple_lies_between_its_legs(job):
 
 def test_compatibility_is_that_of_the_parts(job):
     part = pair(job, load_candidate("mg3sbbi-n"), load_candidate("mgagsb-p")).legs[0][0]
-    made = evaluate(part.candidate, np.array([job.duty.hot_K]), part.doping, part.size)
+    at = np.array([job.duty.hot_K])
+    made = evaluate(part.candidate, at, part.doping, part.size, length=job.task.felt_length)
     expected = compatibility_factor(-made.seebeck, made.zt, made.temperature)
     assert part.compatibility[0] == pytest.approx(float(expected[0]), rel=1e-12)
 

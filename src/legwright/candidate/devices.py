@@ -20,7 +20,10 @@ _SI = {"efficiency": "1", "power": "W/m^2", "delta_t": "K"}
 
 
 class Device(Table):
-    """One published figure of a device; SI. `n` and `p`: candidates hot to cold, one or both."""
+    """One published figure of a device; SI. `n` and `p`: candidates hot to cold, one or both.
+
+    `length` of the legs: needed for a power per area alone.
+    """
 
     device: str = Field(min_length=1)
     n: tuple[str, ...]
@@ -31,7 +34,7 @@ class Device(Table):
     cold: float | None
     quantity: Literal["efficiency", "power", "delta_t"]
     measured: float = Field(gt=0)
-    length: float = Field(gt=0)
+    length: float | None = Field(gt=0)
     source: str = Field(min_length=1)
     basis: str = Field(min_length=1)
     note: str
@@ -42,6 +45,8 @@ class Device(Table):
             raise ValueError("names neither an n nor a p leg")
         if (self.cold is None) != (self.quantity == "delta_t"):
             raise ValueError("has a cold side unless its largest difference is given")
+        if self.quantity == "power" and self.length is None:
+            raise ValueError("gives a power per area and no length")
         return self
 
 

@@ -276,8 +276,13 @@ def _design_for(
 
 def _material(brief: Brief, candidate: Candidate, doping: float, size: float) -> LegMaterial:
     low, high = brief.task.reach
-    temperature = nodes_between(max(low, COLDEST), high, _NODES)
-    return leg_material(candidate, evaluate(candidate, temperature, doping, size, brief.size.shape))
+    made = _properties(brief, candidate, nodes_between(max(low, COLDEST), high, _NODES), doping, size)
+    return leg_material(candidate, made)
+
+
+def _properties(brief: Brief, candidate: Candidate, temperature: Array, doping: float, size: float) -> Properties:
+    """At those temperatures (K); a segment feels the length of the whole leg."""
+    return evaluate(candidate, temperature, doping, size, brief.size.shape, brief.task.felt_length)
 
 
 def _meeting(leg: Design, brief: Brief, duty: Duty) -> Segments:
@@ -327,7 +332,7 @@ def _parts(
 
 
 def _looked_at(brief: Brief, one: Candidate, doping: float, size: float, hot: float, cold: float) -> Properties:
-    return evaluate(one, np.linspace(hot, cold, _LOOKS), doping, size, brief.size.shape)
+    return _properties(brief, one, np.linspace(hot, cold, _LOOKS), doping, size)
 
 
 def _flags(part: Part, brief: Brief) -> list[str]:

@@ -68,5 +68,6 @@ def _brief(one: Device) -> Brief:
         cold_K=one.hot - _LITTLE if one.cold is None else one.cold,
         maximise=goal,
     )
+    leg = LegTable() if one.length is None else LegTable(length_mm=1e3 * one.length)
     size = SizeTable(shape="grain", min_nm=10.0, max_nm=1e5)
-    return Brief(title=one.device, duty=duty, size=size, leg=LegTable(length_mm=1e3 * one.length))
+    return Brief(title=one.device, duty=duty, size=size, leg=leg)
