@@ -7,7 +7,13 @@ from collections.abc import Iterable
 MEANINGS: dict[str, str] = {
     "above-service-temperature": (
         "The hot side is above the highest service temperature in the candidate's file; the leg would "
-        "sublime, oxidise, melt or lose its dopant. Score 0."
+        'sublime, oxidise, melt or lose its dopant. Score 0, unless the brief says beyond_service = "flag".'
+    ),
+    "volatile-near-service-limit": (
+        "The hot side is within 50 K or a tenth of the highest service temperature, or above it, and the candidate "
+        "holds elements that evaporate there (P, S, Zn, As, Se, Cd, Sb, Te, Mg, Hg, Tl, Pb): toxic or flammable "
+        "deposits gather on colder parts and in the vacuum or gas system. Sealing, extraction and cleaning are "
+        "matters for local codes and licensed practice."
     ),
     "duty-out-of-reach": "No current lets this leg serve the duty (a cooler cannot span the asked difference).",
     "no-doping-range": "The brief's doping range and the candidate's own do not overlap. Score 0.",

@@ -102,6 +102,9 @@ class LegTable(Table):
     Free paths of carriers and phonons feel a length that is named; else, and where it is free, the leg is long.
     Contacts, electric and thermal, are those of one end, alike at both. side_loss is a heat-transfer coefficient
     times the leg's perimeter over its area: 10 W/(m² K) on a leg 2 mm square is 2e4 W/(m³ K).
+    hours of service: not looked at where none are said. width, of a square leg, bears on sublimation: as its length
+    where it is not said (common practice has both at 1 to 5 mm). beyond_service: what is done with a candidate
+    hotter than it may be used.
     """
 
     length_mm: Length = DEFAULT_LENGTH_MM
@@ -113,6 +116,9 @@ class LegTable(Table):
     side_loss_W_per_m3_K: Annotated[float, Field(ge=0, le=1e9)] = 0.0
     ambient_K: Temperature | None = None
     partner: Annotated[str, Field(min_length=1)] | None = None
+    hours: Annotated[float, Field(gt=0, le=1e7)] | None = None
+    width_mm: Length | None = None
+    beyond_service: Literal["refuse", "flag"] = "refuse"
 
     @model_validator(mode="after")
     def _ordered(self) -> LegTable:

@@ -49,7 +49,7 @@ def deliver(candidate: Candidate, brief: Brief, doping: float | None, size: floa
     """
     duty, shape = brief.task, brief.size.shape
     highest = candidate.data.service.highest_temperature.si
-    if duty.hot > highest:
+    if duty.hot > highest and brief.leg.beyond_service == "refuse":
         why = f"{candidate.name} serves up to {highest:g} K: hot_K at most {highest:g}"
         flag = ("above-service-temperature",)
         return Delivered(candidate, doping, size, shape, None, None, None, None, flag, why)
@@ -59,7 +59,7 @@ def deliver(candidate: Candidate, brief: Brief, doping: float | None, size: floa
         candidate, nodes_between(max(low, COLDEST), high, _NODES), doping, size, shape, duty.felt_length
     )
     material = leg_material(candidate, made)
-    job = _served(duty)
+    job = served(duty)
     running, ideal = (_one(material, each) for each in (job, job.alone))
     matched = None
     if running is not None and duty.kind == "generator":
@@ -84,7 +84,7 @@ def _design(brief: Brief, candidate: Candidate, doping: float | None, size: floa
     return design_or_best(candidate, brief, doping, size)
 
 
-def _served(duty: Duty) -> Duty:
+def served(duty: Duty) -> Duty:
     """A leg asked for its largest difference runs at its best COP at the duty's own temperatures."""
     return replace(duty, maximise="cop") if duty.maximise == "delta_t" else duty
 

@@ -147,7 +147,8 @@ def refusal(brief: Brief, candidate: Candidate, duty: Duty) -> str | None:
         concentration = supply_concentration(candidate)
         if concentration is None or concentration > avoid.supply_concentration_above:
             return "supply-too-concentrated"
-    if duty.hot > candidate.data.service.highest_temperature.si:
+    too_hot = duty.hot > candidate.data.service.highest_temperature.si
+    if too_hot and brief.leg.beyond_service == "refuse":
         return "above-service-temperature"
     return None
 
@@ -218,10 +219,14 @@ def window(
     return window_of(length, score(candidate, duty, doping, length, shape))
 
 
-def window_of(size: Array, scores: Array) -> tuple[float, float, bool]:
-    """Window of a score curve over ascending sizes; its ends are interpolated in ln(size) between samples."""
+def window_of(size: Array, scores: Array, level: float | None = None) -> tuple[float, float, bool]:
+    """Window of a score curve over ascending sizes; its ends are interpolated in ln(size) between samples.
+
+    `level`: the score that counts as inside, not above the best; WINDOW_SHARE of the best where it is not given.
+    """
     best = int(np.argmax(scores))
-    level = WINDOW_SHARE * scores[best]
+    if level is None:
+        level = WINDOW_SHARE * float(scores[best])
     outside = np.flatnonzero(scores < level)
     below, above = outside[outside < best], outside[outside > best]
 

@@ -108,9 +108,9 @@ def most_sublimed(measured: ArrayLike, rate: ArrayLike, temperature: ArrayLike) 
     """Mass lost to vapour per area and time, at most, kg/(m² s); nan where it is not known.
 
     Between measured temperatures ln(rate) is a straight line over 1/T (Langmuir's law with the vapour pressure's
-    heat of sublimation). A rate falls as it gets colder, so below the coldest measurement that one is the most; above
-    the hottest nothing is known. measured T (K) and rate (kg/(m² s)): ascending, of one axis; temperature (K): any
-    shape. ValueError for other measurements.
+    heat of sublimation). A rate falls as it gets colder, so below the coldest measurement that one is the most;
+    above the hottest nothing is known. measured T (K) and rate (kg/(m² s)): ascending, of one axis; temperature
+    (K): any shape. ValueError for other measurements.
     Source: Langmuir, Physical Review 2, 329 (1913).
 
     >>> most_sublimed([1000.0, 1250.0], [1e-8, 1e-6], [900.0, 1111.1111, 1300.0]).round(12).tolist()

@@ -30,6 +30,7 @@ if TYPE_CHECKING:
     from legwright.decide.peak import Peak
     from legwright.decide.rank import Row
     from legwright.decide.search import Found
+    from legwright.decide.service import Service
     from legwright.decide.why import Why
     from legwright.leg.couple import Operation
     from legwright.leg.installed import Running
@@ -355,6 +356,37 @@ def _part_record(part: Part) -> Record:
     }
 
 
+def service_record(found: Service) -> Record:
+    """What hours of service leave of a leg; null: not known."""
+    sizes = None if found.size is None else [nanometres(float(size)) for size in found.size]
+    return {
+        "hours": found.hours,
+        "width_mm": found.width * 1e3,
+        "score_name": found.score_name,
+        "score_start": found.score_start,
+        "score_end": found.score_end,
+        "score_end_counts": list(found.counted),
+        "size_hot_end_nm": sizes and sizes[0],
+        "size_cold_end_nm": sizes and sizes[-1],
+        "best_starting_size_nm": nanometres(found.best_start),
+        "starting_window_nm": None if found.start_window is None else [end / NM for end in found.start_window],
+        "along": {
+            "position_mm": (found.position * 1e3).tolist(),
+            "temperature_K": found.temperature.tolist(),
+            "size_nm": sizes,
+        },
+        "hours_to_lose_a_tenth": {
+            wear.process: {
+                "status": wear.status,
+                "hours": wear.hours,
+                "factor_1_sigma": wear.factor,
+                "reason": wear.reason,
+            }
+            for wear in found.wear
+        },
+    }
+
+
 def fit_record(found: Fit, into: Path | None) -> Record:
     """The whole of `fit`; densities in 1/cm³, other parameters as factors on the start's (gap: eV)."""
 
@@ -459,8 +491,7 @@ def as_csv(records: list[Record]) -> str:
     """Records as CSV; lists are joined by spaces, inner tables are spread over columns."""
     import pandas as pd
 
-    flat = [
-        {key: " ".join(map(str, value)) if isinstance(value, list) else value for key, value in record.items()}
-        for record in records
-    ]
-    return str(pd.json_normalize(flat).to_csv(index=False, lineterminator="\n"))
+    flat = pd.json_normalize(records).map(
+        lambda value: " ".join(map(str, value)) if isinstance(value, list) else value
+    )
+    return str(flat.to_csv(index=False, lineterminator="\n"))

@@ -257,6 +257,46 @@ def _leg_table(found: Record, markdown: bool) -> Layout:
     return pairs_table(title, pairs, markdown)
 
 
+def service_tables(found: Record, start_nm: float | None, markdown: bool) -> list[Layout]:
+    """What hours of service leave, and how long each process takes."""
+    sizes = found["along"]["size_nm"]
+    ends = "unknown" if sizes is None else " … ".join(_size(sizes[end]) for end in (0, -1))
+    counted = " and ".join(found["score_end_counts"])
+    left = "unknown" if found["score_end"] is None else f"{figure(found['score_end'], 4)} (counts {counted} alone)"
+    best = found["best_starting_size_nm"]
+    pairs = [
+        (f"{found['score_name']} at the start", figure(found["score_start"], 4)),
+        ("at the end", left),
+        ("size at the start [nm]", _size(start_nm)),
+        ("at the end, hot … cold [nm]", ends),
+        ("best size to start with [nm]", "unknown" if best is None else figure(best)),
+        ("starts that end inside the window [nm]", span(found["starting_window_nm"])),
+    ]
+    wears = draw(
+        "Hours until a tenth is lost",
+        ("process", "hours", "within a factor", "why"),
+        (
+            (
+                process,
+                figure(wear["hours"]) if wear["status"] == "known" else _unsure(wear),
+                figure(wear["factor_1_sigma"], 2),
+                wear["reason"],
+            )
+            for process, wear in found["hours_to_lose_a_tenth"].items()
+        ),
+        markdown,
+    )
+    return [pairs_table(f"After {found['hours']:g} hours", pairs, markdown), wears]
+
+
+def _size(nm: float | None) -> str:
+    return "coarse" if nm is None else figure(nm)
+
+
+def _unsure(wear: Record) -> str:
+    return str(wear["status"]) if wear["hours"] is None else f"{wear['status']} {figure(wear['hours'])}"
+
+
 def fit_tables(found: Record, markdown: bool) -> list[Layout]:
     """Parameters with their intervals, and how well each quantity is met."""
     parameters = draw(

@@ -39,6 +39,7 @@ def leg_verb(
     from legwright.decide.brief import load_brief, partner_of
     from legwright.decide.couple import designed, join
     from legwright.decide.installed import deliver
+    from legwright.decide.service import service
     from legwright.show import layout, records, tables
 
     one, job = load_candidate(candidate), load_brief(brief)
@@ -49,19 +50,26 @@ def leg_verb(
         design = designed(job, materials, doping, size)
         joined = join(job, [design, *([designed(job, [other])] if other else [])])
         _, doping, size = design[0]
+    aged = None
     if then:
         content = records.segments_record(joined, materials[0], job)
     else:
         found = deliver(one, job, doping, size)
         content = records.leg_record(found, job)
+        aged = service(found, job)
     if other:
         content |= records.couple_record(joined, other, job)
+    if aged is not None:
+        content["service"] = records.service_record(aged)
     under = records.notes(content["flags"], [*materials, *([other] if other else [])])
 
     def table() -> None:
         out = layout.console(markdown)
         for one_table in tables.leg_tables(content, markdown):
             out.print(one_table)
+        if aged is not None:
+            for part in tables.service_tables(content["service"], content["size_nm"], markdown):
+                out.print(part)
         tables.footnotes(out, under["flag_meanings"], under["cautions"])
 
     publish("leg", {**content, **under}, [content], as_json, csv_file, table)
