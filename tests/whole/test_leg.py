@@ -205,3 +205,41 @@ def test_a_partner_that_is_not_there_is_refused_by_its_key(brief, legwright):
     said = legwright("rank", brief({"leg.partner": '"sige-x"'}))
     assert said.code == 2
     assert "leg.partner" in said.err
+
+
+def test_hours_of_service_are_told_only_when_asked(brief, legwright, tmp_path):
+    design = ("--doping", "2e20", "--size", "50")
+    assert "service" not in legwright("leg", "sige-n", brief(), *design, "--json").json
+    path, table = brief({"leg.hours": "40000", "leg.width_mm": "2.7"}), tmp_path / "rows.csv"
+    said = legwright("leg", "sige-n", path, *design, "--json", "--csv", table).json
+    service = said["service"]
+    assert service["hours"] == 40000
+    assert service["width_mm"] == pytest.approx(2.7, rel=1e-12)
+    assert service["score_start"] == pytest.approx(said["efficiency"], rel=1e-6)
+    assert service["score_end_counts"] == ["dopant loss"]
+    assert service["size_hot_end_nm"] is None  # no annealing of this alloy is known whole
+    assert service["along"]["temperature_K"][0] == pytest.approx(700, abs=1e-9)
+    wears = service["hours_to_lose_a_tenth"]
+    assert wears["grain growth"]["status"] == "unknown"
+    assert wears["sublimation, under silicon nitride"]["status"] == "at least"
+    assert wears["sublimation, under silicon nitride"]["hours"] > 1e5
+    header, row = table.read_text(encoding="utf-8").splitlines()
+    assert "service.score_end" in header
+    assert "[" not in row
+    out = legwright("leg", "sige-n", path, *design).out
+    for words in ("After 40000 hours", "Hours until a tenth is lost", "at least", "unknown"):
+        assert words in out
+
+
+def test_a_candidate_past_its_service_limit_ranks_with_its_flags_when_the_brief_says_so(brief, legwright):
+    hot = {"duty.hot_K": "900", "candidates.use": '["pbte-p"]'}
+    refused = legwright("rank", brief(hot), "--json")
+    assert refused.code == 3
+    assert refused.json["rows"][0]["flags"] == ["above-service-temperature"]
+    flagged = {**hot, "leg.beyond_service": '"flag"'}
+    row = legwright("rank", brief(flagged), "--json").json["rows"][0]
+    assert row["score"] > 0
+    assert {"above-service-temperature", "volatile-near-service-limit"} <= set(row["flags"])
+    said = legwright("leg", "pbte-p", brief(flagged), "--json")
+    assert said.code == 0
+    assert said.json["efficiency"] == pytest.approx(row["score"], rel=1e-3)  # rank's own search of the current

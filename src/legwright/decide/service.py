@@ -28,7 +28,7 @@ from legwright.leg.ageing import (
     time_to_thin,
 )
 from legwright.leg.balance import LegMaterial
-from legwright.leg.duty import SCORE_NAMES, best_score
+from legwright.leg.duty import SCORE_NAMES, score_of
 from legwright.leg.installed import Running, best_running
 from legwright.physics.properties import COLDEST, Properties, evaluate
 from legwright.physics.solubility import lasting_density
@@ -39,8 +39,8 @@ Status = Literal["known", "at least", "not expected", "unknown"]
 #: a leg is worn when it keeps no more than this share: a tenth lost is the usual end of life of generators
 WORN = 0.9
 #: hours looked at; what lasts longer is told as at least the last
-_LONGEST, _TIMES = 1e7, 113
-_NODES, _SIZES, _PLACES, _SHOWN, _ROUNDS = 33, 97, 201, 11, 8
+_LONGEST, _TIMES = 1e7, 71
+_NODES, _SIZES, _PLACES, _SHOWN = 65, 65, 201, 11
 
 
 @dataclass(frozen=True)
@@ -134,15 +134,15 @@ class _Ageing:
         t = self.nodes.reshape(-1, *(1,) * max(np.ndim(sizes), np.ndim(hours)))
         size = sizes if self.growth is None else self.grown(sizes, t, hours)
         doping = lasting_density(self.candidate.data.doping, t, self.doping) if lasting else self.doping
-        return evaluate(self.candidate, t, doping, size, self.shape)
+        return evaluate(self.candidate, t, doping, size, self.shape, self.duty.felt_length)
 
     def material(self, sizes: ArrayLike, hours: ArrayLike = 0.0, lasting: bool = False) -> LegMaterial:
         """The same as a leg's material, whose size and doping go with temperature."""
         return leg_material(self.candidate, self.made(sizes, hours, lasting))
 
     def scores(self, sizes: ArrayLike, hours: ArrayLike = 0.0, lasting: bool = False) -> Array:
-        """The brief's score of each such leg."""
-        return best_score(self.material(sizes, hours, lasting), self.duty, _ROUNDS)
+        """The brief's score of each such leg, by the way that follows the steep properties of an aged leg."""
+        return score_of(best_running(self.material(sizes, hours, lasting), self.duty), self.duty)
 
     def grown(self, size: ArrayLike, temperature: ArrayLike, hours: ArrayLike) -> Array:
         assert self.growth is not None

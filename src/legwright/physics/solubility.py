@@ -90,8 +90,8 @@ def active_limit(doping: Doping, temperature: ArrayLike) -> Array:
 
 #: dopants move above this share of the temperature of highest solubility: half the melting point is common practice
 _MOVING = 0.5
-#: and are all in balance a tenth above that: diffusion of a few eV grows a hundredfold over it
-_AWAKE = 0.1
+#: and are all in balance a fifth above that: over it diffusion of 3 to 4 eV grows ten-thousandfold, hours for years
+_AWAKE = 0.2
 
 
 def beyond_solubility(doping: Doping, temperature: ArrayLike, density: ArrayLike) -> NDArray[np.bool_]:
@@ -113,7 +113,7 @@ def beyond_solubility(doping: Doping, temperature: ArrayLike, density: ArrayLike
 def lasting_density(doping: Doping, temperature: ArrayLike, density: ArrayLike) -> Array:
     """What is left active of `density` (1/m³) after long service at a temperature (K), 1/m³; they broadcast.
 
-    `active_limit` where that is less, from a tenth above the temperature at which dopants begin to move; the whole
+    `active_limit` where that is less, from a fifth above the temperature at which dopants begin to move; the whole
     density below that; between the two a smooth step of its logarithm, since the balance comes ever sooner. All of
     it without solubility data, and above the temperature of highest solubility. How long it takes is not in it.
     ValueError and source as `solubility`.
