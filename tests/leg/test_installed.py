@@ -158,6 +158,22 @@ def test_the_best_length_under_exchangers_is_the_best_of_many_lengths():
     assert np.all((free.length > 1e-4) & (free.length < 1e-2))
 
 
+def test_a_best_length_is_found_where_most_lengths_do_not_serve():
+    """Exchangers leave short legs of a cooler no difference, side loss long ones no lift; both ranges hold 2 mm."""
+    material, _ = constant(3e-3, 150.0, 420.0)
+    setting = Setting(1e-9, 1e-4, 1e-4, 3e4)
+    duty = Duty("cooler", 300.0, 270.0, "cop", 2e-3, setting)
+    assert best_running(material, duty).serves
+    assert not best_running(material, replace(duty, length=2e-5)).serves
+    assert not best_running(material, replace(duty, length=1.0)).serves
+    found = [
+        best_running(material, replace(duty, lengths=ends)) for ends in ((2e-6, 4e-3), (1e-3, 1.0), (1e-3, 1e-2))
+    ]
+    assert all(one.serves for one in found)
+    assert [float(one.cop) for one in found[1:]] == pytest.approx([float(found[2].cop)] * 2, rel=1e-9)
+    assert found[0].cop >= best_running(material, duty).cop
+
+
 @pytest.mark.parametrize(("goal", "end"), [("efficiency", 1), ("power", 0)])
 def test_a_free_length_goes_to_its_better_end(goal, end):
     # with contacts alone efficiency grows with length; with nothing at all power falls as 1/L

@@ -31,6 +31,8 @@ _SEEKING, _ANSWERING, _SETTLED = 8, (16, 32, 64), 3e-7
 _FOUND, _TRIALS = 1e-6, 60
 #: the first step of a search, and the longest, as shares of where it stands
 _FIRST_STEP, _LONGEST = 0.15, 0.6
+#: lengths tried first where the length is free
+_LENGTHS = 9
 #: legs of one block: their matrices stay in the fast memory
 _BLOCK = 512
 #: power is looked at this closely, as a share of the heat
@@ -278,17 +280,41 @@ def _expected(legs: Legs, which: Indices, duty: Duty, ends: Ends) -> Array:
 
 def _best_length(legs: Legs, which: Indices, duty: Duty, length: tuple[float, float]) -> Array:
     """Where the goal at the best current has no slope over ln L, or the end of the range towards which it rises."""
-    low, high = np.log(length)
+    every, shortest = np.arange(which.size), length[0]
 
-    def slope(some: Indices, log_length: Array) -> tuple[NDArray[np.bool_], Array]:
-        span = np.exp(log_length)
+    def made_at(some: Indices, x: Array) -> tuple[Profiles, NDArray[np.bool_], Array]:
+        span = shortest * np.exp(x - 1)  # x from 1 up: its steps are shares of where it stands
         current, state = _best_current(legs, which[some], duty, span)
         made = profiles(legs, which[some], _ends(duty, span), current, state)
-        return _within(legs, made) & (current != 0), _slope(duty, made, 2)
+        return made, _within(legs, made) & (current != 0), span
 
-    one = np.ones(which.size)
-    found = _where_flat(slope, 0.5 * (low + high) * one, low * one, high * one)
-    return np.exp(np.where(np.isfinite(found), found, high))
+    def slope(some: Indices, x: Array) -> tuple[NDArray[np.bool_], Array]:
+        made, good, _ = made_at(some, x)
+        return good, _slope(duty, made, 2)
+
+    places = 1 + np.linspace(0, np.log(length[1] / shortest), _LENGTHS)
+    goals = []
+    for place in places:
+        made, good, span = made_at(every, np.full(which.size, place))
+        goals.append(np.where(good, _goal(duty, made, span), -np.inf))
+    best = np.argmax(goals, axis=0)
+    low, high = places[np.maximum(best - 1, 0)], places[np.minimum(best + 1, _LENGTHS - 1)]
+    found = _where_flat(slope, places[best], low, high)
+    return np.clip(shortest * np.exp(np.where(np.isfinite(found), found, places[best]) - 1), *length)
+
+
+def _goal(duty: Duty, made: Profiles, length: Array) -> Array:
+    """What is to be large, to compare lengths by."""
+    with np.errstate(divide="ignore", invalid="ignore"):
+        figures = {
+            "efficiency": made.power[0] / made.from_hot[0],
+            "power": made.power[0] / length,
+            "cop": made.to_cold[0] / made.power[0],
+            "heat_lifted": -made.to_cold[0] / length,
+            "delta_t": -made.cold_end[0],
+        }
+    figure = figures[duty.maximise]
+    return np.where(np.isnan(figure), -np.inf, figure)
 
 
 #: places (of the unknowns) and trial values in, whether there is an answer and the goal's slope out
@@ -298,7 +324,8 @@ _SlopeAt = Callable[[Indices, Array], tuple[NDArray[np.bool_], Array]]
 def _where_flat(slope: _SlopeAt, guess: Array, low: Array, high: Array) -> Array:
     """The last x between low and high to which the goal still rises, for each place; nan where none was good.
 
-    Secant steps, halved into the bracket where they would leave it; where a trial has no answer, x was too large.
+    Secant steps, halved into the bracket where they would leave it. A trial without an answer went too far from the
+    last one that had, or, where none had, was too large.
     """
     x, bottom, top = guess.copy(), low, high
     low, high = low.copy(), high.copy()
@@ -309,8 +336,9 @@ def _where_flat(slope: _SlopeAt, guess: Array, low: Array, high: Array) -> Array
         good, f = slope(active, at)
         rising = good & (f > 0)
         best[active[good]] = at[good]
-        low[active[rising]] = at[rising]
-        high[active[~rising]] = at[~rising]
+        too_small = rising | (~good & (at < old_x[active]))
+        low[active[too_small]] = at[too_small]
+        high[active[~too_small]] = at[~too_small]
         with np.errstate(divide="ignore", invalid="ignore"):
             step = -f * (at - old_x[active]) / (f - old_f[active])
         step = np.where(np.isfinite(step) & (step * f > 0), step, np.sign(f) * _FIRST_STEP)
