@@ -300,7 +300,7 @@ def _best_length(legs: Legs, which: Indices, duty: Duty, length: tuple[float, fl
     best = np.argmax(goals, axis=0)
     low, high = places[np.maximum(best - 1, 0)], places[np.minimum(best + 1, _LENGTHS - 1)]
     found = _where_flat(slope, places[best], low, high)
-    return np.clip(shortest * np.exp(np.where(np.isfinite(found), found, places[best]) - 1), *length)
+    return np.asarray(np.clip(shortest * np.exp(np.where(np.isfinite(found), found, places[best]) - 1), *length))
 
 
 def _goal(duty: Duty, made: Profiles, length: Array) -> Array:
