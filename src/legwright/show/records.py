@@ -19,7 +19,7 @@ from legwright.candidate.sources import bibliography
 from legwright.candidate.supply import cost_per_kg, hazardous_elements, mass_density, supply_concentration
 from legwright.decide.audit import Total, Verdict
 from legwright.decide.brief import Brief
-from legwright.decide.draws import Confidence
+from legwright.decide.confidence import Confidence
 from legwright.decide.fit import Fit, Parameter
 from legwright.decide.installed import Delivered
 from legwright.decide.peak import Peak
@@ -39,7 +39,7 @@ def nanometres(size: float | None) -> float | None:
 
 
 def rank_record(row: Row, sure: dict[str, Confidence] | None = None) -> Record:
-    """One row of `rank`; with draws also its score's interval and how often it wins."""
+    """One row of `rank`; with draws also how sure it is."""
     content: Record = {
         "rank": row.rank,
         "candidate": row.candidate.name,
@@ -54,11 +54,23 @@ def rank_record(row: Row, sure: dict[str, Confidence] | None = None) -> Record:
         "zt_mean": row.zt_mean,
         "zt_peak": row.zt_peak,
         "gain_over_bulk": row.gain_over_bulk,
+        "cost_USD_per_kg": cost_per_kg(row.candidate),
+        "supply_concentration": supply_concentration(row.candidate),
+        "hazardous_elements": list(hazardous_elements(row.candidate)),
         "flags": list(row.flags),
     }
     if sure is not None:
-        known = sure.get(row.candidate.name, Confidence(0.0, 0.0, 0.0))
-        content |= {"score_low": known.low, "score_high": known.high, "win_share": known.win_share}
+        known = sure.get(row.candidate.name)
+        content |= {
+            "score_low": known.low if known else 0.0,
+            "score_high": known.high if known else 0.0,
+            "win_share": known.win_share if known else 0.0,
+            "first_three_share": known.first_three_share if known else 0.0,
+            "size_low_nm": nanometres(known.size_low) if known else None,
+            "size_high_nm": nanometres(known.size_high) if known else None,
+            "nanostructuring_pays": known.nanostructuring_pays if known else None,
+            "tied_with": list(known.tied_with) if known else [],
+        }
     return content
 
 

@@ -67,7 +67,7 @@ SCORE_TITLES = {
 
 
 def rank_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
-    """The ranking; flags are numbered and explained under the table. With draws, how sure each score is."""
+    """The ranking; flags are numbered and explained under the table. With draws, the score's interval."""
     numbers = flag_numbers(rows)
     drawn = "win_share" in rows[0]
     columns = (
@@ -78,7 +78,7 @@ def rank_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
         "window [nm]",
         "doping [cm⁻³]",
         SCORE_TITLES[rows[0]["score_name"]],
-        *(("5 to 95 %", "wins") if drawn else ()),
+        *(("5 to 95 %",) if drawn else ()),
         "zT mean",
         "zT peak",
         "gain over coarse",
@@ -93,7 +93,7 @@ def rank_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
             _span(row["window_nm"]),
             figure(row["doping_per_cm3"]),
             figure(row["score"]),
-            *(_sureness(row) if drawn else ()),
+            *((_interval(row),) if drawn else ()),
             figure(row["zt_mean"]),
             figure(row["zt_peak"]),
             "–" if row["gain_over_bulk"] is None else f"×{row['gain_over_bulk']:.2f}",
@@ -104,10 +104,57 @@ def rank_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
     return draw(title, columns, cells, markdown)
 
 
-def _sureness(row: Record) -> tuple[str, str]:
-    if not row["score"]:
-        return "–", "–"
-    return f"{figure(row['score_low'], 2)} … {figure(row['score_high'], 2)}", f"{100 * row['win_share']:.0f} %"
+def _interval(row: Record) -> str:
+    return f"{figure(row['score_low'], 2)} … {figure(row['score_high'], 2)}" if row["score"] else "–"
+
+
+def sureness_table(rows: Sequence[Record], markdown: bool) -> Table:
+    """Of each candidate that can serve: places over the draws, best size, and whether a small one pays."""
+    columns = ("candidate", "wins", "in first three", "best size, 5 to 95 % [nm]", "small size pays", "tied with")
+    cells = (
+        (
+            f"{row['rank']}. {row['candidate']}",
+            _percent(row["win_share"]),
+            _percent(row["first_three_share"]),
+            _span((row["size_low_nm"], row["size_high_nm"])),
+            _percent(row["nanostructuring_pays"]),
+            ", ".join(row["tied_with"]) or "–",
+        )
+        for row in rows
+        if row["score"]
+    )
+    return draw("How sure (draws; tied: neither is twice as likely to be the better)", columns, cells, markdown)
+
+
+TRADE_OFFS = {
+    "cost_USD_per_kg": "element cost [USD/kg]",
+    "supply_concentration": "supply concentration",
+    "hazardous_elements": "hazardous elements",
+    "largest_size_nm": "largest size [nm]",
+}
+
+
+def trade_offs_table(rows: Sequence[Record], fronts: Mapping[str, Sequence[str]], markdown: bool) -> Table:
+    """Candidates on a front of score against another count; a star where nobody beats them on both."""
+    columns = ("candidate", SCORE_TITLES[rows[0]["score_name"]], *TRADE_OFFS.values())
+    on_a_front = {name for names in fronts.values() for name in names}
+
+    def starred(row: Record, axis: str, text: str) -> str:
+        return f"* {text}" if row["candidate"] in fronts[axis] else text
+
+    cells = (
+        (
+            f"{row['rank']}. {row['candidate']}",
+            figure(row["score"]),
+            starred(row, "cost_USD_per_kg", figure(row["cost_USD_per_kg"])),
+            starred(row, "supply_concentration", figure(row["supply_concentration"])),
+            starred(row, "hazardous_elements", " ".join(row["hazardous_elements"]) or "none"),
+            starred(row, "largest_size_nm", figure(row["window_nm"][1])),
+        )
+        for row in rows
+        if row["candidate"] in on_a_front
+    )
+    return draw("Trade-offs (*: nobody has both a better score and a better figure here)", columns, cells, markdown)
 
 
 def flag_numbers(rows: Iterable[Record]) -> dict[str, int]:
