@@ -9,8 +9,8 @@ from legwright.candidate.library import load_candidate
 from legwright.decide.brief import Brief
 from legwright.decide.drawn import drawn
 from legwright.decide.draws import laws_for, own_normals, own_spread, under_law
-from legwright.decide.rank import around, doping_range, rank_one, size_range
-from legwright.decide.score import span_nodes
+from legwright.decide.rank import doping_range, rank_one, size_range
+from legwright.decide.score import around, span_nodes
 from legwright.leg.balance import LegMaterial
 from legwright.leg.duty import best_score
 from legwright.physics.crystal import crystal

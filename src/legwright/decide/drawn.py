@@ -39,7 +39,8 @@ _APART, _TRUSTED, _LOOKS = np.array([0.25, 0.35]), 1.5, 4
 class Drawn:
     """One candidate in every draw; SI, arrays of (draws,).
 
-    score at the draw's own best doping and size; coarse: score of coarse material at its own best doping;
+    score at the draw's own best doping and size; coarse: score of coarse material at its own best doping. Where
+    legs scatter in making, both are less by what the scatter costs the row, taken as the same share in every draw.
     measured: ln σ, ln |S| and ln κ at mid-span at the row's design, (draws, 3); normals of OWN_NAMES behind it.
     """
 
@@ -68,10 +69,11 @@ def drawn(brief: Brief, row: Row, count: int, seed: int) -> Drawn:
         score, best = held.best()
         parts.append([score, np.exp(best), held.coarse_best(), held.at_mid_span(design)])
     score, best, coarse, measured = (np.concatenate(part)[:count] for part in zip(*parts, strict=True))
+    kept = row.score / row.score_as_designed
     dopings = doping_range(brief, candidate)
     assert dopings is not None
     doping, size = np.clip(best[:, 0], *dopings), np.clip(best[:, 1], *size_range(brief, candidate))
-    return Drawn(score, doping, size, coarse, measured, normals)
+    return Drawn(kept * score, doping, size, kept * coarse, measured, normals)
 
 
 @dataclass(frozen=True)

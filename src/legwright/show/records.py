@@ -51,6 +51,7 @@ def rank_record(row: Row, sure: dict[str, Confidence] | None = None) -> Record:
         "doping_per_cm3": None if row.doping is None else row.doping / PER_CM3,
         "score": row.score,
         "score_name": row.score_name,
+        "score_as_designed": row.score_as_designed,
         "zt_mean": row.zt_mean,
         "zt_peak": row.zt_peak,
         "gain_over_bulk": row.gain_over_bulk,
