@@ -17,7 +17,7 @@ from legwright.decide import drawn as drawing
 from legwright.decide.brief import Brief
 from legwright.decide.confidence import Confidence, confidences, draw_all, with_cautions
 from legwright.decide.drawn import Drawn
-from legwright.decide.draws import _law_normals, own_normals, own_spread, rounded
+from legwright.decide.draws import law_normals, own_normals, own_spread, rounded
 from legwright.decide.fit import candidate_text, fit
 from legwright.decide.rank import rank
 from legwright.physics.crystal import crystal
@@ -85,7 +85,7 @@ def test_candidates_err_apart_and_apart_from_the_shared_laws():
     """Unshuffled nets of two seeds have leading digits in common: correlations up to 0.94 were seen."""
     count, names = 1024, library_names()[:8]
     own = [own_normals(load_candidate(name), count, 0) for name in names]
-    every = np.hstack([*own, _law_normals(count, 0)])
+    every = np.hstack([*own, law_normals(count, 0)])
     correlation = np.corrcoef(every.T) - np.eye(every.shape[1])
     assert np.max(np.abs(correlation)) < 5 / count**0.5  # five spreads of a chance correlation, 1275 pairs
     assert np.allclose(np.std(every, axis=0), 1, atol=0.02)  # each a balanced net

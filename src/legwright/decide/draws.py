@@ -47,16 +47,16 @@ def rounded(draws: int) -> int:
 
 @dataclass(frozen=True)
 class Laws:
-    """Grain law and reflection of each draw, and the standard normals behind them: (draws, 3)."""
+    """Grain law and reflection of each draw: (draws,)."""
 
     exponent: Array
     prefactor: Array
     reflection: Array
-    normals: Array
 
 
 @cache
-def _law_normals(count: int, seed: int) -> Array:
+def law_normals(count: int, seed: int) -> Array:
+    """Standard normals of SHARED_NAMES, the same for all candidates: (count, 3)."""
     return np.asarray(ndtri(qmc.Sobol(3, rng=np.random.default_rng(seed)).random(count)))
 
 
@@ -65,12 +65,12 @@ def laws_for(candidate: Candidate, count: int, seed: int) -> Laws:
     law = load_priors().grain_law
     own = candidate.data.scattering.grain_reflection
     prior = own or load_priors().reflection.electrons
-    normals = _law_normals(count, seed)
+    normals = law_normals(count, seed)
     half_range = 3**0.5 * law.exponent.spread
     exponent = np.clip(law.exponent.si + half_range * (2 * ndtr(normals[:, 0]) - 1), 0, 1)
     prefactor = law.prefactor.si * np.exp(law.prefactor.relative_spread * normals[:, 1])
     reflection = np.clip(prior.si * (1 + prior.relative_spread * normals[:, 2]), 0, MOST_REFLECTED)
-    return Laws(exponent, prefactor, reflection, normals)
+    return Laws(exponent, prefactor, reflection)
 
 
 def under_law(one: Crystal, exponent: float, prefactor: float, reflection: float) -> Crystal:

@@ -17,6 +17,7 @@ from legwright.candidate.library import Candidate
 from legwright.candidate.model import numbers
 from legwright.candidate.sources import bibliography
 from legwright.candidate.supply import cost_per_kg, hazardous_elements, mass_density, supply_concentration
+from legwright.decide.advise import Advice
 from legwright.decide.audit import Total, Verdict
 from legwright.decide.brief import Brief
 from legwright.decide.confidence import Confidence
@@ -73,6 +74,32 @@ def rank_record(row: Row, sure: dict[str, Confidence] | None = None) -> Record:
             "tied_with": list(known.tied_with) if known else [],
         }
     return content
+
+
+def advice_record(found: Advice, score_name: str) -> Record:
+    """The whole of `measure`."""
+    return {
+        "score_name": score_name,
+        "chosen_now": found.chosen,
+        "expected_score": found.expected,
+        "gain_if_all_were_known": found.all_known,
+        "rows": [
+            {
+                "candidate": one.candidate,
+                "quantity": one.quantity,
+                "expected_gain": one.gain,
+                "standard_error": one.error,
+                "effort": one.effort,
+                "gain_per_effort": one.gain_per_effort,
+            }
+            for one in found.measurements
+        ],
+        "sensitivities": [
+            {"candidate": one.candidate, "source": one.source, "first_order": one.first, "total": one.total}
+            for one in found.sensitivities
+        ],
+        "variance_explained": found.explained,
+    }
 
 
 def peak_record(found: Peak) -> Record:

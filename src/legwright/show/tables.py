@@ -126,6 +126,45 @@ def sureness_table(rows: Sequence[Record], markdown: bool) -> Table:
     return draw("How sure (draws; tied: neither is twice as likely to be the better)", columns, cells, markdown)
 
 
+_MOST_ADVICE = 10
+
+
+def advice_tables(found: Record, markdown: bool) -> list[Table]:
+    """The measurements worth most, and where the doubt about the scores comes from."""
+    title = SCORE_TITLES[found["score_name"]]
+    advice = draw(
+        f"What to measure next: expected gain of the chosen candidate's {title}",
+        ("candidate", "measure", "expected gain", "± standard error", "effort", "gain per effort"),
+        (
+            (
+                row["candidate"],
+                row["quantity"].replace("_", " "),
+                figure(row["expected_gain"], 2),
+                figure(row["standard_error"], 2),
+                figure(row["effort"]),
+                figure(row["gain_per_effort"], 2),
+            )
+            for row in found["rows"][:_MOST_ADVICE]
+        ),
+        markdown,
+    )
+    doubt = draw(
+        "Where the doubt comes from (shares of the score's variance)",
+        ("candidate", "source", "by itself", "with others"),
+        (
+            (
+                row["candidate"],
+                row["source"].replace("_", " "),
+                _percent(row["first_order"]),
+                _percent(row["total"]),
+            )
+            for row in found["sensitivities"]
+        ),
+        markdown,
+    )
+    return [advice, doubt]
+
+
 TRADE_OFFS = {
     "cost_USD_per_kg": "element cost [USD/kg]",
     "supply_concentration": "supply concentration",
