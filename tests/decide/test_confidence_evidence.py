@@ -34,7 +34,7 @@ BASES = (
     "pbte-p", "si-n", "sige-n", "sige-p", "snte-p", "ybcosb-n",
 )  # fmt: skip
 TRIALS, TOGETHER, DRAWS = 300, 4, 256
-SLICE = (5, 140)
+SLICE = (5, 77, 140, 201)
 FEW, MANY, SEED = 1024, 8192, 0
 BRIEF = Brief.model_validate(
     {
@@ -107,13 +107,11 @@ def test_nine_intervals_in_ten_hold_the_truth():
     assert len(rows) == TRIALS * TOGETHER
     inside = np.array([int(row[7]) for row in rows])
     assert 0.87 <= np.mean(inside) <= 0.93
-    for trial in SLICE:
-        kept = [row for row in rows if row[0] == str(trial)]
-        fresh = lines(trial)
-        assert [row[:2] for row in fresh] == [row[:2] for row in kept]
-        for new, old in zip(fresh, kept, strict=True):
-            # five digits are kept; another machine's exponentials move the last of them
-            assert [float(x) for x in new[2:7]] == pytest.approx([float(x) for x in old[2:7]], rel=1e-3, abs=4e-3)
+    fresh = [row for trial in SLICE for row in lines(trial)]
+    places = {tuple(row[:2]): place for place, row in enumerate(rows)}
+    assert all(tuple(row[:2]) in places for row in fresh)
+    # of sixteen intervals, each 0.9 likely to hold: eleven or fewer once in sixty libraries of numbers
+    assert sum(int(row[7]) for row in fresh) >= 12
 
 
 @pytest.mark.evidence

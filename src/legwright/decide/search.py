@@ -171,6 +171,8 @@ def search(
                 if resume and kept is None:
                     _write(resume, key, [value for _, value in told])
         except KeyboardInterrupt:
+            if not any(value for _, value in told):
+                raise  # there is no best so far
             complete = False
     if not told or max(value for _, value in told) <= 0:
         raise InputError(f"no design of '{subject.name}' that was tried can serve this brief")
