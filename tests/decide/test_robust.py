@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -11,6 +12,7 @@ from scipy.interpolate import CubicSpline, RectBivariateSpline
 
 from legwright.candidate.library import load_candidate
 from legwright.decide.brief import Brief
+from legwright.decide.drawn import drawn
 from legwright.decide.rank import rank_one
 from legwright.decide.robust import MadeMap, Scatter
 from legwright.decide.score import score
@@ -110,3 +112,11 @@ def test_the_search_finds_what_the_ranking_finds():
 def test_scatter_that_makes_no_sense_is_refused(making):
     with pytest.raises(ValidationError):
         brief_of("pbte-p", making)
+
+
+def test_draws_lose_to_scatter_what_the_row_loses():
+    brief = brief_of("pbte-p", {"size_scatter": 1.4})
+    row = rank_one(brief, load_candidate("pbte-p"))
+    made, designed = (drawn(brief, each, 16, 0) for each in (row, replace(row, score=row.score_as_designed)))
+    assert np.allclose(made.score / designed.score, row.score / row.score_as_designed, rtol=1e-12)
+    assert np.array_equal(made.score > made.coarse, designed.score > designed.coarse)

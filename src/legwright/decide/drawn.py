@@ -102,52 +102,40 @@ class LawMaps:
         assert dopings is not None
         shape, one = brief.size.shape, crystal(candidate)
         temperature = span_nodes(brief.task, _NODES)
-        log_doping = _even(dopings, _DOPING_STEP)
-        log_size = _even(size_range(brief, candidate), _SIZE_STEP)
-        grains = shape == "grain"
-        step = log_size[1] - log_size[0]
-        reach = int(np.ceil(_PREFACTOR_REACH / step)) if grains else 0
-        wide = log_size[0] + step * np.arange(-reach, log_size.size + reach)
-        wide = wide[(wide > np.log(SMALLEST)) & (wide < np.log(LARGEST))]
-        inside = slice(int(np.argmin(np.abs(wide - log_size[0]))), None)
-        inside = slice(inside.start, inside.start + log_size.size)
-        sizes = np.append(np.exp(wide), np.inf)
+        log_doping, log_size = _even(dopings, _DOPING_STEP), _even(size_range(brief, candidate), _SIZE_STEP)
+        laws = zip(_law_nodes(1.0), -np.expm1(-_law_nodes(_MOST_OPAQUE)), strict=True)
+        wide = _wider(log_size) if shape == "grain" else log_size
+        inside = np.isin(wide, log_size)
         sign = -1.0 if candidate.data.carrier == "n" else 1.0
         found = []
-        for exponent, opacity in (
-            zip(_law_nodes(1.0), _law_nodes(_MOST_OPAQUE), strict=True) if grains else [(0, 0)]
-        ):
-            law = under_law(one, float(exponent), 1.0, float(-np.expm1(-opacity)))
-            made = evaluate_crystal(law, temperature[:, None, None], np.exp(log_doping)[:, None], sizes, shape)
-            found.append(
-                (
-                    np.log(made.electrical_conductivity),
-                    sign * made.seebeck,
-                    np.log(made.electronic_thermal_conductivity),
-                    np.log(made.lattice_thermal_conductivity),
-                )
+        for exponent, reflection in list(laws) if shape == "grain" else [(0.0, 0.0)]:
+            made = evaluate_crystal(
+                under_law(one, float(exponent), 1.0, float(reflection)),
+                temperature[:, None, None],
+                np.exp(log_doping)[:, None],
+                np.append(np.clip(np.exp(wide), SMALLEST, LARGEST), np.inf),
+                shape,
             )
-        sigma, seebeck, electronic, lattice = (np.stack(part) for part in zip(*found, strict=True))
-        coarse = np.stack([part[0, ..., -1] for part in (sigma, seebeck, electronic, lattice)])
-        sigma, seebeck, electronic = (
-            np.ascontiguousarray(part[..., inside]) for part in (sigma, seebeck, electronic)
-        )
-        lattice = np.ascontiguousarray(lattice[..., :-1])
+            electronic, lattice = made.electronic_thermal_conductivity, made.lattice_thermal_conductivity
+            sigma = np.log(made.electrical_conductivity)
+            found.append((sigma, sign * made.seebeck, np.log(electronic), np.log(lattice)))
+        four = [np.stack(part) for part in zip(*found, strict=True)]
+        coarse = np.stack([part[0, ..., -1] for part in four])
+        sigma, seebeck, electronic = (part[..., :-1][..., inside] for part in four[:3])
+        lattice = np.ascontiguousarray(four[3][..., :-1])
         return cls(brief.task, temperature, log_doping, log_size, wide, sigma, seebeck, electronic, lattice, coarse)
 
     def under(self, exponent: Array, prefactor: Array, reflection: Array, factors: Array) -> Held:
         """The maps under some draws: laws of (draws,), ln factors on mobility, S and κ_L of (draws, 3)."""
-        if len(self.log_sigma) == 1:
-            by_reflection = by_exponent = np.ones((exponent.size, 1))
-            wide = self.log_lattice[np.zeros(exponent.size, dtype=int)]
-        else:
+        if len(self.log_sigma) > 1:
             by_reflection = _law_weights(-np.log1p(-reflection), _MOST_OPAQUE)
             by_exponent = _law_weights(exponent, 1.0)
-            wide = _mixed(by_exponent, self.log_lattice)
-        shifted = _lagrange_weights(
-            self.log_size_lattice, self.log_size + np.log(prefactor)[:, None] * (len(self.log_sigma) > 1)
-        )
-        lattice = wide @ np.swapaxes(shifted, 1, 2)[:, None]
+            acting = self.log_size + np.log(prefactor)[:, None]
+        else:  # wires and films know no grains
+            by_reflection = by_exponent = np.ones((exponent.size, 1))
+            acting = np.tile(self.log_size, (exponent.size, 1))
+        shifted = np.swapaxes(_lagrange_weights(self.log_size_lattice, acting), 1, 2)[:, None]
+        lattice = _mixed(by_exponent, self.log_lattice) @ shifted
         mobility, thermopower, phonons = (f.reshape(-1, 1, 1, 1) for f in factors.T)
         return Held(
             self,
@@ -177,38 +165,31 @@ class Held:
         them is followed by another look.
         """
         maps = self.maps
-        rough = rough_score(
-            maps.duty, self.seebeck, self.log_sigma, np.exp(self.log_electronic) + np.exp(self.log_lattice)
-        )
+        heat = np.exp(self.log_electronic) + np.exp(self.log_lattice)
+        rough = rough_score(maps.duty, self.seebeck, self.log_sigma, heat)
         count = len(rough)
-        place = np.argmax(rough.reshape(count, -1), axis=1)
-        i, j = np.unravel_index(place, rough.shape[1:])
+        i, j = np.unravel_index(np.argmax(rough.reshape(count, -1), axis=1), rough.shape[1:])
         low = np.array([maps.log_doping[0], maps.log_size[0]])
         high = np.array([maps.log_doping[-1], maps.log_size[-1]])
         apart = np.minimum(_APART, 0.5 * (high - low))
-        at = np.stack([maps.log_doping[i], maps.log_size[j]], axis=1)
-        best, where = np.full(count, -1.0), at.copy()
-        looking = np.arange(count)
+        where = np.stack([maps.log_doping[i], maps.log_size[j]], axis=1)
+        best, looking = np.full(count, -1.0), np.arange(count)
         for _ in range(_LOOKS):
-            centre = np.clip(at[looking], low + apart, high - apart)
-            grid = centre[:, None, :] + apart * np.array([-1.0, 0.0, 1.0])[:, None]
-            scores = self.score(looking, grid[..., 0], grid[..., 1])
+            centre = np.clip(where[looking], low + apart, high - apart)
+            grid = centre[:, None] + apart * _STEPS
+            around = centre[:, None] + apart * np.array([-1.0, 0.0, 1.0])[:, None]
+            scores = self.score(looking, around[..., 0], around[..., 1])
             step = _quadratic_top(scores, (low - centre) / apart, (high - centre) / apart)
             there = np.clip(centre + step * apart, low, high)
-            reached = self.score(looking, there[:, :1], there[:, 1:])[:, 0, 0]
-            flat = np.argmax(scores.reshape(len(scores), -1), axis=1)
-            on_grid = scores.reshape(len(scores), -1)[np.arange(len(scores)), flat]
-            of_grid = np.stack(
-                [grid[np.arange(len(grid)), flat // 3, 0], grid[np.arange(len(grid)), flat % 3, 1]], 1
-            )
-            top = np.where(reached >= on_grid, reached, on_grid)
-            spot = np.where((reached >= on_grid)[:, None], there, of_grid)
-            gained = top > best[looking]
-            where[looking] = np.where(gained[:, None], spot, where[looking])
-            best[looking] = np.maximum(top, best[looking])
-            beyond = np.any(np.abs(step) > 1, axis=1) & gained
-            at[looking] = spot
-            looking = looking[beyond]
+            reached = self.score(looking, there[:, :1], there[:, 1:])
+            values = np.concatenate([scores.reshape(-1, 9), reached.reshape(-1, 1)], axis=1)
+            top = np.argmax(values, axis=1)
+            each = np.arange(looking.size)
+            gained = values[each, top] > best[looking]
+            spot = np.concatenate([grid, there[:, None]], axis=1)[each, top]
+            where[looking[gained]] = spot[gained]
+            best[looking[gained]] = values[each, top][gained]
+            looking = looking[gained & np.any(np.abs(step) > 1, axis=1)]
             if looking.size == 0:
                 break
         return best, where
@@ -302,8 +283,8 @@ def _terms(at: Array) -> Array:
     return np.stack([np.ones_like(x), x, y, x * x, x * y, y * y], axis=1)
 
 
-_COARSE_STEPS = np.stack(np.meshgrid([-1.0, 0.0, 1.0], [-1.0, 0.0, 1.0], indexing="ij"), axis=-1).reshape(-1, 2)
-_FIT = np.linalg.pinv(_terms(_COARSE_STEPS))
+_STEPS = np.stack(np.meshgrid([-1.0, 0.0, 1.0], [-1.0, 0.0, 1.0], indexing="ij"), axis=-1).reshape(-1, 2)
+_FIT = np.linalg.pinv(_terms(_STEPS))
 _FINE = np.stack(np.meshgrid(*[np.linspace(-_TRUSTED, _TRUSTED, 31)] * 2, indexing="ij"), axis=-1).reshape(-1, 2)
 _FINE_TERMS = _terms(_FINE)
 
@@ -328,6 +309,14 @@ def _even(ends: tuple[float, float], step: float) -> Array:
     """Even nodes of the logarithm between the ends, no further apart than `step`."""
     low, high = np.log(ends)
     return np.linspace(low, high, max(int(np.ceil((high - low) / step)) + 1, _FEWEST))
+
+
+def _wider(log_size: Array) -> Array:
+    """The same nodes and more on both sides, as far as a prefactor may shift them."""
+    step = log_size[1] - log_size[0]
+    more = step * np.arange(1, int(np.ceil(_PREFACTOR_REACH / step)) + 1)
+    finer, coarser = log_size[0] - more[::-1], log_size[-1] + more
+    return np.concatenate([finer[finer > np.log(SMALLEST)], log_size, coarser[coarser < np.log(LARGEST)]])
 
 
 def _lagrange_weights(nodes: Array, x: Array) -> Array:

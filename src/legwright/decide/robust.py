@@ -29,7 +29,10 @@ _MAP_DOPINGS, _MAP_SIZES, _ZOOMS = 25, 33, 5
 
 @dataclass(frozen=True)
 class Scatter:
-    """How far a made leg's size and doping lie from those asked for: spreads of their ln; and what is maximised."""
+    """How far a made leg's size and doping lie from those asked for: spreads of their ln; and what is maximised.
+
+    The size asked for is the median; some legs come out finer than the smallest that can be asked for.
+    """
 
     size: float
     doping: float
