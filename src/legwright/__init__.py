@@ -11,6 +11,8 @@ if TYPE_CHECKING:
     from legwright import physics as physics
     from legwright.candidate.library import Candidate as Candidate
     from legwright.candidate.library import load_candidate as load_candidate
+    from legwright.physics.compressed import CompressedMap as CompressedMap
+    from legwright.physics.compressed import compress as compress
     from legwright.physics.properties import Properties as Properties
     from legwright.physics.properties import evaluate as evaluate
 
@@ -18,10 +20,21 @@ _HOMES = {
     "physics": ("legwright.physics", None),
     "load_candidate": ("legwright.candidate.library", "load_candidate"),
     "Candidate": ("legwright.candidate.library", "Candidate"),
+    "CompressedMap": ("legwright.physics.compressed", "CompressedMap"),
+    "compress": ("legwright.physics.compressed", "compress"),
     "evaluate": ("legwright.physics.properties", "evaluate"),
     "Properties": ("legwright.physics.properties", "Properties"),
 }
-__all__ = ["Candidate", "Properties", "__version__", "evaluate", "load_candidate", "physics"]
+__all__ = [
+    "Candidate",
+    "CompressedMap",
+    "Properties",
+    "__version__",
+    "compress",
+    "evaluate",
+    "load_candidate",
+    "physics",
+]
 
 
 def __getattr__(name: str) -> Any:

@@ -2,6 +2,7 @@
 
 import math
 
+import pint
 import pytest
 from scipy import constants
 
@@ -68,3 +69,38 @@ def test_exact_constants():
     assert units.H == 6.62607015e-34
     assert units.E_CHARGE == 1.602176634e-19
     assert units.HBAR * 2 * math.pi == pytest.approx(units.H, rel=ROUNDING, abs=0)
+
+
+def test_the_usual_units_are_those_of_the_whole_list():
+    """Each prefix with each unit, by symbol and by name, against pint's own list."""
+    usual, whole = units._registry(True), units._registry(False)
+    prefixes = [
+        "",
+        "G",
+        "M",
+        "k",
+        "c",
+        "m",
+        "u",
+        "µ",
+        "n",
+        "giga",
+        "mega",
+        "kilo",
+        "centi",
+        "milli",
+        "micro",
+        "nano",
+    ]
+    names = [str(name) for name in usual._units if name not in usual._prefixes]
+    compared = 0
+    for prefix in prefixes:
+        for name in names:
+            try:
+                ours = usual.Quantity(1.0, prefix + name).to_base_units()
+            except pint.UndefinedUnitError:
+                continue
+            theirs = whole.Quantity(1.0, prefix + name).to(str(ours.units))
+            assert ours.magnitude == pytest.approx(theirs.magnitude, rel=1e-9, abs=0), prefix + name
+            compared += 1
+    assert compared > 300

@@ -7,9 +7,11 @@ import pytest
 from scipy import constants
 from scipy.integrate import quad
 
+from legwright.base.errors import InputError
 from legwright.candidate.library import library_names, load_candidate
 from legwright.physics import carriers, lattice
 from legwright.physics.crystal import crystal, majority_carriers
+from legwright.physics.properties import evaluate
 from legwright.physics.short_legs import short_leg_conductance
 
 #: pytest adds an absolute 1e-12 of its own, which is large among SI figures
@@ -178,3 +180,31 @@ def test_fewer_modes_would_not_do():
 
 def test_the_usual_count_is_the_one_that_was_measured(make_phonons):
     assert lattice.modes(make_phonons()).q.size == 128
+
+
+@pytest.mark.parametrize("shape", ["grain", "wire", "film"])
+@pytest.mark.parametrize("name", ["si-n", "bisbte-p"])
+def test_properties_of_a_leg_join_both_limits_without_a_step(name, shape):
+    candidate, size = load_candidate(name), np.array([30e-9, np.inf])
+
+    def at(length: float) -> tuple[np.ndarray, ...]:
+        made = evaluate(candidate, 350.0, 3e25, size, shape, length)
+        return made.electrical_conductivity, made.thermal_conductivity, made.seebeck
+
+    long, lengths = at(np.inf), np.geomspace(1e-9, 1e-1, 33)
+    steps = [at(length) for length in lengths]
+    for k in (0, 1):
+        falling = np.array([step[k] for step in steps])
+        assert np.all(np.diff(falling, axis=0) > 0)  # each longer leg conducts better per length
+        # 4Λ/3L of the longest paths; the sums over modes and by path agree to 1e-8
+        assert falling[-1] == pytest.approx(long[k], rel=2e-5)
+        conductance = falling / lengths[:, None]
+        assert np.all(np.diff(conductance, axis=0) < 0)
+    electric = np.array([step[0] for step in steps]) / lengths[:, None]
+    assert electric[0] == pytest.approx(electric[1], rel=0.6)  # ballistic: G no longer hangs on the length
+    assert np.allclose(steps[-1][2], long[2], rtol=1e-6)
+
+
+def test_a_leg_needs_a_length_above_zero():
+    with pytest.raises(InputError, match="length"):
+        evaluate(load_candidate("si-n"), 300.0, 1e25, np.inf, "grain", 0.0)

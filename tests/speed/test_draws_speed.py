@@ -16,7 +16,7 @@ def seconds(work: Callable[[], object]) -> float:
 
 
 def test_a_thousand_draws_cost_no_more_than_twenty_rankings():
-    """Each with its own best size and doping: by ranking anew they would cost a thousand. Three to seven measured."""
+    """Each with its own best size and doping: ranking anew would cost a thousand. Three to seven measured."""
     brief = Brief.model_validate(
         {
             "title": "Test",

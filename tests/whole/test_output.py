@@ -154,7 +154,7 @@ def test_table_shows_the_ranking_flags_and_cautions(legwright, brief):
     assert "Test rig: generator leg, 400 to 700 K, grain size" in said.out
     for word in ("1. sige-n", "Si0.8Ge0.2", "efficiency", "window", "doping", "zT mean", "zT peak", "gain"):
         assert word in said.out
-    assert re.search(r"^\d+ +sintered-boundaries: ", said.out, re.MULTILINE)
+    assert re.search(r"^sintered-boundaries: ", said.out, re.MULTILINE)
     assert "Cautions: " in said.out
     assert "local codes" in said.out
 
@@ -283,4 +283,4 @@ def test_the_audit_lists_each_miss_by_name(legwright):
     shown = legwright("audit", "--markdown").out
     missed = {row["sample"] for row in samples if not row["inside"] and not row["fitted"]}
     assert missed
-    assert all(f" {name} |" in shown for name in missed)
+    assert all(f"| {name} " in shown for name in missed)

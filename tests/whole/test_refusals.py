@@ -58,6 +58,8 @@ BRIEFS = {
     "nobody of that carrier": ({"candidates.carrier": '"p"'}, ["candidates.carrier", "'p'"]),
     "unknown element": ({"avoid.elements": '["Tx"]'}, ["avoid.elements", "'Tx'", "not an element", "Tl"]),
     "zero length": ({"leg.length_mm": "0"}, ["leg.length_mm", "0", "greater than or equal to 0.001"]),
+    "leaks all its heat": ({"leg.side_loss_W_per_m3_K": "2e8"}, ["leg", "2e+08", "at most 1e+08", "1 mm"]),
+    "lengths the wrong way": ({"leg.length_free_mm": "[5, 1]"}, ["leg", "[5, 1]", "[shortest, longest]"]),
     "length misspelt": ({"leg.lenght_mm": "1"}, ["leg.lenght_mm", "did you mean 'length_mm'?"]),
 }
 

@@ -7,7 +7,13 @@ from collections.abc import Iterable
 MEANINGS: dict[str, str] = {
     "above-service-temperature": (
         "The hot side is above the highest service temperature in the candidate's file; the leg would "
-        "sublime, oxidise, melt or lose its dopant. Score 0."
+        'sublime, oxidise, melt or lose its dopant. Score 0, unless the brief says beyond_service = "flag".'
+    ),
+    "volatile-near-service-limit": (
+        "The hot side is within 50 K or a tenth of the highest service temperature, or above it, and the candidate "
+        "holds elements that evaporate there (P, S, Zn, As, Se, Cd, Sb, Te, Mg, Hg, Tl, Pb): toxic or flammable "
+        "deposits gather on colder parts and in the vacuum or gas system. Sealing, extraction and cleaning are "
+        "matters for local codes and licensed practice."
     ),
     "duty-out-of-reach": "No current lets this leg serve the duty (a cooler cannot span the asked difference).",
     "no-doping-range": "The brief's doping range and the candidate's own do not overlap. Score 0.",
@@ -29,10 +35,6 @@ MEANINGS: dict[str, str] = {
     ),
     "doping-at-limit": "The best doping is a limit of the doping range; solubility or the brief stops it.",
     "no-gain-reference": "Coarse-grained material scores 0 under this duty, so the gain is undefined.",
-    "ideal-contacts": (
-        "The brief names contacts or exchangers, and the ranking takes ideal ones; `legwright leg` applies them to "
-        "one leg. A power that looks too good is mostly this."
-    ),
     "below-smallest-makeable-size": (
         "The size is below the smallest that the candidate's file says can be made; nobody is known to make it."
     ),
@@ -64,6 +66,25 @@ MEANINGS: dict[str, str] = {
     ),
     "mixed-minority-carriers": (
         "Minority carriers carry more than a tenth of the electronic heat at the hot end (bipolar conduction)."
+    ),
+    "score-of-couple": (
+        "The score is that of the couple with the brief's partner, both at their best areas; size, doping, window, "
+        "zT and gain are the leg's own, from its score alone."
+    ),
+    "legs-unlike": (
+        "Somewhere in the span the compatibility factors of the two legs differ by more than a factor of two: they "
+        "want unlike current densities, which only unlike cross-sections give (see the area ratio)."
+    ),
+    "segments-fight": (
+        "Where two segments meet their compatibility factors differ by more than a factor of two: one current does "
+        "not suit both, and the leg loses against the sum of its parts (Snyder & Ursell 2003; the factor is common "
+        "practice)."
+    ),
+    "segment-unused": "The best leg leaves less than a hundredth of its length to one of its segments.",
+    "expansion-mismatch": (
+        "Legs or segments differ in thermal expansion from each other, or from every listed strap, by more than "
+        "0.2 % between 300 K and their hottest joint: more than brittle semiconductors bear without a compliant "
+        "layer (common practice)."
     ),
     "from-memory": "More than half of the numbers in this candidate's file were taken from memory, not read.",
     "sure-from-memory": (

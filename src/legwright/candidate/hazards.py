@@ -20,11 +20,22 @@ ELEMENTS: dict[str, str] = {
     "Mg": "magnesium: its powder burns and reacts with water; no water on such a fire",
     "P": "phosphorus: flammable; phosphine forms from phosphides with moisture",
 }
+#: elements that leave hot legs as vapour, by themselves or as compounds, well below the melting point
+VOLATILE = frozenset({"P", "S", "Zn", "As", "Se", "Cd", "Sb", "Te", "Mg", "Hg", "Tl", "Pb"})
+#: near the highest service temperature: within this many kelvin or this share of it (common practice)
+_NEAR_K, _NEAR_SHARE = 50.0, 0.1
 PROCESS = (
     "Fine and nano-powders: explosion and inhalation hazard; enclosed, inerted, earthed handling.",
     "Hot presses and furnaces: high force, heat and inert gas; hot surfaces of a working leg burn.",
     "Toxicity, pressure and fire are matters for local codes and licensed practice; this list is a reminder.",
 )
+
+
+def evaporates(candidate: Candidate, hottest: float) -> bool:
+    """Whether a leg that reaches `hottest` (K) is near its service limit and holds elements that evaporate."""
+    limit = candidate.data.service.highest_temperature.si
+    near = hottest >= limit - max(_NEAR_K, _NEAR_SHARE * limit)
+    return near and not VOLATILE.isdisjoint(candidate.elements)
 
 
 def cautions(candidates: Iterable[Candidate]) -> tuple[str, ...]:

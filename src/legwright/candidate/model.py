@@ -226,7 +226,8 @@ class Doping(Table):
     """Active densities that have been made, and the element that gives them.
 
     `carriers_per_dopant`: active carriers that one atom of dopant gives (1 where the file is silent). With
-    `solution_enthalpy` the highest density belongs to `solution_temperature` and falls below it.
+    `solution_enthalpy` the highest density belongs to `solution_temperature` and falls below it; dopants move above
+    `mobile_temperature` (half of `solution_temperature` where the file is silent), and stay frozen in below.
     """
 
     lowest: Density
@@ -238,11 +239,14 @@ class Doping(Table):
     host_size: Length | None = None
     solution_enthalpy: Energy | None = None
     solution_temperature: Kelvin | None = None
+    mobile_temperature: Kelvin | None = None
 
     @model_validator(mode="after")
     def _paired(self) -> Doping:
         if (self.solution_enthalpy is None) != (self.solution_temperature is None):
             raise ValueError("solution_enthalpy and solution_temperature go together")
+        if self.mobile_temperature is not None and self.solution_temperature is None:
+            raise ValueError("mobile_temperature needs solution_enthalpy and solution_temperature")
         return self
 
 
@@ -283,12 +287,13 @@ class Coarsening(Table):
 
 
 class Service(Table):
-    """Where the candidate may be used, and what wears it there."""
+    """Where the candidate may be used, and what wears it there; in air it oxidises above `oxidation_onset`."""
 
     highest_temperature: Kelvin
     reason: str
     data_from: Kelvin
     data_to: Kelvin
+    oxidation_onset: Kelvin | None = None
     sublimation: tuple[Loss, ...] = ()
 
 

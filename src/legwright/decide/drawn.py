@@ -115,6 +115,7 @@ class LawMaps:
                 np.exp(log_doping)[:, None],
                 np.append(np.clip(np.exp(wide), SMALLEST, LARGEST), np.inf),
                 shape,
+                brief.task.felt_length,
             )
             electronic, lattice = made.electronic_thermal_conductivity, made.lattice_thermal_conductivity
             sigma = np.log(made.electrical_conductivity)

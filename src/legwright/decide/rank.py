@@ -19,7 +19,6 @@ from legwright.decide.robust import MadeMap
 from legwright.decide.score import around, leg_material, properties_over_span, score
 from legwright.decide.warnings import point_flags
 from legwright.leg.duty import SCORE_NAMES, Duty, best_score
-from legwright.leg.installed import Setting
 from legwright.physics.properties import Properties
 
 Array = NDArray[np.float64]
@@ -111,8 +110,11 @@ def rank_one(brief: Brief, candidate: Candidate) -> Row:
         kept, bulk = worth / legs.as_designed(doping, size), legs.best_coarse(dopings)
         length = window_sizes(sizes, size)
         low, high, open_ended = window_of(length, legs.worth(doping, length))
-    zt_mean, zt_peak = zt_over(made, duty)
-    flags = _design_flags(candidate, brief, made, doping, size, dopings, sizes)
+    inside = made
+    if not duty.setting.ideal:  # properties that the leg only meets in its setting are not the duty's
+        inside = properties_over_span(candidate, duty.alone, doping, size, shape, _FINE_NODES)
+    zt_mean, zt_peak = zt_over(inside, duty)
+    flags = _design_flags(candidate, brief, inside, doping, size, dopings, sizes)
     if open_ended:
         flags.append("window-open")
     if bulk == 0:
@@ -162,7 +164,8 @@ def refusal(brief: Brief, candidate: Candidate, duty: Duty) -> str | None:
         concentration = supply_concentration(candidate)
         if concentration is None or concentration > avoid.supply_concentration_above:
             return "supply-too-concentrated"
-    if duty.hot > candidate.data.service.highest_temperature.si:
+    too_hot = duty.hot > candidate.data.service.highest_temperature.si
+    if too_hot and brief.leg.beyond_service == "refuse":
         return "above-service-temperature"
     return None
 
@@ -233,10 +236,14 @@ def window_sizes(sizes: tuple[float, float], best: float) -> Array:
     return np.sort(np.append(np.geomspace(*sizes, _WINDOW_SIZES), best))
 
 
-def window_of(size: Array, scores: Array) -> tuple[float, float, bool]:
-    """Window of a score curve over ascending sizes; its ends are interpolated in ln(size) between samples."""
+def window_of(size: Array, scores: Array, level: float | None = None) -> tuple[float, float, bool]:
+    """Window of a score curve over ascending sizes; its ends are interpolated in ln(size) between samples.
+
+    `level`: the score that counts as inside, not above the best; WINDOW_SHARE of the best where it is not given.
+    """
     best = int(np.argmax(scores))
-    level = WINDOW_SHARE * scores[best]
+    if level is None:
+        level = WINDOW_SHARE * float(scores[best])
     outside = np.flatnonzero(scores < level)
     below, above = outside[outside < best], outside[outside > best]
 
@@ -268,8 +275,6 @@ def _design_flags(
     flags = point_flags(candidate, made, brief.size.shape)
     if not sizes[0] * 1.001 < size < sizes[1] * 0.999:
         flags.append("size-at-limit")
-    if brief.setting != Setting():
-        flags.append("ideal-contacts")
     if not dopings[0] * 1.001 < doping < dopings[1] * 0.999:
         flags.append("doping-at-limit")
     return flags

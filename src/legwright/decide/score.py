@@ -35,10 +35,13 @@ def nodes_between(low: float, high: float, count: int) -> Array:
 def properties_over_span(
     candidate: Candidate, duty: Duty, doping: ArrayLike, size: ArrayLike, shape: str, nodes: int
 ) -> Properties:
-    """Properties at `nodes` temperatures (first axis) for doping and size that broadcast to the other axes."""
+    """Properties at `nodes` temperatures (first axis) for doping and size that broadcast to the other axes.
+
+    A length that the duty says is felt takes its share of every free path, wherever it counts: `evaluate`.
+    """
     rank = max(np.ndim(doping), np.ndim(size))
     temperature = span_nodes(duty, nodes).reshape(-1, *(1,) * rank)
-    return evaluate(candidate, temperature, doping, size, shape)
+    return evaluate(candidate, temperature, doping, size, shape, duty.felt_length)
 
 
 def leg_material(candidate: Candidate, made: Properties) -> LegMaterial:

@@ -171,10 +171,10 @@ def search(
                 if resume and kept is None:
                     _write(resume, key, [value for _, value in told])
         except KeyboardInterrupt:
-            if not any(value for _, value in told):
+            if not any(value > 0 for _, value in told):
                 raise  # there is no best so far
             complete = False
-    if not told or max(value for _, value in told) <= 0:
+    if max(value for _, value in told) <= 0:
         raise InputError(f"no design of '{subject.name}' that was tried can serve this brief")
     best, before = max(told, key=lambda pair: pair[1])
     polish: dict[str, Any] = {"maxfev": _POLISH_TRIALS, "xatol": 1e-5, "fatol": 1e-9 * before}
@@ -190,7 +190,7 @@ def search(
     assert design is not None
     one, doping, size = design
     reached = space.worth(u)
-    made = properties_over_span(one, space.duty, doping, size, brief.size.shape, _NODES)
+    made = properties_over_span(one, space.duty.alone, doping, size, brief.size.shape, _NODES)
     touched = tuple(
         name for name, x in zip(space.names, u, strict=True) if not _TOUCHING < float(x) < 1 - _TOUCHING
     )

@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
+from legwright.candidate.hazards import evaporates
 from legwright.candidate.library import Candidate
 from legwright.physics.properties import Properties
 from legwright.physics.solubility import beyond_solubility
@@ -30,6 +31,8 @@ def point_flags(candidate: Candidate, made: Properties, shape: str) -> list[str]
         flags.append("temperature-outside-data")
     if np.any(made.temperature > data.service.highest_temperature.si):
         flags.append("above-service-temperature")
+    if evaporates(candidate, float(np.max(made.temperature))):
+        flags.append("volatile-near-service-limit")
     if np.any(made.lattice_thermal_conductivity < made.amorphous_minimum):
         flags.append("lattice-below-amorphous-minimum")
     if np.any(made.bipolar_thermal_conductivity > 0.1 * made.electronic_thermal_conductivity):

@@ -38,6 +38,11 @@ class LegMaterial:
         return cls(*(CubicSpline(temperature, values) for values in (seebeck, resistivity, thermal_conductivity)))
 
     @property
+    def shape(self) -> tuple[int, ...]:
+        """Shape of the legs."""
+        return self.seebeck.c.shape[2:]
+
+    @property
     def lowest(self) -> float:
         """Lowest temperature of the nodes, K."""
         return float(self.seebeck.x[0])
@@ -60,13 +65,121 @@ class Along:
     current_length: Array
 
 
-def march_down(material: LegMaterial, top: float, bottom: float, sign: int, w_top: Array, steps: int) -> Along:
+class Course:
+    """The properties met on a march down in temperature, the same for any current.
+
+    From `top` down to `bottom` (K) in θ = √(T_top − T), in `steps` of Runge–Kutta's fourth order, with w of the
+    given sign. d(w²)/dT = −2κρ − 2wT dS/dT. For a material of one leg top and bottom may be arrays.
+    """
+
+    def __init__(
+        self, material: LegMaterial, top: float | Array, bottom: float | Array, sign: int, steps: int
+    ) -> None:
+        self.steps = steps
+        self.theta = np.multiply.outer(np.linspace(0.0, 1.0, 2 * steps + 1), np.sqrt(top - bottom))
+        self.temperature = top - self.theta**2
+        self.kappa = material.thermal_conductivity(self.temperature)
+        self.joule = self.kappa * material.resistivity(self.temperature)
+        self.thomson = self._beside(sign * self.temperature) * material.seebeck(self.temperature, 1)
+        self.step = self.theta[2]
+
+    def _beside(self, values: Array) -> Array:
+        """Values along the march, shaped to go with those of the legs."""
+        return np.reshape(values, (*values.shape, *(1,) * (self.kappa.ndim - values.ndim)))
+
+    def march(self, w_top: Array) -> Along:
+        """w at every step, and the length covered."""
+        h, theta = self.step, self.theta
+        from_rest = not np.any(w_top)
+
+        def slope(i: int, y: Array) -> Array:
+            if not from_rest:
+                return np.asarray(4 * theta[i] * (self.joule[i] + np.sqrt(np.maximum(y, 0.0)) * self.thomson[i]))
+            if i == 0:
+                return np.asarray(np.sqrt(2 * self.joule[0]))
+            return np.asarray(2 * theta[i] * (self.joule[i] / np.maximum(y, _SMALLEST_W) + self.thomson[i]))
+
+        y = np.empty((self.steps + 1, *np.broadcast_shapes(self.kappa.shape[1:], np.shape(w_top))))
+        y[0] = np.asarray(w_top, dtype=float) ** 2
+        for k in range(self.steps):
+            a = slope(2 * k, y[k])
+            b = slope(2 * k + 1, y[k] + 0.5 * h * a)
+            c = slope(2 * k + 1, y[k] + 0.5 * h * b)
+            d = slope(2 * k + 2, y[k] + h * c)
+            y[k + 1] = y[k] + h / 6 * (a + 2 * (b + c) + d)
+        w = y if from_rest else np.sqrt(np.maximum(y, 0.0))
+        at_rest = np.sqrt(2 * self.kappa[0] ** 2 / self.joule[0])  # limit of 2θκ/w at w = 0, θ = 0
+        covered = np.empty_like(w)
+        covered[0] = np.where(w[0] > 0, 0.0, at_rest)
+        per_theta = self._beside(2 * theta[2::2]) * self.kappa[2::2]
+        extra = (1,) * (w.ndim - self.kappa.ndim)
+        covered[1:] = np.reshape(per_theta, (self.steps, *extra, *self.kappa.shape[1:])) / np.maximum(
+            w[1:], _SMALLEST_W
+        )
+        return Along(self.temperature[::2], w, np.asarray(h * simpson(covered, axis=0)))
+
+    def w_below(self, w_top: Array) -> Array:
+        """|w| at the bottom alone, for currents that flow at the top: quick, as nothing on the way is kept."""
+        return self._below(w_top, with_length=False)[0]
+
+    def w_and_length_below(self, w_top: Array) -> tuple[Array, Array]:
+        """|w| at the bottom and the length covered, as `w_below`."""
+        return self._below(w_top, with_length=True)
+
+    def _below(self, w_top: Array, with_length: bool) -> tuple[Array, Array]:
+        shape = np.broadcast_shapes(self.kappa.shape[1:], np.shape(w_top))
+        legs = int(np.prod(self.kappa.shape[1:]))
+        joule, thomson, kappa = (each.reshape(-1, legs) for each in (self.joule, self.thomson, self.kappa))
+        w = np.array(np.broadcast_to(w_top, shape), dtype=float).reshape(-1, legs)
+        length = np.zeros_like(w)
+        for part in (np.s_[:, k : k + _BLOCK] for k in range(0, legs, _BLOCK)):
+            w[part], length[part] = self._block_below(joule[part], thomson[part], kappa[part], w[part], with_length)
+        return w.reshape(shape), length.reshape(shape)
+
+    def _block_below(
+        self, joule: Array, thomson: Array, kappa: Array, w: Array, with_length: bool
+    ) -> tuple[Array, Array | float]:
+        """Both for a block of legs that fits into fast memory: to the bit as `march`, without keeping its steps."""
+        h, theta, y = self.step, self.theta, w**2
+        total, stage, middle, change = (np.empty_like(y) for _ in range(4))
+        before, between, sum_of_threes = np.zeros_like(y), np.zeros_like(y), np.zeros_like(y)
+
+        def slope(i: int, at: Array) -> Array:
+            np.sqrt(np.maximum(at, 0.0, out=change), out=change)
+            np.add(np.multiply(change, thomson[i], out=change), joule[i], out=change)
+            return np.asarray(np.multiply(change, 4 * theta[i], out=change))
+
+        for k in range(self.steps):
+            np.copyto(total, slope(2 * k, y))
+            np.add(y, np.multiply(change, 0.5 * h, out=stage), out=stage)
+            np.copyto(middle, slope(2 * k + 1, stage))
+            np.add(y, np.multiply(change, 0.5 * h, out=stage), out=stage)
+            np.add(middle, slope(2 * k + 1, stage), out=middle)
+            np.add(y, np.multiply(change, h, out=stage), out=stage)
+            np.add(total, np.multiply(middle, 2.0, out=middle), out=total)
+            np.add(total, slope(2 * k + 2, stage), out=total)
+            np.add(y, np.multiply(total, h / 6, out=total), out=y)
+            if with_length:  # by Simpson's rule
+                np.maximum(np.sqrt(np.maximum(y, 0.0, out=stage), out=stage), _SMALLEST_W, out=stage)
+                covered = 2 * theta[2 * k + 2] * kappa[2 * k + 2] / stage
+                if k % 2 == 0:
+                    between = covered
+                else:
+                    sum_of_threes += before + 4 * between + covered
+                    before = covered
+        return np.sqrt(np.maximum(y, 0.0)), sum_of_threes * (h / 3)
+
+
+def march_down(
+    material: LegMaterial, top: float | Array, bottom: float | Array, sign: int, w_top: Array, steps: int
+) -> Along:
     """Integrate d(w²)/dT = −2κρ − 2wT dS/dT from `top` down to `bottom` (K) with w = ±√(w²) of the given sign.
 
     Fourth-order Runge–Kutta in θ = √(T_top − T): for w² where current flows at the top, for w itself from rest
     (a temperature maximum inside the leg), where it is w that is smooth in θ. The length follows by Simpson's
     rule on the same `steps`, an even number of them. From rest the length converges as steps^−2.5 only.
-    w_top: |w| at the top (W/A), shape legs …; `w` has a first axis of steps + 1. Raises nothing of its own.
+    w_top: |w| at the top (W/A), shape legs …; `w` has a first axis of steps + 1. A material of one leg also takes
+    arrays of `top` and `bottom`, which broadcast with w_top. Raises nothing of its own.
     Source: Snyder & Ursell, Physical Review Letters 91, 148301 (2003), w being the inverse of their u.
 
     >>> nodes = np.linspace(280.0, 620.0, 9)
@@ -76,40 +189,11 @@ def march_down(material: LegMaterial, top: float, bottom: float, sign: int, w_to
     >>> bool(abs(along.w[-1] ** 2 - (0.05**2 + 2 * 1.5e-5 * 300)) < 1e-12)  # constant κρ: w² is linear in T
     True
     """
-    theta = np.sqrt(top - bottom) * np.linspace(0.0, 1.0, 2 * steps + 1)
-    t = top - theta**2
-    kappa = material.thermal_conductivity(t)
-    joule = kappa * material.resistivity(t)
-    thomson = np.reshape(sign * t, (-1, *(1,) * (kappa.ndim - 1))) * material.seebeck(t, 1)
-    from_rest = not np.any(w_top)
-
-    def slope(i: int, y: Array) -> Array:
-        if not from_rest:
-            return np.asarray(4 * theta[i] * (joule[i] + np.sqrt(np.maximum(y, 0.0)) * thomson[i]))
-        if i == 0:
-            return np.asarray(np.sqrt(2 * joule[0]))
-        return np.asarray(2 * theta[i] * (joule[i] / np.maximum(y, _SMALLEST_W) + thomson[i]))
-
-    y = np.empty((steps + 1, *np.broadcast_shapes(kappa.shape[1:], np.shape(w_top))))
-    y[0] = np.asarray(w_top, dtype=float) ** 2
-    h = theta[2] - theta[0]
-    for k in range(steps):
-        a = slope(2 * k, y[k])
-        b = slope(2 * k + 1, y[k] + 0.5 * h * a)
-        c = slope(2 * k + 1, y[k] + 0.5 * h * b)
-        d = slope(2 * k + 2, y[k] + h * c)
-        y[k + 1] = y[k] + h / 6 * (a + 2 * (b + c) + d)
-    w = y if from_rest else np.sqrt(np.maximum(y, 0.0))
-    at_rest = np.sqrt(2 * kappa[0] ** 2 / joule[0])  # limit of 2θκ/w at w = 0, θ = 0
-    covered = np.empty_like(w)
-    covered[0] = np.where(w[0] > 0, 0.0, at_rest)
-    per_theta = np.reshape(2 * theta[2::2], (-1, *(1,) * (kappa.ndim - 1))) * kappa[2::2]
-    covered[1:] = np.reshape(per_theta, (steps, *(1,) * (w.ndim - kappa.ndim), *kappa.shape[1:])) / np.maximum(
-        w[1:], _SMALLEST_W
-    )
-    return Along(t[::2], w, np.asarray(simpson(covered, dx=h, axis=0)))
+    return Course(material, top, bottom, sign, steps).march(w_top)
 
 
+#: legs of one block of a march
+_BLOCK = 512
 #: guards the division where no current reaches; W/A
 _SMALLEST_W = 1e-30
 
@@ -145,10 +229,63 @@ def generate(material: LegMaterial, hot: float, cold: float, w_hot: Array, steps
     along = march_down(material, hot, cold, +1, w_hot, steps)
     phi_hot = material.seebeck(hot) * hot + w_hot
     phi_cold = material.seebeck(cold) * cold + along.w[-1]
-    valid = (phi_hot > 0) & (along.w[-1] > 0)
-    efficiency = np.where(valid, 1 - phi_cold / np.where(valid, phi_hot, 1.0), -np.inf)
     current = along.current_length
-    return Generator(efficiency, current * (phi_hot - phi_cold), current, current * phi_hot)
+    return Generator(
+        _efficiency(phi_hot, phi_cold, along.w[-1]), current * (phi_hot - phi_cold), current, current * phi_hot
+    )
+
+
+def efficiency_by_w(material: LegMaterial, hot: float, cold: float, steps: int = 24) -> Callable[[Array], Array]:
+    """The efficiency of `generate` as a function of |w| at the hot end (W/A, > 0) alone, for many trials.
+
+    hot and cold in K; any shape of legs; `steps`: of the march. Raises nothing of its own.
+    Source: Snyder & Ursell, Physical Review Letters 91, 148301 (2003).
+
+    >>> nodes = np.linspace(280.0, 620.0, 9)
+    >>> same = np.ones_like(nodes)
+    >>> material = LegMaterial.from_nodes(nodes, 2e-4 * same, 1e-5 * same, 1.5 * same)
+    >>> quick, whole = efficiency_by_w(material, 600.0, 300.0), generate(material, 600.0, 300.0, np.array(0.1))
+    >>> bool(abs(quick(np.array(0.1)) / whole.efficiency - 1) < 1e-12)
+    True
+    """
+    course = Course(material, hot, cold, +1, steps)
+    pull_hot, pull_cold = material.seebeck(hot) * hot, material.seebeck(cold) * cold
+
+    def efficiency(w_hot: Array) -> Array:
+        w_cold = course.w_below(w_hot)
+        return _efficiency(pull_hot + w_hot, pull_cold + w_cold, w_cold)
+
+    return efficiency
+
+
+def power_by_w(material: LegMaterial, hot: float, cold: float, steps: int = 24) -> Callable[[Array], Array]:
+    """The power times length of `generate` (W/m) as a function of |w| at the hot end (W/A, > 0), for many trials.
+
+    −inf where the leg would consume heat in the wrong sense. hot and cold in K; any shape of legs; `steps`: of the
+    march, even. Raises nothing of its own.
+    Source: Snyder & Ursell, Physical Review Letters 91, 148301 (2003).
+
+    >>> nodes = np.linspace(280.0, 620.0, 9)
+    >>> same = np.ones_like(nodes)
+    >>> material = LegMaterial.from_nodes(nodes, 2e-4 * same, 1e-5 * same, 1.5 * same)
+    >>> quick, whole = power_by_w(material, 600.0, 300.0), generate(material, 600.0, 300.0, np.array(0.1))
+    >>> bool(abs(quick(np.array(0.1)) / whole.power_times_length - 1) < 1e-12)
+    True
+    """
+    course = Course(material, hot, cold, +1, steps)
+    pull_hot, pull_cold = material.seebeck(hot) * hot, material.seebeck(cold) * cold
+
+    def power(w_hot: Array) -> Array:
+        w_cold, length = course.w_and_length_below(w_hot)
+        phi_hot, phi_cold = pull_hot + w_hot, pull_cold + w_cold
+        return np.where((phi_hot > 0) & (w_cold > 0), length * (phi_hot - phi_cold), -np.inf)
+
+    return power
+
+
+def _efficiency(phi_hot: Array, phi_cold: Array, w_cold: Array) -> Array:
+    valid = (phi_hot > 0) & (w_cold > 0)
+    return np.where(valid, 1 - phi_cold / np.where(valid, phi_hot, 1.0), -np.inf)
 
 
 @dataclass(frozen=True)
@@ -183,10 +320,31 @@ def cool(material: LegMaterial, hot: float, cold: float, w_hot: Array, steps: in
     along = march_down(material, hot, cold, -1, w_hot, steps)
     phi_hot = material.seebeck(hot) * hot - w_hot
     phi_cold = material.seebeck(cold) * cold - along.w[-1]
-    spent = phi_hot - phi_cold
-    cop = np.where(spent > 0, phi_cold / np.where(spent > 0, spent, 1.0), -np.inf)
     current = along.current_length
-    return Cooler(cop, current * phi_cold, current, current * spent)
+    return Cooler(_cop(phi_hot, phi_cold), current * phi_cold, current, current * (phi_hot - phi_cold))
+
+
+def cop_by_w(material: LegMaterial, hot: float, cold: float, steps: int = 24) -> Callable[[Array], Array]:
+    """The COP of `cool` as a function of |w| at the hot end (W/A) alone, for many trials.
+
+    hot and cold in K; any shape of legs; `steps`: of the march. Raises nothing of its own.
+    Source: Snyder & Ursell, Physical Review Letters 91, 148301 (2003).
+
+    >>> nodes = np.linspace(280.0, 320.0, 9)
+    >>> same = np.ones_like(nodes)
+    >>> material = LegMaterial.from_nodes(nodes, 2e-4 * same, 1e-5 * same, 4 / 3 * same)
+    >>> quick, whole = cop_by_w(material, 310.0, 300.0), cool(material, 310.0, 300.0, np.array(0.02))
+    >>> bool(abs(quick(np.array(0.02)) / whole.cop - 1) < 1e-12)
+    True
+    """
+    course = Course(material, hot, cold, -1, steps)
+    pull_hot, pull_cold = material.seebeck(hot) * hot, material.seebeck(cold) * cold
+    return lambda w_hot: _cop(pull_hot - w_hot, np.asarray(pull_cold - course.w_below(w_hot)))
+
+
+def _cop(phi_hot: Array, phi_cold: Array) -> Array:
+    spent = phi_hot - phi_cold
+    return np.where(spent > 0, phi_cold / np.where(spent > 0, spent, 1.0), -np.inf)
 
 
 def cool_past_peak(material: LegMaterial, hot: float, cold: float, peak: float, steps: int = 24) -> Cooler:
@@ -269,3 +427,28 @@ def zoom(score: Callable[[Array], Array], low: Array, high: Array, points: int, 
         low = np.take_along_axis(grid, np.maximum(best - 1, 0), axis=0)[0]
         high = np.take_along_axis(grid, np.minimum(best + 1, points - 1), axis=0)[0]
     return np.take_along_axis(grid, best, axis=0)[0], np.take_along_axis(values, best, axis=0)[0]
+
+
+#: coefficients of the quartic through five even points −2 … 2
+_QUARTIC = np.linalg.inv(np.vander(np.arange(-2.0, 3.0), increasing=True))
+
+
+def crest(five: Array) -> tuple[Array, Array]:
+    """Where the quartic through `five` even points (first axis) is highest, and how high.
+
+    The place is dimensionless, −2 … 2 in steps between points; the height in the unit of the points; both of the
+    shape of the other axes. Newton's method on the slope, from the middle point. Raises nothing of its own.
+    By definition.
+
+    >>> x = np.arange(-2.0, 3.0)
+    >>> where, top = crest(3 - (x - 0.4) ** 2)
+    >>> f"{float(where):.6f} {float(top):.6f}"
+    '0.400000 3.000000'
+    """
+    coefficients = np.tensordot(_QUARTIC, five, axes=1)
+    x = np.zeros(five.shape[1:])
+    for _ in range(4):
+        slope = sum(k * coefficients[k] * x ** (k - 1) for k in range(1, 5))
+        bend = sum(k * (k - 1) * coefficients[k] * x ** (k - 2) for k in range(2, 5))
+        x = np.clip(x - np.where(bend < 0, slope / np.where(bend < 0, bend, 1.0), 0.0), -2.0, 2.0)
+    return x, np.asarray(sum(coefficients[k] * x**k for k in range(5)))

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+import math
+from dataclasses import dataclass, replace
 from typing import Literal, get_args
 
 import numpy as np
@@ -10,12 +11,15 @@ from numpy.typing import NDArray
 
 from legwright.leg.balance import (
     LegMaterial,
-    cool,
     cool_past_peak,
-    generate,
+    cop_by_w,
+    crest,
+    efficiency_by_w,
     largest_difference,
+    power_by_w,
     zoom,
 )
+from legwright.leg.installed import Running, best_running
 
 Array = NDArray[np.float64]
 Kind = Literal["generator", "cooler"]
@@ -43,11 +47,35 @@ _COLDEST = 0.5
 
 
 @dataclass(frozen=True)
+class Setting:
+    """What surrounds a leg, per area of leg, one number each.
+
+    contact: resistivity of each contact (Ω m²); hot_resistance and cold_resistance to heat between reservoir and
+    leg's end (K m²/W), contact and exchanger together; side_loss: heat-transfer coefficient of the sides times
+    perimeter over area of the leg (W/(m³ K)); ambient: temperature around the sides (K), where None the cold
+    reservoir's of a generator, the hot one's of a cooler.
+    """
+
+    contact: float = 0.0
+    hot_resistance: float = 0.0
+    cold_resistance: float = 0.0
+    side_loss: float = 0.0
+    ambient: float | None = None
+
+    @property
+    def ideal(self) -> bool:
+        """Whether nothing at all stands between the leg and its reservoirs, or leaks."""
+        return not (self.contact or self.hot_resistance or self.cold_resistance or self.side_loss)
+
+
+@dataclass(frozen=True)
 class Duty:
     """What the leg is for, one number each.
 
     kind: generator or cooler; hot and cold, the temperatures of its ends (K); maximise: the goal that counts, one
-    of `GOALS` of the kind; length of the leg (m), for areal figures.
+    of `GOALS` of the kind; length of the leg (m); setting: contacts, exchangers and side loss; lengths: a range of
+    lengths (m) that are free, where the best one is wanted instead of `length`; felt_length: what free paths of
+    carriers and phonons feel of it (m), inf in a long leg.
     """
 
     kind: Kind
@@ -55,23 +83,42 @@ class Duty:
     cold: float
     maximise: Goal
     length: float
+    setting: Setting = Setting()
+    lengths: tuple[float, float] | None = None
+    felt_length: float = math.inf
+
+    @property
+    def alone(self) -> Duty:
+        """The same duty with nothing between the leg and its reservoirs."""
+        return replace(self, setting=Setting(), lengths=None)
 
     @property
     def span(self) -> tuple[float, float]:
         """Temperatures over which the material's properties are needed."""
+        if not self.setting.ideal:
+            return self.reach
         if self.maximise == "delta_t":
             return _COLDEST * self.hot, self.hot
         if self.maximise == "heat_lifted":
             return self.cold, (1 + _PEAK_RISE) * self.hot
         return self.cold, self.hot
 
+    @property
+    def reach(self) -> tuple[float, float]:
+        """Temperatures that the ends and the inside of a leg can come to in any setting."""
+        if self.kind == "generator":
+            return self.cold, self.hot
+        return min(_COLDEST * self.hot, self.cold), (1 + _PEAK_RISE) * self.hot
+
 
 def best_score(material: LegMaterial, duty: Duty, rounds: int = 4) -> Array:
-    """The duty's score at the best current, contacts at zero; 0 where the leg cannot serve.
+    """The duty's score at the best current; 0 where the leg cannot serve.
 
     Efficiency 1 − Φ_c/Φ_h, COP Φ_c/(Φ_h − Φ_c), power j (Φ_h − Φ_c) or heat lifted j Φ_c with Φ = S T + w, or ΔT.
     Efficiency and COP are fractions, areal figures W/cm² of leg, ΔT in K; the shape is that of the legs. `rounds`
-    sets how closely the best current is found: each divides the bracket by three. Raises nothing of its own.
+    sets how closely the best current is found: each divides the bracket by three. A setting that is not ideal, or a
+    free length, goes through `best_running`, whose currents are closer than any rounds, and
+    whose AssertionError is a fault of the program.
     Sources: Ioffe, Semiconductor Thermoelements and Thermoelectric Cooling (1957); Snyder & Ursell, Physical Review
     Letters 91, 148301 (2003).
 
@@ -81,6 +128,8 @@ def best_score(material: LegMaterial, duty: Duty, rounds: int = 4) -> Array:
     >>> f"{float(best_score(material, Duty('generator', 600.0, 300.0, 'efficiency', 1e-3), 8)):.5f}"
     '0.10819'
     """
+    if not duty.setting.ideal or duty.lengths:
+        return score_of(best_running(material, duty), duty)
     if duty.maximise == "delta_t":
         return largest_difference(material, duty.hot)
     if duty.maximise == "heat_lifted":
@@ -88,22 +137,34 @@ def best_score(material: LegMaterial, duty: Duty, rounds: int = 4) -> Array:
     pull = np.maximum(material.seebeck(duty.hot) * duty.hot, 1e-12)
     root = np.sqrt(1 + _figure_of_merit(material, duty) * 0.5 * (duty.hot + duty.cold))
     if duty.kind == "cooler":
-        _, score = zoom(
-            lambda w: cool(material, duty.hot, duty.cold, w).cop, np.zeros_like(pull), pull, 7, rounds + 1
-        )
-        return _serving(score)
-
-    def generated(log_w: Array) -> Array:
-        made = generate(material, duty.hot, duty.cold, np.exp(log_w))
-        if duty.maximise == "efficiency":
-            return made.efficiency
-        return np.where(np.isfinite(made.efficiency), made.power_times_length, -np.inf)
-
+        cop = cop_by_w(material, duty.hot, duty.cold)
+        return _serving(zoom(cop, np.zeros_like(pull), pull, 7, rounds + 1)[1])
     expected = np.log(pull / np.maximum(root - 1, 1e-9))
-    _, score = zoom(generated, expected - 2.5, expected + 2.5, 7, rounds + 1)
-    if duty.maximise == "power":
-        score = score / duty.length / _PER_CM2
-    return _serving(score)
+    trial = efficiency_by_w if duty.maximise == "efficiency" else power_by_w
+    figure = trial(material, duty.hot, duty.cold)
+    _, score = zoom(lambda log_w: figure(np.exp(log_w)), expected - 2.5, expected + 2.5, 7, rounds + 1)
+    return _serving(score if duty.maximise == "efficiency" else score / duty.length / _PER_CM2)
+
+
+def score_of(running: Running, duty: Duty) -> Array:
+    """The duty's score at operating points: fractions, W/cm² of leg or K, 0 where the leg does not serve.
+
+    Shape of `running`. Raises nothing of its own. By definition.
+
+    >>> nodes = np.linspace(300.0, 600.0, 9)
+    >>> same = np.ones_like(nodes)
+    >>> material = LegMaterial.from_nodes(nodes, 2e-4 * same, 1.2e-5 * same, 1.5 * same)
+    >>> duty = Duty("generator", 600.0, 300.0, "power", 1e-3)
+    >>> f"{float(score_of(best_running(material, duty), duty)):.4f}"  # (S ΔT)²/4ρL
+    '7.5000'
+    """
+    if duty.maximise == "delta_t":
+        score = duty.hot - running.cold_end
+    elif duty.maximise in ("efficiency", "cop"):
+        score = running.efficiency if duty.maximise == "efficiency" else running.cop
+    else:
+        score = (running.power if duty.maximise == "power" else running.heat_cold) / _PER_CM2
+    return np.where(running.serves, score, 0.0)
 
 
 def _figure_of_merit(material: LegMaterial, duty: Duty) -> Array:
@@ -129,16 +190,8 @@ def _best_lift(material: LegMaterial, duty: Duty) -> Array:
     )
     centre = np.clip(np.argmax(lifted, axis=0), 2, _PEAKS - 3)[None]
     five = np.stack([np.take_along_axis(lifted, centre + step, axis=0)[0] for step in range(-2, 3)])
-    coefficients = np.tensordot(_QUARTIC, five, axes=1)
-    x = np.zeros(five.shape[1:])
-    for _ in range(4):  # Newton on the quartic's slope, from the middle point
-        slope = sum(k * coefficients[k] * x ** (k - 1) for k in range(1, 5))
-        bend = sum(k * (k - 1) * coefficients[k] * x ** (k - 2) for k in range(2, 5))
-        x = np.clip(x - np.where(bend < 0, slope / np.where(bend < 0, bend, 1.0), 0.0), -2.0, 2.0)
-    top = sum(coefficients[k] * x**k for k in range(5))
+    _, top = crest(five)
     return np.asarray(np.maximum(np.max(lifted, axis=0), top))
 
 
 _PEAKS = 25
-#: coefficients of the quartic through five even points −2 … 2
-_QUARTIC = np.linalg.inv(np.vander(np.arange(-2.0, 3.0), increasing=True))

@@ -423,8 +423,13 @@ def _by_path(electrons: Electrons, flow: Flow, *parts: Array) -> Array:
     return np.concatenate(sides, axis=-2)
 
 
-def integrals_at(spectrum: Array, size: Array, shape: str, reflection: float) -> tuple[Integrals, Integrals]:
+def integrals_at(
+    spectrum: Array, size: Array, shape: str, reflection: float, length: float = np.inf
+) -> tuple[Integrals, Integrals]:
     """L_0, L_1, L_2 of the conduction and of the valence bands at each size: Σ_j W_j F(Λ_j/d), SI.
+
+    In a leg of `length` L (m, one for all) between its contacts each path Λ F is held back once more, by the factor
+    1/(1 + 4ΛF/3L) of `short_leg_suppression`; inf for a long leg.
 
     `spectrum` as `path_spectrum`; size d (m, may be inf) broadcasts with its states; shape 'grain', 'wire', 'film';
     reflection R of grain boundaries, 0 … 1. The sums of `transport_integrals` to 1e-9. Sources and ValueError as
@@ -439,7 +444,10 @@ def integrals_at(spectrum: Array, size: Array, shape: str, reflection: float) ->
     >>> bool(up.l0[0] < up.l0[1])
     True
     """
-    sums = through(spectrum, held_back(PATHS.paths, size[..., None], shape, reflection))
+    kept = held_back(PATHS.paths, size[..., None], shape, reflection)
+    if np.isfinite(length):
+        kept = kept * short_leg_suppression(PATHS.paths * kept, length)
+    sums = through(spectrum, kept)
     up, down = (Integrals(*np.moveaxis(sums[..., part], -1, 0)) for part in (slice(0, 3), slice(3, 6)))
     return up, down
 

@@ -8,7 +8,6 @@ from functools import lru_cache
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
-from scipy.optimize import least_squares
 
 from legwright.base.errors import InputError
 from legwright.base.units import EPS_0
@@ -17,7 +16,7 @@ from legwright.candidate.library import Candidate
 from legwright.candidate.model import Anchor, Band, Fitted
 from legwright.candidate.number import Measure
 from legwright.candidate.priors import load_priors
-from legwright.physics.carriers import Electrons, bulk_flow, fill, masses, transport_integrals
+from legwright.physics.carriers import Electrons, Filling, bulk_flow, fill, masses, transport_integrals
 from legwright.physics.lattice import (
     Carriers,
     Phonons,
@@ -270,11 +269,12 @@ _BULK = np.array(np.inf)
 
 
 def bulk_mobility_and_seebeck(
-    electrons: Electrons, temperature: ArrayLike, doping: ArrayLike
+    electrons: Electrons, temperature: ArrayLike, doping: ArrayLike, filling: Filling | None = None
 ) -> tuple[Array, Array]:
     """σ/(e × majority density) in m²/(V s), and S in V/K, of coarse material at temperature (K) and doping (1/m³).
 
-    µ = e L_0/n and S = −L_1/(e T L_0) as in `moments`; the two broadcast. Raises ArithmeticError as `fill`.
+    µ = e L_0/n and S = −L_1/(e T L_0) as in `moments`; the two broadcast. `filling`: of these bands there, where it
+    is known. Raises ArithmeticError as `fill`.
     Source: Ravich, Efimova & Smirnov, Semiconducting Lead Chalcogenides (1970).
 
     >>> from legwright.candidate.library import load_candidate
@@ -284,7 +284,7 @@ def bulk_mobility_and_seebeck(
     True
     """
     t, n = np.broadcast_arrays(np.asarray(temperature, dtype=float), np.asarray(doping, dtype=float))
-    filling = fill(electrons, t, n)
+    filling = fill(electrons, t, n) if filling is None else filling
     sums = transport_integrals(bulk_flow(electrons, t, n, filling), _BULK, "grain", 0.0)
     majority, every = electrons.majority, sums.over(np.full(electrons.side.shape, True))
     moving = mobility(sums.over(majority).l0, np.sum(filling.density[..., majority], axis=-1))
@@ -320,15 +320,18 @@ def _fix_electrons(candidate: Candidate, bare: Electrons) -> Electrons:
     spread = np.array([anchor.measured.relative_spread for anchor in anchors])
     of_mobility = np.array([anchor.quantity == "mobility" for anchor in anchors])
 
+    @lru_cache(maxsize=2)
+    def filled(mass_scale: float) -> Filling:
+        return fill(replace(bare, mass_scale=mass_scale), temperature, doping)
+
     def misses(logs: Array) -> Array:
-        moving, thermopower = bulk_mobility_and_seebeck(scaled(logs), temperature, doping)
+        one = scaled(logs)
+        moving, thermopower = bulk_mobility_and_seebeck(one, temperature, doping, filled(one.mass_scale))
         return np.asarray((np.where(of_mobility, moving, thermopower) / measured - 1) / spread)
 
-    found = least_squares(
-        misses, np.zeros(len(unknowns)), bounds=(-_FARTHEST, _FARTHEST), xtol=1e-12, ftol=1e-12, gtol=1e-12
-    )
-    _refuse_far_misses(candidate, anchors, found.fun)
-    return scaled(found.x)
+    logs, left = _least_misses(misses, len(unknowns))
+    _refuse_far_misses(candidate, anchors, left)
+    return scaled(logs)
 
 
 _ELECTRON_FIXES = ("mass", "lattice scattering", "impurity scattering")
@@ -340,6 +343,33 @@ _FAR = 3.0
 def _unknown(anchor: Anchor) -> tuple[str, float]:
     """The factor that an anchor fixes; heavy doping has one per density."""
     return anchor.fixes, float(np.log(_si(anchor.doping))) if anchor.fixes == "impurity scattering" else 0.0
+
+
+def _least_misses(misses: Callable[[Array], Array], unknowns: int) -> tuple[Array, Array]:
+    """Logarithms of the factors with the smallest Σ miss², and the misses there.
+
+    Newton's steps as Gauss shortened them, which take few looks where anchors are met; scipy's trust region where
+    they do not settle: its import alone takes a third of the time of a whole sheet.
+    """
+    logs, left = np.zeros(unknowns), misses(np.zeros(unknowns))
+    for _ in range(_NEWTON_STEPS):
+        slope = np.stack([misses(logs + nudge) - left for nudge in _NUDGE * np.eye(unknowns)], axis=1) / _NUDGE
+        step = np.linalg.lstsq(slope, -left, rcond=None)[0]
+        tried = np.clip(logs + step, -_FARTHEST, _FARTHEST)
+        now = misses(tried)
+        if not np.sum(now**2) <= np.sum(left**2) * (1 + 1e-9) + 1e-24:
+            break
+        logs, left = tried, now
+        if np.max(np.abs(step)) < _SETTLED:
+            return logs, left
+
+    from scipy.optimize import least_squares
+
+    found = least_squares(misses, logs, bounds=(-_FARTHEST, _FARTHEST), xtol=1e-12, ftol=1e-12, gtol=1e-12)
+    return found.x, found.fun
+
+
+_NEWTON_STEPS, _NUDGE, _SETTLED = 25, 1e-7, 3e-8
 
 
 def _refuse_far_misses(candidate: Candidate, anchors: list[Anchor], misses: Array) -> None:
@@ -411,11 +441,9 @@ def _fix_phonons(candidate: Candidate, one: Crystal) -> Phonons:
         made = replace(one, phonons=scaled(logs))
         return np.array([_lattice_miss(made, anchor) / anchor.measured.relative_spread for anchor in anchors])
 
-    found = least_squares(
-        misses, np.zeros(len(unknowns)), bounds=(-_FARTHEST, _FARTHEST), xtol=1e-12, ftol=1e-12, gtol=1e-12
-    )
-    _refuse_far_misses(candidate, anchors, found.fun)
-    return scaled(found.x)
+    logs, left = _least_misses(misses, len(unknowns))
+    _refuse_far_misses(candidate, anchors, left)
+    return scaled(logs)
 
 
 _PHONON_FIXES = {

@@ -6,7 +6,7 @@ Axes: whatever temperature, doping and size broadcast to, then branches (longitu
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cache
 
 import numpy as np
@@ -185,8 +185,8 @@ def _excited(half: Array) -> Array:
 class Rates:
     """Rates 1/τ (1/s) inside an unbounded crystal at each (T, doping); last axes: branches, modes.
 
-    umklapp, defects (points, with vacancies), carriers, dislocations and precipitates resist; normal processes do
-    not. None: the crystal has none of these.
+    umklapp, defects (points, with vacancies), carriers, dislocations and precipitates resist, and boundaries where
+    `bounded` has put them; normal processes do not. None: the crystal has none of these.
     """
 
     umklapp: Array
@@ -195,12 +195,13 @@ class Rates:
     normal: Array
     dislocations: Array | None = None
     precipitates: Array | None = None
+    boundaries: Array | None = None
 
     @property
     def resistive(self) -> Array:
         """All that destroys crystal momentum."""
         total = self.umklapp + self.defects + self.carriers
-        for extended in (self.dislocations, self.precipitates):
+        for extended in (self.dislocations, self.precipitates, self.boundaries):
             if extended is not None:
                 total = total + extended
         return total
@@ -364,12 +365,36 @@ def acoustic_conductivity(
     return np.asarray(direct + carried)
 
 
+def bounded(phonons: Phonons, mesh: Modes, rates: Rates, size: Array, shape: str) -> Rates:
+    """The rates (1/s) with those of the body's boundaries, as `acoustic_conductivity` takes them.
+
+    Grains: v/Λ_gb; walls: what their kinetic factor F adds, (1/F − 1)/τ_C. size d (m, may be inf) of a 'grain',
+    'wire' or 'film' broadcasts with the states of `rates`. ValueError and sources as `acoustic_conductivity`.
+
+    >>> from legwright.candidate.library import load_candidate
+    >>> from legwright.physics.crystal import crystal
+    >>> phonons = crystal(load_candidate("si-n")).phonons
+    >>> mesh, t = modes(phonons), np.array(300.0)
+    >>> rates = crystal_rates(phonons, mesh, t, np.array(0.0), None)
+    >>> walled = bounded(phonons, mesh, rates, np.array(1e-8), "wire")
+    >>> long = short_leg_conductivity(mesh, walled, t, np.array(np.inf))
+    >>> bool(abs(long / acoustic_conductivity(phonons, mesh, rates, t, np.array(1e-8), "wire") - 1) < 1e-12)
+    True
+    """
+    d = size[..., None, None]
+    if shape == "grain":
+        return replace(rates, boundaries=mesh.velocity / grain_path(phonons, mesh, d))
+    free = rates.resistive + rates.normal
+    kept = wall_suppression(phonons, mesh, shape)(mesh.velocity / free / d)
+    return replace(rates, boundaries=(1 / kept - 1) * free)
+
+
 def short_leg_conductivity(mesh: Modes, rates: Rates, temperature: Array, length: Array) -> Array:
     """Conductivity G L of a leg so short that phonons cross it in flight, W/(m K); optical heat is not in it.
 
     G = Σ∫ ¼ C v/(1 + 3L/4Λ) per area, so G L = Σ∫ w C v Λ/(1 + 4Λ/3L) with w = q² dq/6π². Λ is a mode's path in
-    Callaway's solution of the unbounded crystal, Λ = v τ_C + U (q/ω) τ_C/τ_N with the shared drift
-    U = Σ∫ w C (v q/ω) τ_C/τ_N / Σ∫ w C (q/ω)² τ_C/(τ_N τ_R): L → ∞ is `acoustic_conductivity` of coarse material.
+    Callaway's solution for `rates` (from `bounded`, of a body), Λ = v τ_C + U (q/ω) τ_C/τ_N with the shared drift
+    U = Σ∫ w C (v q/ω) τ_C/τ_N / Σ∫ w C (q/ω)² τ_C/(τ_N τ_R): L → ∞ is `acoustic_conductivity`.
     L → 0 is L Σ∫ ¾ w C v, the ballistic leg between contacts that absorb all that comes: nothing is capped.
 
     temperature T (K) and length L > 0 (m, may be inf) broadcast with the states of `rates`. ValueError for L ≤ 0.

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
-from functools import cached_property
+from functools import cached_property, partial
 from typing import TYPE_CHECKING, Literal, get_args
 
 import numpy as np
@@ -31,10 +31,12 @@ from legwright.physics.crystal import Crystal, crystal, majority_carriers
 from legwright.physics.hall import hall_coefficient, hall_factor
 from legwright.physics.lattice import (
     amorphous_minimum,
+    bounded,
     conductivity_by_size,
     crystal_rates,
     modes,
     optical_conductivity,
+    short_leg_conductivity,
 )
 
 if TYPE_CHECKING:
@@ -116,14 +118,12 @@ class Properties:
         """Worked out when first asked for: maps and ranks do without."""
         t, n, d = (_one_of_equals(a) for a in (self.temperature, self.doping, self.size))
         acting = self.crystal.acting_size(d, self.shape)
-        parts = _evaluate_blocks(self.crystal, t, n, acting, self.shape, _hall_block)
+        parts = _evaluate_blocks(self.crystal, t, n, acting, self.shape, _hall_block, _POINTS)
         return {name: np.broadcast_to(part, self.size.shape) for name, part in parts.items()}
 
-    def to_frame(self) -> pd.DataFrame:
-        """One row a design point, in trade units that each column names."""
-        import pandas as pd
-
-        columns = {
+    def columns(self) -> dict[str, Array]:
+        """Everything by name and trade unit; one value a design point."""
+        named = {
             "temperature [K]": self.temperature,
             "doping [1/cm^3]": self.doping / PER_CM3,
             "size [nm]": self.size / NM,
@@ -141,16 +141,30 @@ class Properties:
             "power factor [W/m/K^2]": self.power_factor,
             "zT [1]": self.zt,
         }
-        return pd.DataFrame({name: np.ravel(values) for name, values in columns.items()})
+        return {name: np.ravel(values) for name, values in named.items()}
+
+    def to_frame(self) -> pd.DataFrame:
+        """One row a design point, in trade units that each column names."""
+        import pandas as pd
+
+        return pd.DataFrame(self.columns())
 
 
 def evaluate(
-    candidate: Candidate, temperature: ArrayLike, doping: ArrayLike, size: ArrayLike, shape: str = "grain"
+    candidate: Candidate,
+    temperature: ArrayLike,
+    doping: ArrayLike,
+    size: ArrayLike,
+    shape: str = "grain",
+    length: float = np.inf,
 ) -> Properties:
     """All transport properties of a candidate, in SI.
 
     temperature T (2 to 3000 K), doping: net active density (1/m³; its sign is the candidate's carrier),
     size d (m; inf for coarse material) of grain, wire or film by `shape`; all broadcast.
+    `length` of the leg between its contacts (m, one for all; inf: long): σ and κ are its conductances times that,
+    each energy and mode by itself from diffusive to ballistic (`short_leg_suppression`); contacts absorb all that
+    comes, the leg is taken as of one temperature, and optical heat, which hardly travels, stays as it was.
     σ = e²L_0, S = −L_1/(eTL_0), κ_e = (L_2 − L_1²/L_0)/T over all bands on one energy axis (Ravich et al.);
     bipolar = κ_e − κ_e(conduction alone) − κ_e(valence alone) (Goldsmid); lattice after Callaway.
     Raises InputError naming a value that physics does not allow.
@@ -162,11 +176,16 @@ def evaluate(
     >>> bool(made.lattice_thermal_conductivity[0] < 0.2 * made.lattice_thermal_conductivity[1])
     True
     """
-    return evaluate_crystal(crystal(candidate), temperature, doping, size, shape)
+    return evaluate_crystal(crystal(candidate), temperature, doping, size, shape, length)
 
 
 def evaluate_crystal(
-    one: Crystal, temperature: ArrayLike, doping: ArrayLike, size: ArrayLike, shape: str = "grain"
+    one: Crystal,
+    temperature: ArrayLike,
+    doping: ArrayLike,
+    size: ArrayLike,
+    shape: str = "grain",
+    length: float = np.inf,
 ) -> Properties:
     """`evaluate` for a crystal in hand, whose numbers may have been changed.
 
@@ -183,18 +202,31 @@ def evaluate_crystal(
     """
     if shape not in SHAPES:
         raise InputError(f"value '{shape}' is not allowed; {nearest(shape, SHAPES)}", key="shape")
-    t = _within(temperature, "temperature", COLDEST, HOTTEST, "K")
-    n = _within(doping, "doping", THINNEST, DENSEST, "1/m³")
-    d = _within(size, "size", SMALLEST, LARGEST, "m", infinite=True)
+    t = within(temperature, "temperature", COLDEST, HOTTEST, "K")
+    n = within(doping, "doping", THINNEST, DENSEST, "1/m³")
+    d = within(size, "size", SMALLEST, LARGEST, "m", infinite=True)
     rank = max(t.ndim, n.ndim, d.ndim)
     t, n, d = (np.reshape(a, (1,) * (rank - a.ndim) + a.shape) for a in (t, n, d))
-    parts = _evaluate_blocks(one, t, n, one.acting_size(d, shape), shape, _evaluate_block)
+    if not length > 0:
+        raise InputError(f"value {length:g} m is not allowed; a length above 0", key="length")
+    block = partial(_evaluate_block, length=length)
+    by_mode = one.phonons.wall_roughness is not None or np.isfinite(length)
+    parts = _evaluate_blocks(
+        one, t, n, one.acting_size(d, shape), shape, block, _POINTS_BY_MODE if by_mode else _POINTS
+    )
     whole = np.broadcast_shapes(t.shape, n.shape, d.shape)
     t, n, d = (np.broadcast_to(a, whole) for a in (t, n, d))
     return Properties(t, n, d, shape, **parts, crystal=one)
 
 
-def _within(value: ArrayLike, key: str, low: float, high: float, unit: str, *, infinite: bool = False) -> Array:
+def within(value: ArrayLike, key: str, low: float, high: float, unit: str, *, infinite: bool = False) -> Array:
+    """`value` (of any shape, in SI) as an array, where all of it lies from `low` to `high` or, if so said, is inf.
+
+    Raises InputError that names `key`, the first value outside and what is allowed. By definition.
+
+    >>> float(within(300.0, "temperature", 2.0, 3000.0, "K"))
+    300.0
+    """
     array = np.asarray(value, dtype=float)
     allowed = ((array >= low) & (array <= high)) | (infinite & np.isposinf(array))
     if not np.all(allowed):
@@ -212,11 +244,12 @@ def _one_of_equals(array: Array) -> Array:
 _Block = Callable[[Crystal, Array, Array, Array, str], dict[str, Array]]
 
 
-def _evaluate_blocks(one: Crystal, t: Array, n: Array, d: Array, shape: str, block: _Block) -> dict[str, Array]:
+def _evaluate_blocks(
+    one: Crystal, t: Array, n: Array, d: Array, shape: str, block: _Block, points: int
+) -> dict[str, Array]:
     """Split the longest axis until a block is small; each point's sums do not depend on the split."""
     states = np.broadcast_shapes(t.shape, n.shape)
     whole = np.broadcast_shapes(states, d.shape)
-    points = _POINTS if one.phonons.wall_roughness is None else _POINTS_BY_MODE
     if int(np.prod(states)) > _STATES:
         axis = int(np.argmax(states))
     elif int(np.prod(whole)) > points:
@@ -231,23 +264,28 @@ def _evaluate_blocks(one: Crystal, t: Array, n: Array, d: Array, shape: str, blo
         return a[tuple(index)]
 
     halves = [
-        _evaluate_blocks(one, half(t, part), half(n, part), half(d, part), shape, block)
+        _evaluate_blocks(one, half(t, part), half(n, part), half(d, part), shape, block, points)
         for part in (slice(None, middle), slice(middle, None))
     ]
     return {name: np.concatenate([half[name] for half in halves], axis=axis) for name in halves[0]}
 
 
-def _evaluate_block(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> dict[str, Array]:
+def _evaluate_block(
+    one: Crystal, t: Array, n: Array, d: Array, shape: str, length: float = np.inf
+) -> dict[str, Array]:
     electrons, phonons, dense = one.electrons, one.phonons, one.dense_share
     filled_t, filled_n = np.broadcast_arrays(t, n)
     filling = fill(electrons, filled_t, filled_n)
     flow = bulk_flow(electrons, filled_t, filled_n, filling)
-    up, down, _ = _both_kinds(electrons, filled_t, filling, flow, d, shape)
+    up, down, _ = _both_kinds(electrons, filled_t, filling, flow, d, shape, length)
     bipolar = moments.bipolar_heat(up.l0, up.l1, down.l0, down.l1, t)
     one_sided = [moments.electronic_heat(part.l0, part.l1, part.l2, t) for part in (up, down)]
     mesh = modes(phonons)
     rates = crystal_rates(phonons, mesh, t, n, majority_carriers(electrons, filled_t, filling.eta))
-    acoustic = conductivity_by_size(phonons, mesh, rates, filled_t, d, shape)
+    if np.isfinite(length):
+        acoustic = short_leg_conductivity(mesh, bounded(phonons, mesh, rates, d, shape), filled_t, np.array(length))
+    else:
+        acoustic = conductivity_by_size(phonons, mesh, rates, filled_t, d, shape)
     moving = up if electrons.carrier > 0 else down
     parts = {
         "electrical_conductivity": dense * moments.conductivity(up.l0 + down.l0),
@@ -263,10 +301,10 @@ def _evaluate_block(one: Crystal, t: Array, n: Array, d: Array, shape: str) -> d
 
 
 def _both_kinds(
-    electrons: Electrons, t: Array, filling: Filling, flow: Flow, d: Array, shape: str
+    electrons: Electrons, t: Array, filling: Filling, flow: Flow, d: Array, shape: str, length: float = np.inf
 ) -> tuple[Integrals, Integrals, tuple[Array | float, Array | float]]:
     """Integrals of the conduction and of the valence bands, and the share that barriers left of each."""
-    up, down = integrals_at(path_spectrum(electrons, flow), d, shape, electrons.reflection)
+    up, down = integrals_at(path_spectrum(electrons, flow), d, shape, electrons.reflection, length)
     if not electrons.barrier or shape != "grain":
         return up, down, (1.0, 1.0)
     if electrons.carrier > 0:

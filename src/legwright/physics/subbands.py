@@ -11,7 +11,6 @@ from functools import cache
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
-from scipy.optimize.elementwise import find_root
 from scipy.special import expit, jn_zeros, jv
 
 from legwright.base.units import HBAR, K_B
@@ -214,6 +213,8 @@ def subband_level(band: WireBand, temperature: ArrayLike, density: ArrayLike, di
 
     def miss(level: Array, ratio: Array, filled: Array) -> Array:
         return np.log(np.maximum(_lines(level, ratio), 1e-300)) - np.log(filled)
+
+    from scipy.optimize.elementwise import find_root
 
     return np.asarray(find_root(miss, (low, high), args=(ratio, filled)).x)
 

@@ -15,8 +15,12 @@ from legwright.base.errors import InputError
 if TYPE_CHECKING:
     from legwright.show.records import Record
 
+    _Number = click.ParamType[float]
+else:
+    _Number = click.ParamType
 
-class Positive(click.ParamType[float]):
+
+class Positive(_Number):
     """A finite number above zero, and where allowed a word that stands for coarse material."""
 
     def __init__(self, name: str, bulk: bool = False) -> None:

@@ -6,29 +6,36 @@ import json
 import math
 from collections.abc import Iterable
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from legwright.base.flags import MEANINGS
 from legwright.base.units import CM2, MICRO, NM, PER_CM3
 from legwright.base.version import VERSION
-from legwright.candidate.family import Family
 from legwright.candidate.hazards import cautions
-from legwright.candidate.library import Candidate
 from legwright.candidate.model import numbers
 from legwright.candidate.sources import bibliography
 from legwright.candidate.supply import cost_per_kg, hazardous_elements, mass_density, supply_concentration
-from legwright.decide.advise import Advice
-from legwright.decide.audit import Total, Verdict
-from legwright.decide.brief import Brief
-from legwright.decide.confidence import Confidence
-from legwright.decide.fit import Fit, Parameter
-from legwright.decide.installed import Delivered
-from legwright.decide.peak import Peak
-from legwright.decide.rank import Row
-from legwright.decide.search import Found
-from legwright.decide.why import Why
-from legwright.physics.properties import Properties
 from legwright.physics.solubility import atomic_percent
+
+if TYPE_CHECKING:
+    from legwright.candidate.family import Family
+    from legwright.candidate.library import Candidate
+    from legwright.decide.advise import Advice
+    from legwright.decide.audit import Total, Verdict
+    from legwright.decide.brief import Brief
+    from legwright.decide.confidence import Confidence
+    from legwright.decide.couple import Joined, Part
+    from legwright.decide.devices import DeviceVerdict
+    from legwright.decide.fit import Fit, Parameter
+    from legwright.decide.installed import Delivered
+    from legwright.decide.peak import Peak
+    from legwright.decide.rank import Row
+    from legwright.decide.search import Found
+    from legwright.decide.service import Service
+    from legwright.decide.why import Why
+    from legwright.leg.couple import Operation
+    from legwright.leg.installed import Running
+    from legwright.physics.properties import Properties
 
 SCHEMA = 1
 Record = dict[str, Any]
@@ -272,37 +279,149 @@ def search_record(found: Found) -> Record:
 
 def leg_record(found: Delivered, brief: Brief) -> Record:
     """The whole of `leg`; areal figures per cm² of leg."""
-    running, ideal, generates = found.running, found.ideal, brief.duty.kind == "generator"
+    generates, leg = brief.duty.kind == "generator", brief.leg
 
-    def per_cm2(value: float) -> float:
-        return value * CM2
+    def figure(name: str, scale: float = 1.0, running: Running | None = found.running) -> float | None:
+        return None if running is None else scale * float(getattr(running, name))
 
     content: Record = {
         "candidate": found.candidate.name,
         "formula": found.candidate.data.formula,
         "shape": found.shape,
         "size_nm": nanometres(found.size),
-        "doping_per_cm3": found.doping / PER_CM3,
-        "length_mm": brief.leg.length_mm,
-        "contact_uohm_cm2": brief.leg.contact_uohm_cm2,
-        "hot_exchanger_K_cm2_per_W": brief.leg.hot_exchanger_K_cm2_per_W,
-        "cold_exchanger_K_cm2_per_W": brief.leg.cold_exchanger_K_cm2_per_W,
+        "doping_per_cm3": None if found.doping is None else found.doping / PER_CM3,
+        "length_mm": leg.length_mm if leg.length_free_mm is None else figure("length", 1e3),
+        **_surroundings(brief),
     }
     if generates:
-        content["efficiency"] = running and running.efficiency
-        content["efficiency_ideal_contacts"] = ideal and ideal.efficiency
-        content["power_W_per_cm2"] = running and per_cm2(running.power)
+        content["efficiency"] = figure("efficiency")
+        content["efficiency_ideal_contacts"] = figure("efficiency", running=found.ideal)
+        content["power_W_per_cm2"] = figure("power", CM2)
+        content["power_matched_load_W_per_cm2"] = figure("power", CM2, found.matched)
+        content["efficiency_matched_load"] = figure("efficiency", running=found.matched)
     else:
-        content["cop"] = running and running.cop
-        content["cop_ideal_contacts"] = ideal and ideal.cop
-        content["heat_lifted_W_per_cm2"] = running and per_cm2(running.heat_cold)
+        content["cop"] = figure("cop")
+        content["cop_ideal_contacts"] = figure("cop", running=found.ideal)
+        content["heat_lifted_W_per_cm2"] = figure("heat_cold", CM2)
         content["delta_t_max_K"] = found.largest_difference
     return content | {
-        "current_A_per_cm2": running and per_cm2(running.current),
-        "heat_from_hot_W_per_cm2" if generates else "heat_to_hot_W_per_cm2": running and per_cm2(running.heat_hot),
-        "hot_end_K": running and running.hot_end,
-        "cold_end_K": running and running.cold_end,
+        "current_A_per_cm2": figure("current", CM2),
+        "heat_from_hot_W_per_cm2" if generates else "heat_to_hot_W_per_cm2": figure("heat_hot", CM2),
+        "heat_through_sides_W_per_cm2": figure("side_heat", CM2),
+        "hot_end_K": figure("hot_end"),
+        "cold_end_K": figure("cold_end"),
         "flags": list(found.flags),
+    }
+
+
+def _surroundings(brief: Brief) -> Record:
+    leg = brief.leg
+    return {
+        "contact_uohm_cm2": leg.contact_uohm_cm2,
+        "contact_K_cm2_per_W": leg.contact_K_cm2_per_W,
+        "hot_exchanger_K_cm2_per_W": leg.hot_exchanger_K_cm2_per_W,
+        "cold_exchanger_K_cm2_per_W": leg.cold_exchanger_K_cm2_per_W,
+        "side_loss_W_per_m3_K": leg.side_loss_W_per_m3_K,
+    }
+
+
+def segments_record(found: Joined, first: Candidate, brief: Brief) -> Record:
+    """The whole of `leg` for a leg of several materials; the same fields, and its segments hot to cold."""
+    leg = next(parts for parts in found.legs if parts[0].candidate.name == first.name)
+    content: Record = {
+        "candidate": " > ".join(part.candidate.name for part in leg),
+        "shape": brief.size.shape,
+        "length_mm": brief.leg.length_mm,
+        **_surroundings(brief),
+    }
+    if len(found.legs) == 1:
+        content |= {**_joined_figures(found, brief), "strain": found.strains["parts"]}
+    return content | {"segments": [_part_record(part) for part in leg], "flags": list(found.flags)}
+
+
+def couple_record(found: Joined, partner: Candidate, brief: Brief) -> Record:
+    """What a couple adds to its leg's record; areal figures per cm² of both legs together, strains as fractions."""
+    leg = next(parts for parts in found.legs if parts[0].candidate.name == partner.name)
+    running = found.running
+    return {
+        "partner": partner.name,
+        "partner_size_nm": nanometres(leg[0].size),
+        "partner_doping_per_cm3": leg[0].doping / PER_CM3,
+        "area_ratio": None if running is None else float(running.area_ratio),
+        **{f"couple_{name}": value for name, value in _joined_figures(found, brief).items()},
+        "compatibility_per_V": {
+            " > ".join(part.candidate.name for part in parts): [
+                float(s) for part in parts for s in part.compatibility
+            ]
+            for parts in found.legs
+        },
+        "strain": found.strains["parts"],
+        "strain_to_strap": {name: strain for name, strain in found.strains.items() if name != "parts"},
+        "flags": list(found.flags),
+    }
+
+
+def _joined_figures(found: Joined, brief: Brief) -> Record:
+    """Figures of legs that share a current, as `leg_record` names them."""
+    generates = brief.duty.kind == "generator"
+
+    def figure(name: str, scale: float = 1.0, running: Operation | None = found.running) -> float | None:
+        return None if running is None else scale * float(getattr(running, name))
+
+    ratio = "efficiency" if generates else "cop"
+    return {
+        ratio: figure(ratio),
+        f"{ratio}_ideal_contacts": figure(ratio, running=found.ideal),
+        "power_W_per_cm2" if generates else "heat_lifted_W_per_cm2": figure(
+            "power" if generates else "heat_cold", CM2
+        ),
+        **({} if generates else {"delta_t_max_K": found.largest_difference}),
+        "current_A_per_cm2": figure("current", CM2),
+        "hot_end_K": figure("hot_end"),
+        "cold_end_K": figure("cold_end"),
+    }
+
+
+def _part_record(part: Part) -> Record:
+    return {
+        "candidate": part.candidate.name,
+        "size_nm": nanometres(part.size),
+        "doping_per_cm3": part.doping / PER_CM3,
+        "hot_K": part.hot,
+        "cold_K": part.cold,
+        "length_share": None if math.isnan(part.share) else part.share,
+        "compatibility_per_V": [float(s) for s in part.compatibility],
+    }
+
+
+def service_record(found: Service) -> Record:
+    """What hours of service leave of a leg; null: not known."""
+    sizes = None if found.size is None else [nanometres(float(size)) for size in found.size]
+    return {
+        "hours": found.hours,
+        "width_mm": found.width * 1e3,
+        "score_name": found.score_name,
+        "score_start": found.score_start,
+        "score_end": found.score_end,
+        "score_end_counts": list(found.counted),
+        "size_hot_end_nm": sizes and sizes[0],
+        "size_cold_end_nm": sizes and sizes[-1],
+        "best_starting_size_nm": nanometres(found.best_start),
+        "starting_window_nm": None if found.start_window is None else [end / NM for end in found.start_window],
+        "along": {
+            "position_mm": (found.position * 1e3).tolist(),
+            "temperature_K": found.temperature.tolist(),
+            "size_nm": sizes,
+        },
+        "hours_to_lose_a_tenth": {
+            wear.process: {
+                "status": wear.status,
+                "hours": wear.hours,
+                "factor_1_sigma": wear.factor,
+                "reason": wear.reason,
+            }
+            for wear in found.wear
+        },
     }
 
 
@@ -355,6 +474,30 @@ def total_record(one: Total) -> Record:
     }
 
 
+def device_record(one: DeviceVerdict) -> Record:
+    """One published leg, couple or module of `audit`; powers in W/cm²."""
+    device = one.device
+    unit, factor = {"efficiency": ("1", 1.0), "power": ("W/cm^2", 1 / CM2), "delta_t": ("K", 1.0)}[device.quantity]
+    return {
+        "device": device.device,
+        "n": " > ".join(device.n) or None,
+        "p": " > ".join(device.p) or None,
+        "n_size_nm": nanometres(device.n_size),
+        "p_size_nm": nanometres(device.p_size),
+        "hot_K": device.hot,
+        "cold_K": device.cold,
+        "quantity": device.quantity,
+        "unit": unit,
+        "measured": device.measured / factor,
+        "computed": one.computed / factor,
+        "ratio": one.ratio,
+        "fixed": one.fixed,
+        "source": device.source,
+        "basis": device.basis,
+        "note": device.note,
+    }
+
+
 def number_records(candidate: Candidate) -> list[Record]:
     """Every number of a candidate with its origin."""
     return [{"key": key, **number.model_dump()} for key, number in numbers(candidate.data)]
@@ -386,8 +529,7 @@ def as_csv(records: list[Record]) -> str:
     """Records as CSV; lists are joined by spaces, inner tables are spread over columns."""
     import pandas as pd
 
-    flat = [
-        {key: " ".join(map(str, value)) if isinstance(value, list) else value for key, value in record.items()}
-        for record in records
-    ]
-    return str(pd.json_normalize(flat).to_csv(index=False, lineterminator="\n"))
+    flat = pd.json_normalize(records).map(
+        lambda value: " ".join(map(str, value)) if isinstance(value, list) else value
+    )
+    return str(flat.to_csv(index=False, lineterminator="\n"))

@@ -5,57 +5,11 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping, Sequence
 from typing import Any
 
-from rich import box
 from rich.console import Console
-from rich.table import Table
-from rich.text import Text
+
+from legwright.show.layout import Layout, draw, figure, figure_within, percent, span
 
 Record = Mapping[str, Any]
-#: columns that a table gets off a terminal; Markdown rows must not fold at all
-_OFF_TERMINAL, _UNFOLDED = 150, 100_000
-
-
-def console(markdown: bool) -> Console:
-    """A console on stdout; wide enough for the tables when nothing says how wide the screen is."""
-    if markdown:
-        return Console(highlight=False, width=_UNFOLDED, no_color=True, soft_wrap=True)
-    out = Console(highlight=False)
-    if not out.is_terminal:
-        out = Console(highlight=False, width=max(out.width, _OFF_TERMINAL), no_color=True)
-    return out
-
-
-def draw(title: str, columns: Sequence[str], rows: Iterable[Sequence[str]], markdown: bool) -> Table:
-    """A table whose first column is text on the left and whose others stand to the right."""
-    table = Table(
-        title=None if markdown else title,
-        title_justify="left",
-        box=box.MARKDOWN if markdown else box.SIMPLE_HEAD,
-        title_style="bold",
-    )
-    for index, name in enumerate(columns):
-        table.add_column(name, justify="left" if index == 0 else "right", overflow="fold")
-    for row in rows:
-        table.add_row(*(Text(cell) for cell in row))
-    return table
-
-
-def figure(value: float | None, digits: int = 3) -> str:
-    """A rounded figure without trailing noise; a dash for none.
-
-    >>> figure(0.123456), figure(148.3), figure(None), figure(2.2e20)
-    ('0.123', '148', '–', '2.20e+20')
-    """
-    if value is None:
-        return "–"
-    if value and not 1e-3 <= abs(value) < 1e5:
-        return f"{value:.{digits - 1}e}"
-    return f"{value:.{digits}g}" if abs(value) < 10**digits else f"{value:.0f}"
-
-
-def _span(ends: Sequence[float] | None) -> str:
-    return "–" if ends is None else f"{figure(ends[0])} … {figure(ends[1])}"
-
 
 SCORE_TITLES = {
     "efficiency": "efficiency",
@@ -66,58 +20,58 @@ SCORE_TITLES = {
 }
 
 
-def rank_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
-    """The ranking; flags are numbered and explained under the table. With draws, the score's interval."""
-    numbers = flag_numbers(rows)
+def rank_table(title: str, rows: Sequence[Record], markdown: bool) -> Layout:
+    """The ranking, its flags as words that are explained under it. With draws, how sure each score is."""
     drawn = "win_share" in rows[0]
     columns = (
         "candidate",
-        "formula",
-        "carrier",
+        SCORE_TITLES[rows[0]["score_name"]],
+        *(("5 to 95 %", "wins") if drawn else ()),
         "size [nm]",
         "window [nm]",
         "doping [cm⁻³]",
-        SCORE_TITLES[rows[0]["score_name"]],
-        *(("5 to 95 %",) if drawn else ()),
+        "gain over coarse",
         "zT mean",
         "zT peak",
-        "gain over coarse",
-        "notes",
+        "formula",
+        "flags",
     )
     cells = (
         (
-            f"{row['rank']}. {row['candidate']}",
-            row["formula"],
-            row["carrier"],
+            f"{row['rank']:>2}. {row['candidate']}",
+            *(_sureness(row) if drawn else (figure(row["score"]),)),
             figure(row["size_nm"]),
-            _span(row["window_nm"]),
+            span(row["window_nm"]),
             figure(row["doping_per_cm3"]),
-            figure(row["score"]),
-            *((_interval(row),) if drawn else ()),
+            "–" if row["gain_over_bulk"] is None else f"×{row['gain_over_bulk']:.2f}",
             figure(row["zt_mean"]),
             figure(row["zt_peak"]),
-            "–" if row["gain_over_bulk"] is None else f"×{row['gain_over_bulk']:.2f}",
-            " ".join(str(numbers[flag]) for flag in row["flags"]),
+            row["formula"],
+            " ".join(row["flags"]),
         )
         for row in rows
     )
     return draw(title, columns, cells, markdown)
 
 
-def _interval(row: Record) -> str:
-    return f"{figure(row['score_low'], 2)} … {figure(row['score_high'], 2)}" if row["score"] else "–"
+def _sureness(row: Record) -> tuple[str, str, str]:
+    if not row["score"]:
+        return figure(row["score"]), "–", "–"
+    low, high = row["score_low"], row["score_high"]
+    within = (figure_within(value, low, high) for value in (row["score"], low, high))
+    score, *ends = within
+    return score, " … ".join(ends), percent(row["win_share"])
 
 
-def sureness_table(rows: Sequence[Record], markdown: bool) -> Table:
+def sureness_table(rows: Sequence[Record], markdown: bool) -> Layout:
     """Of each candidate that can serve: places over the draws, best size, and whether a small one pays."""
-    columns = ("candidate", "wins", "in first three", "best size, 5 to 95 % [nm]", "small size pays", "tied with")
+    columns = ("candidate", "in first three", "best size, 5 to 95 % [nm]", "small size pays", "tied with")
     cells = (
         (
             f"{row['rank']}. {row['candidate']}",
-            _percent(row["win_share"]),
-            _percent(row["first_three_share"]),
-            _span((row["size_low_nm"], row["size_high_nm"])),
-            _percent(row["nanostructuring_pays"]),
+            percent(row["first_three_share"]),
+            span((row["size_low_nm"], row["size_high_nm"])),
+            percent(row["nanostructuring_pays"]),
             ", ".join(row["tied_with"]) or "–",
         )
         for row in rows
@@ -129,7 +83,7 @@ def sureness_table(rows: Sequence[Record], markdown: bool) -> Table:
 _MOST_ADVICE = 10
 
 
-def advice_tables(found: Record, markdown: bool) -> list[Table]:
+def advice_tables(found: Record, markdown: bool) -> list[Layout]:
     """The measurements worth most, and where the doubt about the scores comes from."""
     title = SCORE_TITLES[found["score_name"]]
     advice = draw(
@@ -155,8 +109,8 @@ def advice_tables(found: Record, markdown: bool) -> list[Table]:
             (
                 row["candidate"],
                 row["source"].replace("_", " "),
-                _percent(row["first_order"]),
-                _percent(row["total"]),
+                percent(row["first_order"]),
+                percent(row["total"]),
             )
             for row in found["sensitivities"]
         ),
@@ -173,7 +127,7 @@ TRADE_OFFS = {
 }
 
 
-def trade_offs_table(rows: Sequence[Record], fronts: Mapping[str, Sequence[str]], markdown: bool) -> Table:
+def trade_offs_table(rows: Sequence[Record], fronts: Mapping[str, Sequence[str]], markdown: bool) -> Layout:
     """Candidates on a front of score against another count; a star where nobody beats them on both."""
     columns = ("candidate", SCORE_TITLES[rows[0]["score_name"]], *TRADE_OFFS.values())
     on_a_front = {name for names in fronts.values() for name in names}
@@ -196,18 +150,12 @@ def trade_offs_table(rows: Sequence[Record], fronts: Mapping[str, Sequence[str]]
     return draw("Trade-offs (*: nobody has both a better score and a better figure here)", columns, cells, markdown)
 
 
-def flag_numbers(rows: Iterable[Record]) -> dict[str, int]:
-    """Footnote numbers of the flags, in order of first use."""
-    used = dict.fromkeys(flag for row in rows for flag in row["flags"])
-    return {flag: number for number, flag in enumerate(used, start=1)}
-
-
-def pairs_table(title: str, pairs: Iterable[tuple[str, str]], markdown: bool) -> Table:
+def pairs_table(title: str, pairs: Iterable[tuple[str, str]], markdown: bool) -> Layout:
     """Two columns: what, and how much."""
     return draw(title, ("property", "value"), pairs, markdown)
 
 
-def why_tables(found: Record, markdown: bool) -> list[Table]:
+def why_tables(found: Record, markdown: bool) -> list[Layout]:
     """Shares of the two resistances, and the flow by free path, coarse."""
     shares = [
         draw(
@@ -240,7 +188,7 @@ def why_tables(found: Record, markdown: bool) -> list[Table]:
 _BASES = ("measured", "published model", "calibrated on bulk", "common practice", "from memory")
 
 
-def library_table(rows: Sequence[Record], markdown: bool) -> Table:
+def library_table(rows: Sequence[Record], markdown: bool) -> Layout:
     """One line a candidate, with the share of its numbers by basis."""
     columns = ("candidate", "formula", "up to [K]", "doping [cm⁻³]", "numbers", *_BASES, "direction")
     cells = (
@@ -248,7 +196,7 @@ def library_table(rows: Sequence[Record], markdown: bool) -> Table:
             row["candidate"],
             row["formula"],
             figure(row["highest_temperature_K"], 4),
-            _span((row["doping_min_per_cm3"], row["doping_max_per_cm3"])),
+            span((row["doping_min_per_cm3"], row["doping_max_per_cm3"])),
             str(row["numbers"]),
             *(f"{100 * row['numbers_by_basis'].get(basis, 0) / row['numbers']:.0f} %" for basis in _BASES),
             row["direction"],
@@ -258,7 +206,7 @@ def library_table(rows: Sequence[Record], markdown: bool) -> Table:
     return draw("Library (shares of the numbers by where they came from)", columns, cells, markdown)
 
 
-def make_up_table(rows: Sequence[Record], markdown: bool) -> Table:
+def make_up_table(rows: Sequence[Record], markdown: bool) -> Layout:
     """One line a candidate: what it weighs, costs and holds."""
     columns = (
         "candidate",
@@ -274,7 +222,7 @@ def make_up_table(rows: Sequence[Record], markdown: bool) -> Table:
             figure(row["density_g_per_cm3"]),
             figure(row["cost_USD_per_kg"], 2),
             figure(row["supply_concentration"], 2),
-            f"{row['dopant']} {_span(row['dopant_atomic_percent'])}",
+            f"{row['dopant']} {span(row['dopant_atomic_percent'])}",
             " ".join(row["hazardous_elements"]) or "none listed",
         )
         for row in rows
@@ -282,7 +230,7 @@ def make_up_table(rows: Sequence[Record], markdown: bool) -> Table:
     return draw("Make-up (element prices of 2013; supply: Herfindahl–Hirschman index)", columns, cells, markdown)
 
 
-def families_table(rows: Sequence[Record], markdown: bool) -> Table:
+def families_table(rows: Sequence[Record], markdown: bool) -> Layout:
     """One line an alloy line, and how its members are named."""
     columns = ("family", "a member", "share of", "up to", "through")
     cells = (
@@ -298,7 +246,7 @@ def families_table(rows: Sequence[Record], markdown: bool) -> Table:
     return draw("Alloy lines", columns, cells, markdown)
 
 
-def search_table(found: Record, markdown: bool) -> Table:
+def search_table(found: Record, markdown: bool) -> Layout:
     """The best design, and what certifies it."""
     pairs = [
         ("best", f"{found['candidate']} ({found['formula']})"),
@@ -318,6 +266,8 @@ _LEG_LABELS = {
     "efficiency": "efficiency",
     "efficiency_ideal_contacts": "efficiency, ideal contacts and exchangers",
     "power_W_per_cm2": "power [W/cm²]",
+    "power_matched_load_W_per_cm2": "power at the matched load [W/cm²]",
+    "efficiency_matched_load": "efficiency there",
     "cop": "COP",
     "cop_ideal_contacts": "COP, ideal contacts and exchangers",
     "heat_lifted_W_per_cm2": "heat lifted [W/cm²]",
@@ -325,26 +275,116 @@ _LEG_LABELS = {
     "current_A_per_cm2": "current [A/cm²]",
     "heat_from_hot_W_per_cm2": "heat taken in [W/cm²]",
     "heat_to_hot_W_per_cm2": "heat given off [W/cm²]",
+    "heat_through_sides_W_per_cm2": "lost through the sides [W/cm²]",
     "hot_end_K": "hot end of the leg [K]",
     "cold_end_K": "cold end of the leg [K]",
     "length_mm": "length [mm]",
     "contact_uohm_cm2": "each contact [µΩ cm²]",
+    "contact_K_cm2_per_W": "each contact, to heat [K cm²/W]",
     "hot_exchanger_K_cm2_per_W": "hot exchanger [K cm²/W]",
     "cold_exchanger_K_cm2_per_W": "cold exchanger [K cm²/W]",
+    "side_loss_W_per_m3_K": "side loss [W/(m³ K)]",
 }
 
 
-def leg_table(found: Record, markdown: bool) -> Table:
-    """What a leg delivers."""
-    size = "coarse" if found["size_nm"] is None else f"{figure(found['size_nm'])} nm"
-    title = (
-        f"{found['candidate']} ({found['formula']}), {found['shape']} {size}, {found['doping_per_cm3']:.3g} cm⁻³"
+_COUPLE_LABELS = {"area_ratio": "cross-section of n over p"} | {
+    f"couple_{key}": f"couple's {label.replace(' of the leg', '')}"
+    for key, label in _LEG_LABELS.items()
+    if not key.startswith(("heat_from", "heat_to", "heat_through"))
+}
+
+
+def leg_tables(found: Record, markdown: bool) -> list[Layout]:
+    """What a leg delivers; then, where it has them, its segments and what it delivers in a couple."""
+    tables = [_leg_table(found, markdown)]
+    if "segments" in found:
+        tables.append(_segments_table(found["segments"], markdown))
+    if "partner" in found:
+        size = "coarse" if found["partner_size_nm"] is None else f"{figure(found['partner_size_nm'])} nm"
+        title = f"Couple with {found['partner']}, {size}, {found['partner_doping_per_cm3']:.3g} cm⁻³"
+        pairs = [(label, figure(found[key])) for key, label in _COUPLE_LABELS.items() if key in found]
+        pairs += [
+            (f"compatibility of {name}, hot to cold [1/V]", " … ".join(figure(s, 2) for s in (all_s[0], all_s[-1])))
+            for name, all_s in found["compatibility_per_V"].items()
+        ]
+        pairs.append(("strain between the legs", _percents(found["strain"])))
+        pairs += [(f"strain to {strap}", _percents(value)) for strap, value in found["strain_to_strap"].items()]
+        tables.append(pairs_table(title, pairs, markdown))
+    return tables
+
+
+def _percents(share: float | None) -> str:
+    return "–" if share is None else f"{100 * share:.2f} %"
+
+
+def _segments_table(rows: Sequence[Record], markdown: bool) -> Layout:
+    columns = ("segment", "hot [K]", "cold [K]", "length", "size [nm]", "doping [cm⁻³]", "compatibility [1/V]")
+    cells = (
+        (
+            row["candidate"],
+            figure(row["hot_K"]),
+            figure(row["cold_K"]),
+            "–" if row["length_share"] is None else percent(row["length_share"]),
+            "coarse" if row["size_nm"] is None else figure(row["size_nm"]),
+            f"{row['doping_per_cm3']:.3g}",
+            " … ".join(figure(s, 2) for s in (row["compatibility_per_V"][0], row["compatibility_per_V"][-1])),
+        )
+        for row in rows
     )
+    return draw("Segments, hot to cold", columns, cells, markdown)
+
+
+def _leg_table(found: Record, markdown: bool) -> Layout:
+    """What a leg delivers."""
+    title = found["candidate"] + (f" ({found['formula']})" if "formula" in found else "")
+    if found.get("doping_per_cm3") is not None:
+        size = "coarse" if found["size_nm"] is None else f"{figure(found['size_nm'])} nm"
+        title += f", {found['shape']} {size}, {found['doping_per_cm3']:.3g} cm⁻³"
     pairs = [(label, figure(found[key])) for key, label in _LEG_LABELS.items() if key in found]
     return pairs_table(title, pairs, markdown)
 
 
-def fit_tables(found: Record, markdown: bool) -> list[Table]:
+def service_tables(found: Record, start_nm: float | None, markdown: bool) -> list[Layout]:
+    """What hours of service leave, and how long each process takes."""
+    sizes = found["along"]["size_nm"]
+    ends = "unknown" if sizes is None else " … ".join(_size(sizes[end]) for end in (0, -1))
+    counted = " and ".join(found["score_end_counts"])
+    left = "unknown" if found["score_end"] is None else f"{figure(found['score_end'], 4)} (counts {counted} alone)"
+    best = found["best_starting_size_nm"]
+    pairs = [
+        (f"{found['score_name']} at the start", figure(found["score_start"], 4)),
+        ("at the end", left),
+        ("size at the start [nm]", _size(start_nm)),
+        ("at the end, hot … cold [nm]", ends),
+        ("best size to start with [nm]", "unknown" if best is None else figure(best)),
+        ("starts that end inside the window [nm]", span(found["starting_window_nm"])),
+    ]
+    wears = draw(
+        "Hours until a tenth is lost",
+        ("process", "hours", "within a factor", "why"),
+        (
+            (
+                process,
+                figure(wear["hours"]) if wear["status"] == "known" else _unsure(wear),
+                figure(wear["factor_1_sigma"], 2),
+                wear["reason"],
+            )
+            for process, wear in found["hours_to_lose_a_tenth"].items()
+        ),
+        markdown,
+    )
+    return [pairs_table(f"After {found['hours']:g} hours", pairs, markdown), wears]
+
+
+def _size(nm: float | None) -> str:
+    return "coarse" if nm is None else figure(nm)
+
+
+def _unsure(wear: Record) -> str:
+    return str(wear["status"]) if wear["hours"] is None else f"{wear['status']} {figure(wear['hours'])}"
+
+
+def fit_tables(found: Record, markdown: bool) -> list[Layout]:
     """Parameters with their intervals, and how well each quantity is met."""
     parameters = draw(
         f"Fitted to {found['measurements']}, starting from {found['start']} (factors on the start's; 90 %)",
@@ -353,7 +393,7 @@ def fit_tables(found: Record, markdown: bool) -> list[Table]:
             (
                 row["parameter"],
                 figure(row["value"]),
-                _span((row["low"], row["high"])),
+                span((row["low"], row["high"])),
                 row["unit"],
                 "yes" if row["determined"] else "no",
             )
@@ -384,7 +424,7 @@ AUDIT_WORDS = (
 )
 
 
-def totals_table(rows: Sequence[Record], markdown: bool) -> Table:
+def totals_table(rows: Sequence[Record], markdown: bool) -> Layout:
     """How far off, and how often inside."""
     columns = (
         "material",
@@ -407,22 +447,46 @@ def totals_table(rows: Sequence[Record], markdown: bool) -> Table:
             row["quantity"].replace("_", " "),
             str(row["values"]),
             str(row["papers"]),
-            _percent(row["median_error"]),
-            _percent(row["median_half_width"]),
-            _percent(row["coverage"]),
-            " … ".join(map(_percent, row["coverage_95"])),
-            _percent(row["coverage_by_paper"]),
+            percent(row["median_error"]),
+            percent(row["median_half_width"]),
+            percent(row["coverage"]),
+            " … ".join(map(percent, row["coverage_95"])),
+            percent(row["coverage_by_paper"]),
         )
         for row in rows
     )
     return draw("Predictions against published samples (90 % intervals)", columns, cells, markdown)
 
 
-def _percent(share: float) -> str:
-    return f"{100 * share:.0f} %"
+DEVICE_WORDS = (
+    "computed: the best that legs of these materials could do between those temperatures, at their best doping, "
+    "areas, interfaces and current, with nothing lost outside them; contacts, straps, radiation and the rest of a "
+    "generator take from it. own paper: the device's paper also stands behind a number of one of its candidates."
+)
 
 
-def misses_table(rows: Sequence[Record], markdown: bool) -> Table:
+def devices_table(rows: Sequence[Record], markdown: bool) -> Layout:
+    """Published legs, couples and modules, measured over computed."""
+    columns = ("device", "n", "p", "between [K]", "quantity", "measured", "computed", "ratio", "own paper", "note")
+    cells = (
+        (
+            row["device"],
+            row["n"] or "",
+            row["p"] or "",
+            figure(row["hot_K"]) + ("" if row["cold_K"] is None else f", {figure(row['cold_K'])}"),
+            row["quantity"].replace("_", " "),
+            f"{figure(row['measured'])} {row['unit']}".removesuffix(" 1"),
+            figure(row["computed"]),
+            f"{row['ratio']:.2f}",
+            "yes" if row["fixed"] else "no",
+            row["note"],
+        )
+        for row in rows
+    )
+    return draw("Published legs, couples and modules: measured over computed", columns, cells, markdown)
+
+
+def misses_table(rows: Sequence[Record], markdown: bool) -> Layout:
     """Every value outside its interval, by name, but for those that fixed a candidate."""
     columns = (
         "material",
@@ -444,7 +508,7 @@ def misses_table(rows: Sequence[Record], markdown: bool) -> Table:
             figure(row["temperature_K"], 4),
             "bulk" if row["size_nm"] is None else figure(row["size_nm"]),
             f"{figure(row['measured'])} {row['unit']}",
-            _span((row["low"], row["high"])),
+            span((row["low"], row["high"])),
             row["likely_cause"],
         )
         for row in rows
@@ -453,7 +517,7 @@ def misses_table(rows: Sequence[Record], markdown: bool) -> Table:
     return draw("Outside their interval", columns, cells, markdown)
 
 
-def numbers_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
+def numbers_table(title: str, rows: Sequence[Record], markdown: bool) -> Layout:
     """Every number of a candidate."""
     columns = ("key", "value", "unit", "spread (1 σ)", "basis", "source", "note")
     cells = (
@@ -471,12 +535,10 @@ def numbers_table(title: str, rows: Sequence[Record], markdown: bool) -> Table:
     return draw(title, columns, cells, markdown)
 
 
-def footnotes(
-    out: Console, numbers: Mapping[str, int], meanings: Mapping[str, str], cautions: Iterable[str]
-) -> None:
-    """Meaning of each numbered flag, then the cautions, once."""
-    for flag, number in numbers.items():
-        out.print(f"{number}  {flag}: {meanings[flag]}", markup=False)
+def footnotes(out: Console, meanings: Mapping[str, str], cautions: Iterable[str]) -> None:
+    """Meaning of each flag used, then the cautions, once."""
+    for flag, meaning in meanings.items():
+        out.print(f"{flag}: {meaning}", markup=False)
     reminders = list(cautions)
     if reminders:
         out.print()

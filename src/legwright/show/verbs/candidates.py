@@ -20,7 +20,7 @@ def candidates_verb(name: str | None, as_json: bool, csv_file: Path | None, mark
     """What is in the library; with NAME, every number of that candidate and its source."""
     from legwright.candidate.family import family_names, load_family
     from legwright.candidate.library import library_names, load_candidate
-    from legwright.show import records, tables
+    from legwright.show import layout, records, tables
 
     if name is None:
         rows = [records.candidate_record(load_candidate(each)) for each in library_names()]
@@ -28,7 +28,7 @@ def candidates_verb(name: str | None, as_json: bool, csv_file: Path | None, mark
         content: Record = {"candidates": rows, "families": lines}
 
         def table() -> None:
-            out = tables.console(markdown)
+            out = layout.console(markdown)
             out.print(tables.library_table(rows, markdown))
             out.print(tables.make_up_table(rows, markdown))
             out.print(tables.families_table(lines, markdown))
@@ -38,7 +38,7 @@ def candidates_verb(name: str | None, as_json: bool, csv_file: Path | None, mark
         content = {**records.candidate_record(one), "values": rows, "sources": records.citations(one)}
 
         def table() -> None:
-            out = tables.console(markdown)
+            out = layout.console(markdown)
             out.print(tables.numbers_table(f"{one.name}: {one.data.title}, {one.data.direction}", rows, markdown))
             for key, text in content["sources"].items():
                 out.print(f"{key}: {text}", markup=False)

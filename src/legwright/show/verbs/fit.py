@@ -23,7 +23,7 @@ def fit_verb(
     from legwright.candidate.library import load_candidate
     from legwright.candidate.measurements import read_measurements
     from legwright.decide.fit import candidate_text, fit
-    from legwright.show import records, tables
+    from legwright.show import layout, records, tables
 
     if into is not None and into.suffix != ".toml":
         raise InputError(f"value '{into}' is not allowed; a name that ends in .toml", key="--into")
@@ -34,7 +34,7 @@ def fit_verb(
         write_whole(into, candidate_text(found))
 
     def table() -> None:
-        out = tables.console(markdown)
+        out = layout.console(markdown)
         for each in tables.fit_tables(content, markdown):
             out.print(each)
         out.print(f"Fit: {found.reason}. Heat capacity: {found.heat_capacity}.", markup=False)

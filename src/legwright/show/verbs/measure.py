@@ -24,7 +24,7 @@ def measure_verb(
     from legwright.decide.brief import load_brief
     from legwright.decide.confidence import confidences, draw_all
     from legwright.decide.rank import rank
-    from legwright.show import records, tables
+    from legwright.show import layout, records, tables
 
     job = load_brief(brief)
     rows = rank(job, brief, workers)
@@ -39,12 +39,12 @@ def measure_verb(
     content = {"title": job.title, **records.advice_record(advice, able[0].score_name)}
 
     def table() -> None:
-        out = tables.console(markdown)
+        out = layout.console(markdown)
         for each in tables.advice_tables(content, markdown):
             out.print(each)
         out.print(
-            f"Chosen now: {advice.chosen}, expected {tables.figure(advice.expected)}; if all were known the choice "
-            f"would gain {tables.figure(advice.all_known, 2)}.",
+            f"Chosen now: {advice.chosen}, expected {layout.figure(advice.expected)}; if all were known the choice "
+            f"would gain {layout.figure(advice.all_known, 2)}.",
             markup=False,
         )
 

@@ -28,7 +28,7 @@ def peak_verb(
     from legwright.base.units import PER_CM3
     from legwright.candidate.library import load_candidate
     from legwright.decide.peak import peak
-    from legwright.show import records, tables
+    from legwright.show import layout, records, tables
 
     one = load_candidate(candidate)
     found = peak(one, temperature, None if doping is None else doping * PER_CM3, shape)
@@ -36,16 +36,16 @@ def peak_verb(
     under = records.notes(found.flags, [one])
 
     def table() -> None:
-        out = tables.console(markdown)
+        out = layout.console(markdown)
         low, high = content["window_nm"]
         pairs = [
-            (f"{shape} size at the peak [nm]", tables.figure(content["size_nm"])),
-            ("zT at the peak", tables.figure(content["zt"])),
-            ("sizes that keep 95 % of it [nm]", f"{tables.figure(low)} … {tables.figure(high)}"),
-            ("zT of coarse material, same doping", tables.figure(content["zt_coarse"])),
-            ("doping [cm⁻³]" + ("" if doping else ", the best"), tables.figure(content["doping_per_cm3"])),
+            (f"{shape} size at the peak [nm]", layout.figure(content["size_nm"])),
+            ("zT at the peak", layout.figure(content["zt"])),
+            ("sizes that keep 95 % of it [nm]", f"{layout.figure(low)} … {layout.figure(high)}"),
+            ("zT of coarse material, same doping", layout.figure(content["zt_coarse"])),
+            ("doping [cm⁻³]" + ("" if doping else ", the best"), layout.figure(content["doping_per_cm3"])),
         ]
         out.print(tables.pairs_table(f"{one.name} at {temperature:g} K", pairs, markdown))
-        tables.footnotes(out, tables.flag_numbers([content]), under["flag_meanings"], under["cautions"])
+        tables.footnotes(out, under["flag_meanings"], under["cautions"])
 
     publish("peak", {**content, **under}, content["curve"], as_json, csv_file, table)

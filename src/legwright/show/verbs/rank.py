@@ -6,7 +6,7 @@ from pathlib import Path
 
 import click
 
-from legwright.base.errors import NothingFeasible
+from legwright.base.errors import InputError, NothingFeasible
 from legwright.show.options import output, publish
 
 
@@ -32,14 +32,18 @@ def rank_verb(
     markdown: bool,
 ) -> None:
     """Rank the candidates of BRIEF, each at its best size and doping."""
-    from legwright.decide.brief import load_brief
+    from legwright.decide.brief import load_brief, partner_of
     from legwright.decide.confidence import confidences, draw_all, with_cautions
+    from legwright.decide.couple import rank_with
     from legwright.decide.rank import rank
     from legwright.decide.tradeoffs import trade_offs as fronts_of
-    from legwright.show import records, tables
+    from legwright.show import layout, records, tables
 
     job = load_brief(brief)
-    found = rank(job, brief, workers)
+    partner = partner_of(job, brief)
+    if partner and draws:
+        raise InputError("gives intervals to legs alone: leave it out, or the partner", key="--draws")
+    found = rank_with(job, brief, partner, workers) if partner else rank(job, brief, workers)
     sure = confidences(draw_all(job, found, draws, seed, workers)) if draws else None
     found = with_cautions(found, sure or {})
     rows = [records.rank_record(row, sure) for row in found]
@@ -48,15 +52,16 @@ def rank_verb(
     content = {"title": job.title, "rows": rows, "trade_offs": fronts, **under}
 
     def table() -> None:
-        out = tables.console(markdown)
+        out = layout.console(markdown)
         duty = job.duty
-        heading = f"{job.title}: {duty.kind} leg, {duty.cold_K:g} to {duty.hot_K:g} K, {job.size.shape} size"
+        what = f"couple with {partner.name}" if partner else "leg"
+        heading = f"{job.title}: {duty.kind} {what}, {duty.cold_K:g} to {duty.hot_K:g} K, {job.size.shape} size"
         out.print(tables.rank_table(heading, rows, markdown))
         if draws:
             out.print(tables.sureness_table(rows, markdown))
         if trade_offs:
             out.print(tables.trade_offs_table(rows, fronts, markdown))
-        tables.footnotes(out, tables.flag_numbers(rows), under["flag_meanings"], under["cautions"])
+        tables.footnotes(out, under["flag_meanings"], under["cautions"])
 
     publish("rank", content, rows, as_json, csv_file, table)
     if not any(row["score"] for row in rows):

@@ -31,7 +31,7 @@ def search_verb(
     from legwright.candidate.library import load_candidate
     from legwright.decide.brief import load_brief
     from legwright.decide.search import search
-    from legwright.show import records, tables
+    from legwright.show import layout, records, tables
 
     one = load_family(subject) if subject in family_names() else load_candidate(subject)
     found = search(one, load_brief(brief), evaluations, seed, resume)
@@ -39,9 +39,9 @@ def search_verb(
     under = records.notes(found.flags, [found.candidate])
 
     def table() -> None:
-        out = tables.console(markdown)
+        out = layout.console(markdown)
         out.print(tables.search_table(content, markdown))
-        tables.footnotes(out, tables.flag_numbers([content]), under["flag_meanings"], under["cautions"])
+        tables.footnotes(out, under["flag_meanings"], under["cautions"])
 
     publish("search", {**content, **under}, [content], as_json, csv_file, table)
     return 0 if found.complete else 130

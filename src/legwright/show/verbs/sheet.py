@@ -33,7 +33,7 @@ def sheet_verb(
     from legwright.candidate.library import load_candidate
     from legwright.decide.warnings import point_flags
     from legwright.physics.properties import evaluate
-    from legwright.show import records, tables
+    from legwright.show import layout, records, tables
 
     one = load_candidate(candidate)
     made = evaluate(one, temperature, doping * PER_CM3, size * NM, shape)
@@ -41,12 +41,14 @@ def sheet_verb(
     under = records.notes(content["flags"], [one])
 
     def table() -> None:
-        out = tables.console(markdown)
-        parts = made.to_frame().iloc[0].drop(["temperature [K]", "doping [1/cm^3]", "size [nm]"])
-        pairs = [(str(name), tables.figure(value, 4)) for name, value in parts.items()]
+        out = layout.console(markdown)
+        asked = ("temperature [K]", "doping [1/cm^3]", "size [nm]")
+        pairs = [
+            (name, layout.figure(float(value[0]), 4)) for name, value in made.columns().items() if name not in asked
+        ]
         where = "coarse" if math.isinf(size) else f"{size:g} nm {shape}"
         heading = f"{one.name} ({content['formula']}) at {temperature:g} K, {doping:.3g} cm⁻³, {where}"
         out.print(tables.pairs_table(heading, pairs, markdown))
-        tables.footnotes(out, tables.flag_numbers([content]), under["flag_meanings"], under["cautions"])
+        tables.footnotes(out, under["flag_meanings"], under["cautions"])
 
     publish("sheet", {**content, **under}, [content], as_json, csv_file, table)
