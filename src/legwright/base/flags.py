@@ -87,6 +87,10 @@ MEANINGS: dict[str, str] = {
         "layer (common practice)."
     ),
     "from-memory": "More than half of the numbers in this candidate's file were taken from memory, not read.",
+    "sure-from-memory": (
+        "It wins nearly every draw, but more than half of the numbers behind it were taken from memory: the draws "
+        "do not know how wrong a memory can be. Check its anchors before you lean on it."
+    ),
     "direction": "The figures hold for the one crystal direction or texture named in the candidate's file.",
 }
 

@@ -9,7 +9,7 @@ from pydantic import Field
 
 from legwright.base.files import datasets_folder, read_toml
 from legwright.base.reading import Table, read_as
-from legwright.candidate.model import Fraction, Pure
+from legwright.candidate.model import Fraction, Pure, Ratio
 
 
 class GrainLaw(Table):
@@ -47,6 +47,15 @@ class Discrepancy(ByQuantity):
     thermal_conductivity_sized: Pure
 
 
+class Effort(Table):
+    """Of making one sample, and of measuring one quantity on it, in units of one Seebeck coefficient."""
+
+    sample: Ratio
+    seebeck: Ratio
+    electrical_conductivity: Ratio
+    thermal_conductivity: Ratio
+
+
 class Priors(Table):
     """The whole of priors.toml."""
 
@@ -55,6 +64,7 @@ class Priors(Table):
     reflection: Reflection
     laboratory: Laboratory
     discrepancy: Discrepancy
+    effort: Effort
 
 
 @cache

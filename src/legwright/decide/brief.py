@@ -13,6 +13,7 @@ from legwright.base.files import read_toml
 from legwright.base.reading import Table, read_as
 from legwright.base.units import CM2, MICRO, NM, PER_CM3
 from legwright.candidate.library import Candidate, library_names, load_candidate
+from legwright.decide.robust import Scatter, Take
 from legwright.leg.duty import GOALS, Duty, Goal, Kind, Setting
 from legwright.physics.properties import COLDEST, DENSEST, HOTTEST, LARGEST, SMALLEST, THINNEST, Shape
 
@@ -96,6 +97,22 @@ class AvoidTable(Table):
     supply_concentration_above: Annotated[float, Field(gt=0, le=10_000)] | None = None
 
 
+class MakingTable(Table):
+    """How far made legs scatter about what was asked for (standard deviation as a factor), and what counts then."""
+
+    size_scatter: Annotated[float, Field(ge=1, le=3)] = 1.0
+    doping_scatter: Annotated[float, Field(ge=1, le=3)] = 1.0
+    maximise: Take = "expected"
+
+    @model_validator(mode="after")
+    def _scattered(self) -> MakingTable:
+        if self.size_scatter == self.doping_scatter == 1:
+            raise ValueError(
+                "size_scatter or doping_scatter must be above 1; without [making] legs are as designed"
+            )
+        return self
+
+
 class LegTable(Table):
     """The leg itself and what surrounds it; ideal where nothing is said.
 
@@ -144,7 +161,16 @@ class Brief(Table):
     doping: DopingTable | None = None
     candidates: CandidatesTable = CandidatesTable()
     avoid: AvoidTable = AvoidTable()
+    making: MakingTable | None = None
     leg: LegTable = LegTable()
+
+    @property
+    def scatter(self) -> Scatter | None:
+        """Scatter of made legs, as spreads of the logarithm; None where legs count as designed."""
+        making = self.making
+        if making is None:
+            return None
+        return Scatter(math.log(making.size_scatter), math.log(making.doping_scatter), making.maximise)
 
     @property
     def task(self) -> Duty:

@@ -1,4 +1,7 @@
-"""What is not known, drawn: the grain law and reflection shared by all candidates, anchors of each its own."""
+"""What is not known, drawn: grain law and reflection shared by all candidates, anchors and misses of each its own.
+
+Every draw is joint: the same place in every candidate's list is one and the same world.
+"""
 
 from __future__ import annotations
 
@@ -7,54 +10,83 @@ from functools import cache
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.special import ndtri
+from scipy.special import ndtr, ndtri
 from scipy.stats import qmc
 
+from legwright.base.units import E_CHARGE
 from legwright.candidate.library import Candidate
 from legwright.candidate.model import Anchor
 from legwright.candidate.priors import load_priors
-from legwright.decide.brief import Brief
-from legwright.decide.rank import Row, doping_range, size_range
-from legwright.decide.score import span_nodes
-from legwright.leg.balance import LegMaterial
-from legwright.leg.duty import best_score
 from legwright.physics.crystal import Crystal, crystal
 from legwright.physics.properties import evaluate_crystal
 
 Array = NDArray[np.float64]
 
-#: draws of what is a candidate's own under each draw of the shared laws
-OWN = 16
-_NODES, _ROUNDS, _GRID = 9, 3, 5
-#: the designs looked at anew for each draw lie within these factors of the best one
-_DOPING_REACH, _SIZE_REACH = 2.5, 3.0
+#: standard normals of a candidate's own: its anchors, then what the model misses, each of mobility, S and κ_L
+OWN_NAMES = (
+    "mobility anchor",
+    "seebeck anchor",
+    "lattice_conductivity anchor",
+    "mobility discrepancy",
+    "seebeck discrepancy",
+    "lattice_conductivity discrepancy",
+)
+SHARED_NAMES = ("grain_law exponent", "grain_law prefactor", "grain reflection")
+#: a boundary turns back no more than this share
+MOST_REFLECTED = 0.95
+#: fewest draws
+FEWEST = 16
+#: step of a fitted candidate's logarithms (of its gap: eV) for slopes; they bend little over it
+_STEP = 1e-2
+
+
+def rounded(draws: int) -> int:
+    """The next power of two: only whole nets of a Sobol sequence are balanced."""
+    return int(max(2 ** int(np.ceil(np.log2(max(draws, 1)))), FEWEST))
+
+
+@dataclass(frozen=True)
+class Laws:
+    """Grain law and reflection of each draw: (draws,)."""
+
+    exponent: Array
+    prefactor: Array
+    reflection: Array
 
 
 @cache
-def _law_draws(count: int, seed: int) -> tuple[Array, Array, Array]:
-    """Exponents, prefactors and standard normal of reflection: one set for all candidates."""
+def law_normals(count: int, seed: int) -> Array:
+    """Standard normals of SHARED_NAMES, the same for all candidates: (count, 3)."""
+    return np.asarray(ndtri(qmc.Sobol(3, rng=np.random.default_rng(seed)).random(count)))
+
+
+def laws_for(candidate: Candidate, count: int, seed: int) -> Laws:
+    """The laws of `count` draws: one set for all, but for the prior of a reflection that a candidate knows."""
     law = load_priors().grain_law
-    u = qmc.Sobol(3, rng=np.random.default_rng(seed)).random(count)
+    own = candidate.data.scattering.grain_reflection
+    prior = own or load_priors().reflection.electrons
+    normals = law_normals(count, seed)
     half_range = 3**0.5 * law.exponent.spread
-    exponent = np.clip(law.exponent.si + half_range * (2 * u[:, 0] - 1), 0, 1)
-    prefactor = law.prefactor.si * np.exp(law.prefactor.relative_spread * ndtri(u[:, 1]))
-    return exponent, prefactor, ndtri(u[:, 2])
+    exponent = np.clip(law.exponent.si + half_range * (2 * ndtr(normals[:, 0]) - 1), 0, 1)
+    prefactor = law.prefactor.si * np.exp(law.prefactor.relative_spread * normals[:, 1])
+    reflection = np.clip(prior.si * (1 + prior.relative_spread * normals[:, 2]), 0, MOST_REFLECTED)
+    return Laws(exponent, prefactor, reflection)
+
+
+def under_law(one: Crystal, exponent: float, prefactor: float, reflection: float) -> Crystal:
+    """The crystal with that grain law and reflection."""
+    return replace(
+        one,
+        electrons=replace(one.electrons, reflection=reflection),
+        phonons=replace(one.phonons, grain_exponent=exponent, grain_prefactor=prefactor),
+    )
 
 
 def with_each_law(candidate: Candidate, one: Crystal, count: int, seed: int) -> list[Crystal]:
     """The crystal under each of `count` draws of grain law and reflection, which all candidates share."""
-    own = candidate.data.scattering.grain_reflection
-    prior = own or load_priors().reflection.electrons
-    exponent, prefactor, normal = _law_draws(count, seed)
-    reflection = np.clip(prior.si * (1 + prior.relative_spread * normal), 0, 0.95)
-    return [
-        replace(
-            one,
-            electrons=replace(one.electrons, reflection=float(r)),
-            phonons=replace(one.phonons, grain_exponent=float(s), grain_prefactor=float(c)),
-        )
-        for s, c, r in zip(exponent, prefactor, reflection, strict=True)
-    ]
+    laws = laws_for(candidate, count, seed)
+    each = zip(laws.exponent.tolist(), laws.prefactor.tolist(), laws.reflection.tolist(), strict=True)
+    return [under_law(one, *law) for law in each]
 
 
 def anchors_behind(candidate: Candidate) -> list[tuple[Anchor, float]]:
@@ -74,70 +106,81 @@ def anchor_spreads(candidate: Candidate) -> tuple[float, float, float]:
     return found[0], found[1], found[2]
 
 
-@dataclass(frozen=True)
-class Confidence:
-    """5 and 95 % points of a row's score over the draws, and the share of draws that it wins."""
+def own_normals(candidate: Candidate, count: int, seed: int) -> Array:
+    """Standard normals of OWN_NAMES: (count, 6), whoever else is asked.
 
-    low: float
-    high: float
-    win_share: float
-
-
-def confidences(brief: Brief, rows: list[Row], draws: int, seed: int) -> dict[str, Confidence]:
-    """By candidate name, for the rows that can serve: scores drawn anew, each at its own best design.
-
-    Per draw of the grain law (shared: wrong for all at once) each candidate's mobility, S and κ_L move as a whole
-    by the spreads of its anchors and by the model's own discrepancy; the best of a small grid of dopings and sizes
-    around the row's design is that draw's score. `draws` is rounded up to a power of two, 16 at the least.
+    A scrambled net in an order of its own: unshuffled, the nets of two candidates, and of a candidate and the
+    shared laws, have leading digits in common and rise and fall together.
     """
-    laws = max(2 ** int(np.ceil(np.log2(max(draws, OWN) / OWN))), 1)
-    drawn = {row.candidate.name: _scores(brief, row, laws, seed) for row in rows if row.score > 0}
-    best = np.max(np.stack(list(drawn.values())), axis=0) if drawn else np.zeros(0)
-    found = {}
-    for name, scores in drawn.items():
-        low, high = np.quantile(scores, (0.05, 0.95))
-        found[name] = Confidence(float(low), float(high), float(np.mean(scores >= best)))
-    return found
+    rng = np.random.default_rng(np.random.SeedSequence([seed, *candidate.name.encode()]))
+    net = qmc.Sobol(len(OWN_NAMES), rng=rng).random(count)
+    return np.asarray(ndtri(net[rng.permutation(count)]))
 
 
-def _scores(brief: Brief, row: Row, laws: int, seed: int) -> Array:
-    """Score of one candidate in every draw: (laws × OWN,)."""
-    candidate, duty = row.candidate, brief.task
-    dopings, sizes = doping_range(brief, candidate), size_range(brief, candidate)
-    assert row.doping is not None
-    assert row.size is not None
-    assert dopings is not None
-    steps = np.linspace(-1, 1, _GRID)
-    doping = np.clip(row.doping * _DOPING_REACH**steps, *dopings)[:, None]
-    size = np.clip(row.size * _SIZE_REACH**steps, *sizes)
-    temperature = span_nodes(duty, _NODES)
-    mobility, thermopower, lattice = _own_factors(candidate, laws, seed)
-    sign = -1.0 if candidate.data.carrier == "n" else 1.0
-    found = []
-    one = crystal(candidate)
-    for k, law in enumerate(with_each_law(candidate, one, laws, seed)):
-        made = evaluate_crystal(law, temperature[:, None, None], doping, size, row.shape, duty.felt_length)
+def own_spread(candidate: Candidate, temperature: Array, doping: float, size: float, shape: str) -> Array:
+    """What turns a candidate's normals into ln factors on mobility, S and κ_L: a matrix of (3, 6).
 
-        def off(values: Array, factor: Array) -> Array:
-            return values[:, None] * factor[:, None, None]
-
-        sigma = off(made.electrical_conductivity, mobility[k])
-        heat = off(made.electronic_thermal_conductivity, mobility[k])
-        heat = heat + off(made.lattice_thermal_conductivity, lattice[k])
-        seebeck = off(sign * made.seebeck, thermopower[k])
-        material = LegMaterial.from_nodes(temperature, seebeck, 1 / sigma, heat)
-        found.append(np.max(best_score(material, duty, _ROUNDS), axis=(-2, -1)))
-    return np.concatenate(found)
-
-
-def _own_factors(candidate: Candidate, laws: int, seed: int) -> tuple[Array, Array, Array]:
-    """Factors on mobility, S and κ_L, each (laws, OWN): anchors' spreads and the model's discrepancy together."""
+    The anchors' spreads and the model's discrepancy are independent of one another, so the matrix is two diagonal
+    blocks. A candidate that `fit` made keeps its covariance instead of the anchors' spreads: it is carried to the
+    three quantities by slopes at the given design, as means over temperature.
+    """
     model = load_priors().discrepancy
-    spreads = np.hypot(
-        anchor_spreads(candidate),
-        (model.electrical_conductivity.si, model.seebeck.si, model.thermal_conductivity_sized.si),
+    missed = (model.electrical_conductivity.si, model.seebeck.si, model.thermal_conductivity_sized.si)
+    known = (
+        np.diag(anchor_spreads(candidate))
+        if candidate.data.fitted is None
+        else _fitted_spread(candidate, temperature, doping, size, shape)
     )
-    own_seed = np.random.SeedSequence([seed, *candidate.name.encode()])  # does not hang on who else is asked
-    u = qmc.Sobol(3, rng=np.random.default_rng(own_seed)).random(laws * OWN)
-    factors = np.exp(spreads[:, None] * ndtri(u).T).reshape(3, laws, OWN)
-    return factors[0], factors[1], factors[2]
+    return np.hstack([known, np.diag(missed)])
+
+
+def _fitted_spread(candidate: Candidate, temperature: Array, doping: float, size: float, shape: str) -> Array:
+    """A lower triangle L with L Lᵀ the covariance of ln mobility, ln S and ln κ_L that the fit left."""
+    fitted = candidate.data.fitted
+    assert fitted is not None
+    one = crystal(candidate)
+
+    def logs(moved: Crystal) -> Array:
+        made = evaluate_crystal(moved, temperature, doping, size, shape)
+        three = (made.electrical_conductivity, np.abs(made.seebeck), made.lattice_thermal_conductivity)
+        return np.array([np.mean(np.log(values)) for values in three])
+
+    kept = [name for name in fitted.names if name in _MOVED]
+    places = [fitted.names.index(name) for name in kept]
+    slopes = np.stack(
+        [(logs(_MOVED[name](one, _STEP)) - logs(_MOVED[name](one, -_STEP))) / (2 * _STEP) for name in kept], axis=1
+    )
+    covariance = slopes @ np.array(fitted.covariance)[np.ix_(places, places)] @ slopes.T
+    values, vectors = np.linalg.eigh(covariance)
+    _, upper = np.linalg.qr((vectors * np.sqrt(np.maximum(values, 0.0))).T)
+    return np.asarray(upper.T)
+
+
+def _heavier(one: Crystal, log: float) -> Crystal:
+    electrons = one.electrons
+    return replace(one, electrons=replace(electrons, mass_scale=electrons.mass_scale * float(np.exp(log))))
+
+
+def _scattering_more(one: Crystal, log: float) -> Crystal:
+    electrons = one.electrons
+    return replace(one, electrons=replace(electrons, lattice_scale=electrons.lattice_scale * float(np.exp(log))))
+
+
+def _more_anharmonic(one: Crystal, log: float) -> Crystal:
+    phonons = one.phonons
+    return replace(one, phonons=replace(phonons, anharmonic_scale=phonons.anharmonic_scale * float(np.exp(log))))
+
+
+def _with_wider_gap(one: Crystal, volts: float) -> Crystal:
+    electrons = one.electrons
+    shift = np.where(electrons.majority, 0.0, electrons.side * volts * E_CHARGE)
+    return replace(one, electrons=replace(electrons, edge=electrons.edge + shift))
+
+
+#: what a fit moves, by its own names
+_MOVED = {
+    "mass": _heavier,
+    "lattice scattering": _scattering_more,
+    "anharmonicity": _more_anharmonic,
+    "gap": _with_wider_gap,
+}

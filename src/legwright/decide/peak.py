@@ -10,7 +10,8 @@ from numpy.typing import NDArray
 from legwright.base.flags import ordered
 from legwright.base.units import NM
 from legwright.candidate.library import Candidate
-from legwright.decide.rank import around, window_of
+from legwright.decide.rank import window_of
+from legwright.decide.score import around
 from legwright.decide.warnings import point_flags
 from legwright.physics.properties import evaluate
 

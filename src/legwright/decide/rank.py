@@ -15,7 +15,8 @@ from legwright.base.units import NM, PER_CM3
 from legwright.candidate.library import Candidate
 from legwright.candidate.supply import cost_per_kg, hazardous_elements, supply_concentration
 from legwright.decide.brief import Brief, candidates_of
-from legwright.decide.score import leg_material, properties_over_span, score
+from legwright.decide.robust import MadeMap
+from legwright.decide.score import around, leg_material, properties_over_span, score
 from legwright.decide.warnings import point_flags
 from legwright.leg.duty import SCORE_NAMES, Duty, best_score
 from legwright.physics.properties import Properties
@@ -26,12 +27,16 @@ Array = NDArray[np.float64]
 WINDOW_SHARE = 0.95
 _MAP_DOPINGS, _MAP_SIZES, _WINDOW_SIZES = 25, 33, 129
 _FINE_NODES, _FINE_ROUNDS = 17, 8
-_ZOOMS, _COARSE_ZOOMS, _ZOOM_POINTS = 5, 4, 5
+_ZOOMS, _COARSE_ZOOMS = 5, 4
 
 
 @dataclass(frozen=True)
 class Row:
-    """One line of the ranking; SI except where the name says otherwise. None: not defined, with a flag."""
+    """One line of the ranking; SI except where the name says otherwise. None: not defined, with a flag.
+
+    Where the brief names the scatter of making, score, window and gain are of legs as they are made, and
+    score_as_designed is that of the leg that hits its design; otherwise the two scores are one.
+    """
 
     candidate: Candidate
     shape: str
@@ -44,6 +49,7 @@ class Row:
     zt_peak: float | None
     gain_over_bulk: float | None
     flags: tuple[str, ...]
+    score_as_designed: float
     rank: int = 0
 
 
@@ -86,14 +92,24 @@ def rank_one(brief: Brief, candidate: Candidate) -> Row:
     if refused or dopings is None:
         return _infeasible(brief, candidate, refused or "no-doping-range")
     sizes = size_range(brief, candidate)
-    found = design_map(candidate, duty, dopings, sizes, shape)
-    doping, size, _ = best_on(found, candidate, duty, shape)
+    scatter = brief.scatter
+    if scatter is None:
+        found = design_map(candidate, duty, dopings, sizes, shape)
+        doping, size, _ = best_on(found, candidate, duty, shape)
+    else:
+        legs = MadeMap.of(candidate, duty, dopings, sizes, shape, scatter)
+        doping, size, worth = legs.best(dopings, sizes)
     made = properties_over_span(candidate, duty, doping, size, shape, _FINE_NODES)
     best = float(best_score(leg_material(candidate, made), duty, _FINE_ROUNDS))
     if best == 0:
         return _infeasible(brief, candidate, "duty-out-of-reach")
-    low, high, open_ended = window(candidate, duty, doping, size, sizes, shape)
-    bulk = best_coarse_score(found, candidate, duty, shape)
+    if scatter is None:
+        kept, bulk = 1.0, best_coarse_score(found, candidate, duty, shape)
+        low, high, open_ended = window(candidate, duty, doping, size, sizes, shape)
+    else:
+        kept, bulk = worth / legs.as_designed(doping, size), legs.best_coarse(dopings)
+        length = window_sizes(sizes, size)
+        low, high, open_ended = window_of(length, legs.worth(doping, length))
     inside = made
     if not duty.setting.ideal:  # properties that the leg only meets in its setting are not the duty's
         inside = properties_over_span(candidate, duty.alone, doping, size, shape, _FINE_NODES)
@@ -109,12 +125,13 @@ def rank_one(brief: Brief, candidate: Candidate) -> Row:
         size,
         (low, high),
         doping,
-        best,
+        kept * best,
         SCORE_NAMES[duty.maximise],
         zt_mean,
         zt_peak,
-        best / bulk if bulk > 0 else None,
+        kept * best / bulk if bulk > 0 else None,
         ordered(flags),
+        best,
     )
 
 
@@ -155,12 +172,7 @@ def refusal(brief: Brief, candidate: Candidate, duty: Duty) -> str | None:
 
 def _infeasible(brief: Brief, candidate: Candidate, flag: str) -> Row:
     name = SCORE_NAMES[brief.duty.maximise]
-    return Row(candidate, brief.size.shape, None, None, None, 0.0, name, None, None, None, (flag,))
-
-
-def around(axis: Array, best: int, count: int = _ZOOM_POINTS) -> Array:
-    """A finer axis between the neighbours of the best point, evenly spaced in the logarithm."""
-    return np.geomspace(axis[max(best - 1, 0)], axis[min(best + 1, axis.size - 1)], count)
+    return Row(candidate, brief.size.shape, None, None, None, 0.0, name, None, None, None, (flag,), 0.0)
 
 
 @dataclass(frozen=True)
@@ -215,8 +227,13 @@ def window(
     candidate: Candidate, duty: Duty, doping: float, size: float, sizes: tuple[float, float], shape: str
 ) -> tuple[float, float, bool]:
     """Sizes around the best that keep WINDOW_SHARE of its score, and whether an end is a limit of the range."""
-    length = np.sort(np.append(np.geomspace(*sizes, _WINDOW_SIZES), size))
+    length = window_sizes(sizes, size)
     return window_of(length, score(candidate, duty, doping, length, shape))
+
+
+def window_sizes(sizes: tuple[float, float], best: float) -> Array:
+    """Sizes of the range, the best among them, ascending."""
+    return np.sort(np.append(np.geomspace(*sizes, _WINDOW_SIZES), best))
 
 
 def window_of(size: Array, scores: Array, level: float | None = None) -> tuple[float, float, bool]:

@@ -13,6 +13,15 @@ from legwright.physics.properties import Properties, evaluate
 Array = NDArray[np.float64]
 
 
+#: points of a finer axis around the best of a coarser one
+_ZOOM_POINTS = 5
+
+
+def around(axis: Array, best: int, count: int = _ZOOM_POINTS) -> Array:
+    """A finer axis between the neighbours of the best point, evenly spaced in the logarithm."""
+    return np.geomspace(axis[max(best - 1, 0)], axis[min(best + 1, axis.size - 1)], count)
+
+
 def span_nodes(duty: Duty, count: int) -> Array:
     """Temperatures over the duty's span, K, as `nodes_between`."""
     return nodes_between(*duty.span, count)

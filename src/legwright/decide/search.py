@@ -11,6 +11,7 @@ import json
 import math
 import warnings
 from dataclasses import dataclass
+from functools import cache
 from itertools import product
 from pathlib import Path
 from typing import Any
@@ -26,6 +27,7 @@ from legwright.candidate.family import Family, member
 from legwright.candidate.library import Candidate
 from legwright.decide.brief import Brief
 from legwright.decide.rank import best_design, doping_range, refusal, size_range
+from legwright.decide.robust import MadeMap
 from legwright.decide.score import properties_over_span, score
 from legwright.decide.warnings import point_flags
 from legwright.leg.duty import SCORE_NAMES
@@ -73,6 +75,7 @@ class _Space:
     def __init__(self, subject: Candidate | Family, brief: Brief) -> None:
         self.subject, self.brief, self.duty = subject, brief, brief.task
         self.mixing = len(subject.ends) - 1 if isinstance(subject, Family) else 0
+        self.legs = cache(self._legs)
         self.names = (*(subject.ends[1:] if isinstance(subject, Family) else ()), "doping", "size")
 
     def candidate(self, u: Array) -> Candidate | None:
@@ -106,7 +109,28 @@ class _Space:
         if design is None:
             return 0.0
         one, doping, size = design
+        if self.brief.scatter is not None:
+            return float(self.legs(one).worth(doping, size))
         return float(score(one, self.duty, doping, size, self.brief.size.shape, _NODES, _ROUNDS))
+
+    def _legs(self, one: Candidate) -> MadeMap:
+        """What legs of a candidate are worth as they are made."""
+        dopings, scatter = doping_range(self.brief, one), self.brief.scatter
+        assert dopings is not None
+        assert scatter is not None
+        sizes = size_range(self.brief, one)
+        return MadeMap.of(one, self.duty, dopings, sizes, self.brief.size.shape, scatter)
+
+    def map_best(self, one: Candidate) -> float:
+        """Best score of a dense map of a candidate; 0 where the brief has no use for it."""
+        dopings, sizes = doping_range(self.brief, one), size_range(self.brief, one)
+        if dopings is None or refusal(self.brief, one, self.duty):
+            return 0.0
+        if self.brief.scatter is not None:
+            return self.legs(one).best(dopings, sizes)[2]
+        shape = self.brief.size.shape
+        doping, size, _ = best_design(one, self.duty, dopings, sizes, shape)
+        return float(score(one, self.duty, doping, size, shape, _NODES, _ROUNDS))
 
 
 def search(
@@ -148,7 +172,7 @@ def search(
                     _write(resume, key, [value for _, value in told])
         except KeyboardInterrupt:
             if not any(value > 0 for _, value in told):
-                raise
+                raise  # there is no best so far
             complete = False
     if max(value for _, value in told) <= 0:
         raise InputError(f"no design of '{subject.name}' that was tried can serve this brief")
@@ -186,18 +210,9 @@ def _simplex(best: list[float], side: float = 0.04) -> Array:
 
 def _map_best(space: _Space) -> float:
     """Best score of dense maps over doping and size, for a family at compositions along its line."""
-    shape, best = space.brief.size.shape, 0.0
     line = np.linspace(0, 1, _COMPOSITIONS)
-    for shares in product(line, repeat=space.mixing):
-        one = space.candidate(np.array([*shares, 0.5, 0.5]))
-        if one is None or refusal(space.brief, one, space.duty):
-            continue
-        dopings = doping_range(space.brief, one)
-        if dopings is None:
-            continue
-        doping, size, _ = best_design(one, space.duty, dopings, size_range(space.brief, one), shape)
-        best = max(best, float(score(one, space.duty, doping, size, shape, _NODES, _ROUNDS)))
-    return best
+    members = (space.candidate(np.array([*shares, 0.5, 0.5])) for shares in product(line, repeat=space.mixing))
+    return max((space.map_best(one) for one in members if one is not None), default=0.0)
 
 
 def _key(subject: Candidate | Family, brief: Brief, seed: int) -> str:

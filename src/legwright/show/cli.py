@@ -13,6 +13,7 @@ from legwright.show.verbs.audit import audit_verb
 from legwright.show.verbs.candidates import candidates_verb
 from legwright.show.verbs.fit import fit_verb
 from legwright.show.verbs.leg import leg_verb
+from legwright.show.verbs.measure import measure_verb
 from legwright.show.verbs.peak import peak_verb
 from legwright.show.verbs.rank import rank_verb
 from legwright.show.verbs.search import search_verb
@@ -43,6 +44,7 @@ for _verb in (
     candidates_verb,
     search_verb,
     leg_verb,
+    measure_verb,
     fit_verb,
     audit_verb,
 ):

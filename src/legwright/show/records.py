@@ -20,11 +20,12 @@ from legwright.physics.solubility import atomic_percent
 if TYPE_CHECKING:
     from legwright.candidate.family import Family
     from legwright.candidate.library import Candidate
+    from legwright.decide.advise import Advice
     from legwright.decide.audit import Total, Verdict
     from legwright.decide.brief import Brief
+    from legwright.decide.confidence import Confidence
     from legwright.decide.couple import Joined, Part
     from legwright.decide.devices import DeviceVerdict
-    from legwright.decide.draws import Confidence
     from legwright.decide.fit import Fit, Parameter
     from legwright.decide.installed import Delivered
     from legwright.decide.peak import Peak
@@ -46,7 +47,7 @@ def nanometres(size: float | None) -> float | None:
 
 
 def rank_record(row: Row, sure: dict[str, Confidence] | None = None) -> Record:
-    """One row of `rank`; with draws also its score's interval and how often it wins."""
+    """One row of `rank`; with draws also how sure it is."""
     content: Record = {
         "rank": row.rank,
         "candidate": row.candidate.name,
@@ -58,17 +59,54 @@ def rank_record(row: Row, sure: dict[str, Confidence] | None = None) -> Record:
         "doping_per_cm3": None if row.doping is None else row.doping / PER_CM3,
         "score": row.score,
         "score_name": row.score_name,
+        "score_as_designed": row.score_as_designed,
         "zt_mean": row.zt_mean,
         "zt_peak": row.zt_peak,
         "gain_over_bulk": row.gain_over_bulk,
+        "cost_USD_per_kg": cost_per_kg(row.candidate),
+        "supply_concentration": supply_concentration(row.candidate),
+        "hazardous_elements": list(hazardous_elements(row.candidate)),
         "flags": list(row.flags),
     }
     if sure is not None:
-        from legwright.decide.draws import Confidence
-
-        known = sure.get(row.candidate.name) or Confidence(0.0, 0.0, 0.0)
-        content |= {"score_low": known.low, "score_high": known.high, "win_share": known.win_share}
+        known = sure.get(row.candidate.name)
+        content |= {
+            "score_low": known.low if known else 0.0,
+            "score_high": known.high if known else 0.0,
+            "win_share": known.win_share if known else 0.0,
+            "first_three_share": known.first_three_share if known else 0.0,
+            "size_low_nm": nanometres(known.size_low) if known else None,
+            "size_high_nm": nanometres(known.size_high) if known else None,
+            "nanostructuring_pays": known.nanostructuring_pays if known else None,
+            "tied_with": list(known.tied_with) if known else [],
+        }
     return content
+
+
+def advice_record(found: Advice, score_name: str) -> Record:
+    """The whole of `measure`."""
+    return {
+        "score_name": score_name,
+        "chosen_now": found.chosen,
+        "expected_score": found.expected,
+        "gain_if_all_were_known": found.all_known,
+        "rows": [
+            {
+                "candidate": one.candidate,
+                "quantity": one.quantity,
+                "expected_gain": one.gain,
+                "standard_error": one.error,
+                "effort": one.effort,
+                "gain_per_effort": one.gain_per_effort,
+            }
+            for one in found.measurements
+        ],
+        "sensitivities": [
+            {"candidate": one.candidate, "source": one.source, "first_order": one.first, "total": one.total}
+            for one in found.sensitivities
+        ],
+        "variance_explained": found.explained,
+    }
 
 
 def peak_record(found: Peak) -> Record:

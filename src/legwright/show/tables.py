@@ -63,6 +63,93 @@ def _sureness(row: Record) -> tuple[str, str, str]:
     return score, " … ".join(ends), percent(row["win_share"])
 
 
+def sureness_table(rows: Sequence[Record], markdown: bool) -> Layout:
+    """Of each candidate that can serve: places over the draws, best size, and whether a small one pays."""
+    columns = ("candidate", "in first three", "best size, 5 to 95 % [nm]", "small size pays", "tied with")
+    cells = (
+        (
+            f"{row['rank']}. {row['candidate']}",
+            percent(row["first_three_share"]),
+            span((row["size_low_nm"], row["size_high_nm"])),
+            percent(row["nanostructuring_pays"]),
+            ", ".join(row["tied_with"]) or "–",
+        )
+        for row in rows
+        if row["score"]
+    )
+    return draw("How sure (draws; tied: neither is twice as likely to be the better)", columns, cells, markdown)
+
+
+_MOST_ADVICE = 10
+
+
+def advice_tables(found: Record, markdown: bool) -> list[Layout]:
+    """The measurements worth most, and where the doubt about the scores comes from."""
+    title = SCORE_TITLES[found["score_name"]]
+    advice = draw(
+        f"What to measure next: expected gain of the chosen candidate's {title}",
+        ("candidate", "measure", "expected gain", "± standard error", "effort", "gain per effort"),
+        (
+            (
+                row["candidate"],
+                row["quantity"].replace("_", " "),
+                figure(row["expected_gain"], 2),
+                figure(row["standard_error"], 2),
+                figure(row["effort"]),
+                figure(row["gain_per_effort"], 2),
+            )
+            for row in found["rows"][:_MOST_ADVICE]
+        ),
+        markdown,
+    )
+    doubt = draw(
+        "Where the doubt comes from (shares of the score's variance)",
+        ("candidate", "source", "by itself", "with others"),
+        (
+            (
+                row["candidate"],
+                row["source"].replace("_", " "),
+                percent(row["first_order"]),
+                percent(row["total"]),
+            )
+            for row in found["sensitivities"]
+        ),
+        markdown,
+    )
+    return [advice, doubt]
+
+
+TRADE_OFFS = {
+    "cost_USD_per_kg": "element cost [USD/kg]",
+    "supply_concentration": "supply concentration",
+    "hazardous_elements": "hazardous elements",
+    "largest_size_nm": "largest size [nm]",
+}
+
+
+def trade_offs_table(rows: Sequence[Record], fronts: Mapping[str, Sequence[str]], markdown: bool) -> Layout:
+    """Candidates on a front of score against another count; a star where nobody beats them on both."""
+    columns = ("candidate", SCORE_TITLES[rows[0]["score_name"]], *TRADE_OFFS.values())
+    on_a_front = {name for names in fronts.values() for name in names}
+
+    def starred(row: Record, axis: str, text: str) -> str:
+        return f"* {text}" if row["candidate"] in fronts[axis] else text
+
+    cells = (
+        (
+            f"{row['rank']}. {row['candidate']}",
+            figure(row["score"]),
+            starred(row, "cost_USD_per_kg", figure(row["cost_USD_per_kg"])),
+            starred(row, "supply_concentration", figure(row["supply_concentration"])),
+            starred(row, "hazardous_elements", " ".join(row["hazardous_elements"]) or "none"),
+            starred(row, "largest_size_nm", figure(row["window_nm"][1])),
+        )
+        for row in rows
+        if row["candidate"] in on_a_front
+    )
+    return draw("Trade-offs (*: nobody has both a better score and a better figure here)", columns, cells, markdown)
+
+
 def pairs_table(title: str, pairs: Iterable[tuple[str, str]], markdown: bool) -> Layout:
     """Two columns: what, and how much."""
     return draw(title, ("property", "value"), pairs, markdown)

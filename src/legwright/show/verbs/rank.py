@@ -17,21 +17,26 @@ from legwright.show.options import output, publish
     "--draws", type=click.IntRange(0, 65536), default=0, show_default=True, help="For confidence; 0: none."
 )
 @click.option("--seed", type=click.IntRange(0), default=0, show_default=True, help="Of the draws.")
+@click.option(
+    "--trade-offs", is_flag=True, help="Also print the fronts of score against cost, supply, hazard, size."
+)
 @output
 def rank_verb(
     brief: Path,
     workers: int,
     draws: int,
     seed: int,
+    trade_offs: bool,
     as_json: bool,
     csv_file: Path | None,
     markdown: bool,
 ) -> None:
     """Rank the candidates of BRIEF, each at its best size and doping."""
     from legwright.decide.brief import load_brief, partner_of
+    from legwright.decide.confidence import confidences, draw_all, with_cautions
     from legwright.decide.couple import rank_with
-    from legwright.decide.draws import confidences
     from legwright.decide.rank import rank
+    from legwright.decide.tradeoffs import trade_offs as fronts_of
     from legwright.show import layout, records, tables
 
     job = load_brief(brief)
@@ -39,10 +44,12 @@ def rank_verb(
     if partner and draws:
         raise InputError("gives intervals to legs alone: leave it out, or the partner", key="--draws")
     found = rank_with(job, brief, partner, workers) if partner else rank(job, brief, workers)
-    sure = confidences(job, found, draws, seed) if draws else None
+    sure = confidences(draw_all(job, found, draws, seed, workers)) if draws else None
+    found = with_cautions(found, sure or {})
     rows = [records.rank_record(row, sure) for row in found]
     under = records.notes((f for row in found for f in row.flags), (row.candidate for row in found if row.score))
-    content = {"title": job.title, "rows": rows, **under}
+    fronts = {axis: list(names) for axis, names in fronts_of(found).items()}
+    content = {"title": job.title, "rows": rows, "trade_offs": fronts, **under}
 
     def table() -> None:
         out = layout.console(markdown)
@@ -50,6 +57,10 @@ def rank_verb(
         what = f"couple with {partner.name}" if partner else "leg"
         heading = f"{job.title}: {duty.kind} {what}, {duty.cold_K:g} to {duty.hot_K:g} K, {job.size.shape} size"
         out.print(tables.rank_table(heading, rows, markdown))
+        if draws:
+            out.print(tables.sureness_table(rows, markdown))
+        if trade_offs:
+            out.print(tables.trade_offs_table(rows, fronts, markdown))
         tables.footnotes(out, under["flag_meanings"], under["cautions"])
 
     publish("rank", content, rows, as_json, csv_file, table)
