@@ -1,6 +1,7 @@
 """Wires, films and grains against mpmath and scipy forms of the published integrals that share no code."""
 
 import math
+from dataclasses import replace
 from functools import cache, partial
 
 import mpmath
@@ -11,6 +12,7 @@ from hypothesis import strategies as st
 from scipy.integrate import dblquad, quad
 
 from legwright.physics.boundaries import (
+    diffuse_walls,
     film_suppression,
     film_suppression_rough,
     grain_mean_free_path,
@@ -18,6 +20,8 @@ from legwright.physics.boundaries import (
     wire_suppression,
     wire_suppression_rough,
 )
+from legwright.physics.carriers import held_back
+from legwright.physics.lattice import PATHS, HeatSpectrum, conductivity_at, modes, wall_suppression
 
 #: pytest adds an absolute 1e-12 of its own, which is large among SI figures
 near = partial(pytest.approx, abs=0.0)
@@ -218,6 +222,30 @@ def test_grains_match_mpmath_on_both_sides_of_the_switch(a):
 def test_grains_from_reflection():
     # a = (Λ/d) R/(1 − R): 3 × 0.2/0.8 = 0.75
     assert relative_miss(grain_suppression(30e-9, 10e-9, 0.2), mayadas_shatzkes(0.75)) < 1e-12
+
+
+@pytest.mark.parametrize("reflection", [1.0, 1.5, -0.1, float("nan"), [0.5, 1.0]])
+def test_grains_refuse_what_reflects_all_or_less_than_nothing(reflection):
+    with pytest.raises(ValueError, match="reflection must lie within"):
+        grain_suppression(1e-8, 1e-8, reflection)
+
+
+def test_walls_are_of_a_wire_or_a_film(make_phonons):
+    assert diffuse_walls("wire") is wire_suppression
+    assert diffuse_walls("film") is film_suppression
+    path, rough = np.array([1e-8]), replace(make_phonons(), wall_roughness=1e-9)
+    mesh, size = modes(make_phonons()), np.array(1e-8)
+    spectrum = HeatSpectrum(np.ones((3, PATHS.paths.size)), np.ones(()))
+    for refused in (
+        lambda: diffuse_walls("wier"),
+        lambda: held_back(path, path, "wier", 0.3),
+        lambda: wall_suppression(make_phonons(), mesh, "wier"),
+        lambda: wall_suppression(rough, mesh, "wier"),
+        lambda: wall_suppression(make_phonons(), mesh, "grain"),
+        lambda: conductivity_at(spectrum, size, "wier"),
+    ):
+        with pytest.raises(ValueError, match="the shape must be"):
+            refused()
 
 
 def test_grains_without_reflection_or_without_end_do_nothing():

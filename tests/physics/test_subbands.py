@@ -281,3 +281,22 @@ def test_criterion_is_the_first_gap():
     gap = (jn_zeros(1, 1)[0] ** 2 - jn_zeros(0, 1)[0] ** 2) * confinement_energy(d, 0.3 * M_E)
     assert gap == near(K_B * 300, rel=1e-12)
     assert thin_wire_diameter(75.0, 0.3 * M_E) == near(2 * float(d), rel=1e-14)
+
+
+@pytest.mark.parametrize("diameter", [0.0, -5e-9, float("nan"), [5e-9, -5e-9]])
+def test_a_wire_without_a_diameter_is_refused(diameter):
+    for refused in (
+        lambda: confinement_energy(diameter, M_E),
+        lambda: subband_density(BAND, 300.0, 0.0, diameter),
+        lambda: subband_integrals(BAND, 300.0, 0.0, diameter),
+        lambda: subband_level(BAND, 300.0, 1e25, diameter),
+    ):
+        with pytest.raises(ValueError, match="the diameter must be above 0"):
+            refused()
+
+
+@pytest.mark.parametrize("eta", [float("inf"), float("-inf"), float("nan"), [0.0, float("inf")]])
+def test_a_level_that_is_not_finite_is_refused(eta):
+    for sums in (subband_density, subband_integrals):
+        with pytest.raises(ValueError, match="η must be finite"):
+            sums(BAND, 300.0, eta, 8e-9)

@@ -14,6 +14,8 @@ Pure = Annotated[Measure, measure("1", 0)]
 Ratio = Annotated[Measure, measure("1", 0, above=True)]
 Dielectric = Annotated[Measure, measure("1", 1)]
 Fraction = Annotated[Measure, measure("1", 0, 1)]
+#: an opaque boundary would leave no conductivity at all
+Reflected = Annotated[Measure, measure("1", 0, 0.99)]
 Signed = Annotated[Measure, measure("1")]
 Length = Annotated[Measure, measure("m", 0, above=True)]
 Volume = Annotated[Measure, measure("m^3", 0, above=True)]
@@ -127,7 +129,7 @@ class Scattering(Table):
     optical_phonon: PhononEnergy | None = None
     alloy_fraction: Fraction | None = None
     alloy_volume: Volume | None = None
-    grain_reflection: Fraction | None = None
+    grain_reflection: Reflected | None = None
     barrier: BarrierEnergy | None = None
 
     @model_validator(mode="after")

@@ -9,7 +9,7 @@ from pydantic import Field
 
 from legwright.base.files import datasets_folder, read_toml
 from legwright.base.reading import Table, read_as
-from legwright.candidate.model import Fraction, Pure, Ratio
+from legwright.candidate.model import Pure, Ratio, Reflected
 
 
 class GrainLaw(Table):
@@ -22,7 +22,7 @@ class GrainLaw(Table):
 class Reflection(Table):
     """Share of carriers that a grain boundary turns back."""
 
-    electrons: Fraction
+    electrons: Reflected
 
 
 class ByQuantity(Table):

@@ -41,12 +41,15 @@ def grain_suppression(mean_free_path: ArrayLike, size: ArrayLike, reflection: Ar
     F = 3 [1/3 − a/2 + a² − a³ ln(1 + 1/a)],  a = (Λ/d) R/(1 − R).
 
     mean_free_path Λ and size d in m (d may be inf), reflection R in [0, 1); all broadcast; F in (0, 1].
+    ValueError for a reflection outside its range.
     Source: Mayadas & Shatzkes, Physical Review B 1, 1382 (1970).
 
     >>> round(float(grain_suppression(10e-9, 100e-9, 0.3)), 4)
     0.9405
     """
     r = np.asarray(reflection, dtype=float)
+    if np.any(~((r >= 0) & (r < 1))):
+        raise ValueError("reflection must lie within 0 … 1, 1 left out")
     a = np.asarray(mean_free_path, dtype=float) * (r / (1 - r)) / np.asarray(size, dtype=float)
     small = np.minimum(a, _SWITCH)
     with np.errstate(divide="ignore"):
@@ -59,6 +62,22 @@ def grain_suppression(mean_free_path: ArrayLike, size: ArrayLike, reflection: Ar
     for k in range(_TERMS, -1, -1):
         series = 1 / (k + 4) - u * series
     return np.asarray(np.where(a > _SWITCH, 3 * u * series, direct))
+
+
+def diffuse_walls(shape: str) -> Callable[[ArrayLike], Array]:
+    """`wire_suppression` or `film_suppression` with diffuse walls, as a function of mean free path over size.
+
+    Path over size and what is left of the conductivity are dimensionless, of one shape. ValueError for a `shape` that
+    is neither 'wire' nor 'film'.
+    Sources: Dingle, Proceedings of the Royal Society A 201, 545 (1950); Fuchs, Proceedings of the Cambridge
+    Philosophical Society 34, 100 (1938).
+
+    >>> round(float(diffuse_walls("film")(1.0)), 3)
+    0.684
+    """
+    if shape not in ("wire", "film"):
+        raise ValueError(f"the shape must be grain, wire or film, not '{shape}'")
+    return wire_suppression if shape == "wire" else film_suppression
 
 
 #: above this the closed form loses digits by cancellation (a² ε/F: 1e-13 at 8) and the series in 1/a takes over

@@ -14,7 +14,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from legwright.base.units import HBAR, K_B
 from legwright.physics import phonon_scattering as scattering
-from legwright.physics.boundaries import film_suppression, grain_mean_free_path, wire_suppression
+from legwright.physics.boundaries import diffuse_walls, grain_mean_free_path
 from legwright.physics.rough_walls import rough_walls
 from legwright.physics.short_legs import short_leg_suppression
 from legwright.physics.spectra import PathMesh, through
@@ -289,7 +289,8 @@ def wall_suppression(phonons: Phonons, mesh: Modes, shape: str) -> Callable[[Arr
     """What the wall of a wire or film leaves of each mode, 0 … 1, as a function of path over size (..., modes).
 
     Diffuse walls without `wall_roughness`; else p = exp(−4 q²η² cos²θ) inside the angular integral, for each q of
-    `mesh`. What it returns raises ValueError for a path over size below 0 where walls are diffuse.
+    `mesh`. ValueError for another shape; what it returns raises it for a path over size below 0 where walls are
+    diffuse.
     Sources: Dingle, Proc. Royal Society A 201, 545 (1950); Fuchs, Proc. Cambridge Phil. Soc. 34, 100 (1938); Ziman,
     Electrons and Phonons (Oxford, 1960); Soffer, Journal of Applied Physics 38, 1710 (1967).
 
@@ -301,8 +302,9 @@ def wall_suppression(phonons: Phonons, mesh: Modes, shape: str) -> Callable[[Arr
     >>> bool(kept[0] == 1.0 and kept[1] < 2e-3)
     True
     """
+    diffuse = diffuse_walls(shape)
     if phonons.wall_roughness is None:
-        return wire_suppression if shape == "wire" else film_suppression
+        return diffuse
     return rough_walls(shape, tuple((mesh.q * phonons.wall_roughness).tolist()))
 
 
@@ -488,10 +490,7 @@ def conductivity_at(spectrum: HeatSpectrum, size: Array, shape: str) -> Array:
     True
     """
     crossed = PATHS.paths / size[..., None]
-    if shape == "grain":
-        kept = 1 / (1 + crossed)
-    else:
-        kept = (wire_suppression if shape == "wire" else film_suppression)(crossed)
+    kept = 1 / (1 + crossed) if shape == "grain" else diffuse_walls(shape)(crossed)
     direct, drift, held = np.moveaxis(through(spectrum.sums, kept), -1, 0)
     lost = spectrum.untouched - held
     carried = np.divide(drift**2, lost, out=np.zeros_like(direct), where=(drift > 0) & (lost > 0))

@@ -38,14 +38,17 @@ class WireBand:
 def confinement_energy(diameter: ArrayLike, across_mass: ArrayLike) -> Array:
     """E_R = ħ²/(2 m_t R²), J: the unit of a round wire's subbands.
 
-    diameter 2R > 0 (m), across_mass m_t (kg); broadcast. Source: Hicks & Dresselhaus, Physical Review B 47, 16631
-    (1993).
+    diameter 2R > 0 (m), across_mass m_t (kg); broadcast. ValueError for another diameter.
+    Source: Hicks & Dresselhaus, Physical Review B 47, 16631 (1993).
 
     >>> from scipy import constants as c
     >>> round(float(confinement_energy(10e-9, 0.1 * c.m_e)) / c.e, 5)
     0.01524
     """
-    return np.asarray(2 * HBAR**2 / (np.asarray(across_mass) * np.asarray(diameter, dtype=float) ** 2))
+    d = np.asarray(diameter, dtype=float)
+    if not np.all(d > 0):
+        raise ValueError("the diameter must be above 0")
+    return np.asarray(2 * HBAR**2 / (np.asarray(across_mass) * d**2))
 
 
 def subband_edges(highest: float) -> tuple[NDArray[np.intp], Array]:
@@ -157,7 +160,7 @@ def subband_density(band: WireBand, temperature: ArrayLike, eta: ArrayLike, diam
     broadcast. Where edges that carriers reach are more than the 900 tabulated ones the sum is replaced by its
     expansion for thick wires, bulk less surface plus curvature, F_½/4ε − √π F₀/(4√ε) + F_(−½)/6 +
     √(πε) F₋₁/128 with ε = E_R/k_B T, exact to a share of ε²; oscillations of cold thick wires are left out.
-    ValueError for a level η that is not finite.
+    ValueError for a level η that is not finite or a diameter that is not above 0.
     Sources: Hicks & Dresselhaus, Physical Review B 47, 16631 (1993); Stewartson & Waechter, Proc. Cambridge
     Phil. Soc. 69, 353 (1971) for the expansion.
 
@@ -192,7 +195,8 @@ def subband_level(band: WireBand, temperature: ArrayLike, density: ArrayLike, di
     """Fermi level η over the bulk band edge (k_B T) at which the wire holds `density` (1/m³, > 0).
 
     temperature (K), diameter (m); all broadcast. The root of `subband_density` in ln n, between the level of the
-    bulk (a wire never has more states: Pólya) and that of its first subband alone. ValueError for density ≤ 0.
+    bulk (a wire never has more states: Pólya) and that of its first subband alone. ValueError for a density
+    or diameter that is not above 0.
     Source: Hicks & Dresselhaus, Physical Review B 47, 16631 (1993).
 
     >>> from scipy import constants as c
@@ -232,7 +236,8 @@ def subband_integrals(band: WireBand, temperature: ArrayLike, eta: ArrayLike, di
     (ħ/τ below the spacing: else steps are washed out). Up to 900 subbands integrals are good to 1e-5; beyond them
     W goes on as (π/3)(s − a √s), its mean within 0.3 %. The bulk is reached as the wall's share of the section
     falls: at given density σ and S are within 1 % of it from kd = 140, with k the wave number at k_B T over the
-    edge or at the Fermi level (0.3 m_e, 300 K, few carriers: d = 310 nm), and closer as 1/d.
+    edge or at the Fermi level (0.3 m_e, 300 K, few carriers: d = 310 nm), and closer as 1/d. ValueError for a
+    level η that is not finite or a diameter that is not above 0.
     Source: Hicks & Dresselhaus, Physical Review B 47, 16631 (1993) for the subbands; Lee & Vassell, Journal of
     Physics C 17, 2525 (1984) for scattering between those of a wire.
 
@@ -244,6 +249,8 @@ def subband_integrals(band: WireBand, temperature: ArrayLike, eta: ArrayLike, di
     True
     """
     t, level, d = np.broadcast_arrays(*(np.asarray(a, dtype=float) for a in (temperature, eta, diameter)))
+    if not np.all(np.isfinite(level)):
+        raise ValueError("η must be finite")
     kt = K_B * t
     unit = confinement_energy(d, band.across_mass)
     ratio = unit / kt
