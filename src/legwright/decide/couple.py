@@ -155,7 +155,8 @@ def rank_with(brief: Brief, path: str | Path, partner: Candidate, workers: int =
         leg = Segments((_material(brief, row.candidate, *_design_of(row)),))
         best, _ = _exact([leg, beside] if wanted == "n" else [beside, leg], duty)
         flags = ordered([*row.flags, "score-of-couple", *(() if best else ("duty-out-of-reach",))])
-        return replace(row, score=_shown(best, duty), flags=flags)
+        shown = _shown(best, duty)
+        return replace(row, score=shown, score_as_designed=shown, flags=flags)
 
     rows = [of_couple(row) for row in rank(brief.model_copy(update={"candidates": use}), path, workers)]
     rows.sort(key=lambda row: (-row.score, row.candidate.name))

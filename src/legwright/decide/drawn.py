@@ -31,8 +31,10 @@ _LAW_NODES, _DOPING_STEP, _SIZE_STEP, _FEWEST = 8, 0.3, 0.35, 7
 _PREFACTOR_REACH = 1.4
 #: draws worked on together, always so many: the bits of a draw do not depend on how many are asked
 _TOGETHER = 64
+#: a parabola through three scores of coarse material is trusted so many nodes out
+_LEAP = 3.0
 #: a quadratic is laid through 3 × 3 scores so far apart in ln doping and ln size, and trusted so many steps out
-_APART, _TRUSTED, _LOOKS = np.array([0.25, 0.35]), 1.5, 4
+_APART, _TRUSTED, _LOOKS = np.array([0.25, 0.35]), 1.5, 8
 
 
 @dataclass(frozen=True)
@@ -59,7 +61,9 @@ def drawn(brief: Brief, row: Row, count: int, seed: int) -> Drawn:
     candidate = row.candidate
     maps = LawMaps.of(brief, candidate)
     normals = own_normals(candidate, count, seed)
-    factors = normals @ own_spread(candidate, maps.temperature, row.doping, row.size, row.shape).T
+    factors = (
+        normals @ own_spread(candidate, maps.temperature, row.doping, row.size, row.shape, maps.duty.felt_length).T
+    )
     laws = laws_for(candidate, count, seed)
     design = np.log([row.doping, row.size])
     places = np.arange(-(-count // _TOGETHER) * _TOGETHER).reshape(-1, _TOGETHER) % count
@@ -216,22 +220,34 @@ class Held:
         mobility, thermopower, phonons = (f.reshape(-1, 1, 1) for f in self.factors.T)
         sigma, seebeck, electronic, lattice = maps.coarse
         sigma, seebeck = sigma + mobility, seebeck * np.exp(thermopower)
-        heat = np.exp(electronic + mobility) + np.exp(lattice + phonons)
-        rough = rough_score(maps.duty, seebeck, sigma, heat)
-        centre = np.clip(np.argmax(rough, axis=1), 1, maps.log_doping.size - 2)
+        log_heat = np.logaddexp(electronic + mobility, lattice + phonons)
+        rough = rough_score(maps.duty, seebeck, sigma, np.exp(log_heat))
 
-        def scores(log_doping: Array) -> Array:
+        def scores(some: NDArray[np.intp], log_doping: Array) -> Array:
             weights = np.swapaxes(_lagrange_weights(maps.log_doping, log_doping), 1, 2)
-            found = (sigma @ weights, seebeck @ weights, np.exp(np.log(heat) @ weights))
+            found = (sigma[some] @ weights, seebeck[some] @ weights, np.exp(log_heat[some] @ weights))
             return _scored(maps, *(part[..., None] for part in found))[..., 0]
 
-        step = maps.log_doping[1] - maps.log_doping[0]
-        at = maps.log_doping[centre]
-        three = scores(at[:, None] + step * np.array([-1.0, 0.0, 1.0]))
-        bend = three[:, 0] - 2 * three[:, 1] + three[:, 2]
-        moved = 0.5 * (three[:, 0] - three[:, 2]) / np.where(bend < 0, bend, -np.inf)
-        there = np.clip(at + step * np.clip(moved, -1, 1), maps.log_doping[0], maps.log_doping[-1])
-        return np.asarray(np.maximum(np.max(three, axis=1), scores(there[:, None])[:, 0]))
+        low, high = maps.log_doping[[0, -1]]
+        step = maps.log_doping[1] - low
+        where = maps.log_doping[np.argmax(rough, axis=1)]
+        best, looking = np.full(len(where), -1.0), np.arange(len(where))
+        for _ in range(_LOOKS):
+            around = np.clip(where[looking], low + step, high - step)[:, None] + step * np.array([-1.0, 0.0, 1.0])
+            three = scores(looking, around)
+            slope, bend = 0.5 * (three[:, 2] - three[:, 0]), three[:, 0] - 2 * three[:, 1] + three[:, 2]
+            uphill = np.where(bend < 0, -slope / np.where(bend < 0, bend, 1.0), _LEAP * np.sign(slope))
+            moved = np.clip(uphill, -_LEAP, _LEAP)
+            there = np.clip(around[:, 1:2] + step * moved[:, None], low, high)
+            values, spots = np.hstack([three, scores(looking, there)]), np.hstack([around, there])
+            top = np.argmax(values, axis=1)[:, None]
+            value, spot = (np.take_along_axis(part, top, axis=1)[:, 0] for part in (values, spots))
+            gained = value > best[looking]
+            best[looking[gained]], where[looking[gained]] = value[gained], spot[gained]
+            looking = looking[gained & (np.abs(moved) > 1)]
+            if looking.size == 0:
+                break
+        return best
 
     def _at(self, some: NDArray[np.intp], log_doping: Array, log_size: Array) -> tuple[Array, ...]:
         down = _lagrange_weights(self.maps.log_doping, log_doping)[:, None]

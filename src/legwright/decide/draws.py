@@ -117,7 +117,9 @@ def own_normals(candidate: Candidate, count: int, seed: int) -> Array:
     return np.asarray(ndtri(net[rng.permutation(count)]))
 
 
-def own_spread(candidate: Candidate, temperature: Array, doping: float, size: float, shape: str) -> Array:
+def own_spread(
+    candidate: Candidate, temperature: Array, doping: float, size: float, shape: str, length: float = np.inf
+) -> Array:
     """What turns a candidate's normals into ln factors on mobility, S and κ_L: a matrix of (3, 6).
 
     The anchors' spreads and the model's discrepancy are independent of one another, so the matrix is two diagonal
@@ -129,19 +131,21 @@ def own_spread(candidate: Candidate, temperature: Array, doping: float, size: fl
     known = (
         np.diag(anchor_spreads(candidate))
         if candidate.data.fitted is None
-        else _fitted_spread(candidate, temperature, doping, size, shape)
+        else _fitted_spread(candidate, temperature, doping, size, shape, length)
     )
     return np.hstack([known, np.diag(missed)])
 
 
-def _fitted_spread(candidate: Candidate, temperature: Array, doping: float, size: float, shape: str) -> Array:
+def _fitted_spread(
+    candidate: Candidate, temperature: Array, doping: float, size: float, shape: str, length: float
+) -> Array:
     """A lower triangle L with L Lᵀ the covariance of ln mobility, ln S and ln κ_L that the fit left."""
     fitted = candidate.data.fitted
     assert fitted is not None
     one = crystal(candidate)
 
     def logs(moved: Crystal) -> Array:
-        made = evaluate_crystal(moved, temperature, doping, size, shape)
+        made = evaluate_crystal(moved, temperature, doping, size, shape, length)
         three = (made.electrical_conductivity, np.abs(made.seebeck), made.lattice_thermal_conductivity)
         return np.array([np.mean(np.log(values)) for values in three])
 

@@ -67,8 +67,8 @@ def grain_suppression(mean_free_path: ArrayLike, size: ArrayLike, reflection: Ar
 def diffuse_walls(shape: str) -> Callable[[ArrayLike], Array]:
     """`wire_suppression` or `film_suppression` with diffuse walls, as a function of mean free path over size.
 
-    Path over size and what is left of the conductivity are dimensionless, of one shape. ValueError for a `shape` that
-    is neither 'wire' nor 'film'.
+    Path over size and what is left of the conductivity are dimensionless, of one shape. ValueError for a `shape`
+    that is neither 'wire' nor 'film'.
     Sources: Dingle, Proceedings of the Royal Society A 201, 545 (1950); Fuchs, Proceedings of the Cambridge
     Philosophical Society 34, 100 (1938).
 

@@ -548,8 +548,8 @@ def held_back(mean_free_path: Array, size: Array, shape: str, reflection: float)
     """Conductivity over that of unbounded material for each mean_free_path (m): grains, a wire or a film, 0 … 1.
 
     F(Λ/d) of `grain_suppression` with reflection R, or of a wire or film with diffuse walls, by `shape`; `size` (m,
-    may be inf) carries a last axis for the paths' own. ValueError for another shape, a reflection outside [0, 1), or
-    a path over size below 0 in a wire or film.
+    may be inf) carries a last axis for the paths' own. ValueError for another shape, a reflection outside [0, 1),
+    or a path over size below 0 in a wire or film.
     Sources: Mayadas & Shatzkes, Physical Review B 1, 1382 (1970); Dingle, Proceedings of the Royal Society A 201,
     545 (1950); Fuchs, Proceedings of the Cambridge Philosophical Society 34, 100 (1938).
 
