@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -10,7 +10,6 @@ from numpy.typing import NDArray
 from scipy.special import ndtri
 from scipy.stats import qmc
 
-from legwright.base.units import PER_CM3
 from legwright.candidate.library import Candidate
 from legwright.candidate.model import Anchor
 from legwright.candidate.number import Measure
@@ -33,6 +32,7 @@ _OWN = 16
 _BEYOND = 2.0
 #: step of a derivative, in standard deviations: small against the bend of any of these curves
 _STEP = 0.25
+_AS_IS = np.ones(3)
 
 
 def aim_name(aim: Aim) -> str:
@@ -67,11 +67,20 @@ def size_curve(
 
     low = high = None
     if draws:
-        low, high = np.quantile(_drawn(candidate, one, aim, doping, sizes, shape, draws, seed), (0.05, 0.95), axis=0)
-    ends: list[Array | None] = [None, None]
+        low, high = np.quantile(
+            _drawn(candidate, one, aim, doping, sizes, shape, draws, seed), (0.05, 0.95), axis=0
+        )
+    grey = by_wavelength = None
     if shape == "grain":
-        ends = [curve(replace(one, phonons=replace(one.phonons, grain_exponent=s))) for s in (0.0, 1.0)]
-    return SizeCurve(sizes, curve(one), low, high, *ends, float(curve(one, np.array([np.inf]))[0]))
+        grey, by_wavelength = (
+            curve(replace(one, phonons=replace(one.phonons, grain_exponent=s))) for s in (0.0, 1.0)
+        )
+    return SizeCurve(sizes, curve(one), low, high, grey, by_wavelength, float(curve(one, np.array([np.inf]))[0]))
+
+
+def worth_of(candidate: Candidate, aim: Aim, doping: float, size: float, shape: str) -> float:
+    """The aim's figure at one design (1/m³, m)."""
+    return float(_worth(candidate, aim, _over(crystal(candidate), aim, doping, size, shape)))
 
 
 @dataclass(frozen=True)
@@ -94,9 +103,13 @@ def surface(candidate: Candidate, aim: Aim, limits: tuple[float, float], shape: 
 
 @dataclass(frozen=True)
 class Lean:
-    """How the worth of a design moves when one assumption moves up by its standard deviation."""
+    """How the worth of a design moves when one assumption moves up by its standard deviation.
+
+    doping: of the sample that an anchor was measured on, 1/m³; None where there is none.
+    """
 
     name: str
+    doping: float | None
     source: str
     change: float
 
@@ -107,21 +120,26 @@ def leans(candidate: Candidate, aim: Aim, doping: float, size: float, shape: str
     At one design (1/m³, m), by central differences; prefactors are solved anew for each anchor. Largest first.
     """
 
-    def worth(of: Crystal, factors: tuple[float, float, float] = (1.0, 1.0, 1.0)) -> float:
+    def worth(of: Crystal, factors: Array = _AS_IS) -> float:
         return float(_worth(candidate, aim, _over(of, aim, doping, size, shape), factors))
 
     def slope(up: float, down: float) -> float:
         return (up - down) / (2 * _STEP)
 
     found = [
-        Lean(_anchor_name(anchor), anchor.measured.source, slope(*(worth(crystal(moved)) for moved in both)))
+        Lean(*_anchor_name(anchor), anchor.measured.source, slope(*(worth(crystal(moved)) for moved in both)))
         for anchor, both in _moved_anchors(candidate)
     ]
     one, priors = crystal(candidate), load_priors()
     own = candidate.data.scattering.grain_reflection or priors.reflection.electrons
     if shape == "grain":
         found += [
-            Lean(f"grain law, {name}", number.source, slope(*(worth(_law(one, name, number, s)) for s in (1, -1))))
+            Lean(
+                f"grain law, {name}",
+                None,
+                number.source,
+                slope(*(worth(_law(one, name, number, s)) for s in (1, -1))),
+            )
             for name, number in (
                 ("exponent", priors.grain_law.exponent),
                 ("prefactor", priors.grain_law.prefactor),
@@ -129,11 +147,8 @@ def leans(candidate: Candidate, aim: Aim, doping: float, size: float, shape: str
             )
         ]
     for k, (name, number) in enumerate(_missed()):
-        ends = [
-            worth(one, (*(float(np.exp(s * _STEP * number.si)) if i == k else 1.0 for i in range(3)),))
-            for s in (1, -1)
-        ]
-        found.append(Lean(f"model, {name}", number.source, slope(*ends)))
+        up, down = (np.exp(sign * _STEP * number.si * np.eye(3)[k]) for sign in (1, -1))
+        found.append(Lean(f"model, {name}", None, number.source, slope(worth(one, up), worth(one, down))))
     return sorted(found, key=lambda one: -abs(one.change))
 
 
@@ -148,7 +163,7 @@ def _worth(
     candidate: Candidate,
     aim: Aim,
     made: Properties,
-    factors: tuple[Array | float, Array | float, Array | float] = (1.0, 1.0, 1.0),
+    factors: Sequence[Array] | Array = _AS_IS,
 ) -> Array:
     """The aim's figure with mobility, S and κ_L off by factors that broadcast after temperature and design."""
     mobility, thermopower, lattice = factors
@@ -177,7 +192,7 @@ def _drawn(
                 candidate,
                 aim,
                 _over(law, aim, doping, sizes[None, :], shape),
-                (factors[0, k, :, None], factors[1, k, :, None], factors[2, k, :, None]),
+                factors[:, k, :, None],
             )
             for k, law in enumerate(with_each_law(candidate, one, laws, seed))
         ]
@@ -204,9 +219,12 @@ def _law(one: Crystal, name: str, number: Measure, sign: int) -> Crystal:
     return replace(one, electrons=replace(one.electrons, reflection=min(number.si * factor, 0.95)))
 
 
-def _anchor_name(anchor: Anchor) -> str:
-    doped = "" if anchor.doping is None else f", {anchor.doping.si / PER_CM3:.2g} cm⁻³"
-    return f"{anchor.quantity.replace('_', ' ')}, {anchor.temperature.si:.0f} K{doped}"
+def _anchor_name(anchor: Anchor) -> tuple[str, float | None]:
+    doping = None if anchor.doping is None else anchor.doping.si
+    return f"{_ANCHORED[anchor.quantity]}, {anchor.temperature.si:.0f} K", doping
+
+
+_ANCHORED = {"mobility": "mobility", "seebeck": "Seebeck coefficient", "lattice_conductivity": "lattice conductivity"}
 
 
 def _moved_anchors(candidate: Candidate) -> Iterator[tuple[Anchor, tuple[Candidate, Candidate]]]:
