@@ -224,7 +224,11 @@ def _anchor_name(anchor: Anchor) -> tuple[str, float | None]:
     return f"{_ANCHORED[anchor.quantity]}, {anchor.temperature.si:.0f} K", doping
 
 
-_ANCHORED = {"mobility": "mobility", "seebeck": "Seebeck coefficient", "lattice_conductivity": "lattice conductivity"}
+_ANCHORED = {
+    "mobility": "mobility",
+    "seebeck": "Seebeck coefficient",
+    "lattice_conductivity": "lattice conductivity",
+}
 
 
 def _moved_anchors(candidate: Candidate) -> Iterator[tuple[Anchor, tuple[Candidate, Candidate]]]:

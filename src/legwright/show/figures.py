@@ -267,9 +267,9 @@ def design_map(record: Record) -> Picture:
     bar.update_ticks()
     star = Line2D([], [], marker="*", ms=11, mfc="white", mec=BLACK, ls="")
     hatched = Patch(facecolor="#888888", edgecolor="white", hatch="////")
-    sheet.legend(2, [star, hatched], ["best design", "not known to be made"])
+    sheet.legend(2, [star, hatched], ["this design", "not known to be made"])
     makeable = f"Made so far: from {figure(smallest)} nm and {_density(low)} to {_density(high)}."
-    alt = f"{title}. Best makeable {worth.said(record['value'])} at {figure(record['size_nm'])} nm and "
+    alt = f"{title}. The star: {worth.said(record['value'])} at {figure(record['size_nm'])} nm and "
     alt += f"{_density(record['doping_per_cm3'])}. Lines at 50 (dotted), 80 (dashed) and 95 % (solid) of it. "
     alt += makeable
     return Picture(sheet.figure, title, alt)
@@ -476,7 +476,9 @@ class _Sheet:
         )
 
 
-def _blank(title: str, height: float, legend_rows: int, panels: int = 1, left: float = _LEFT, right: float = _RIGHT) -> _Sheet:
+def _blank(
+    title: str, height: float, legend_rows: int, panels: int = 1, left: float = _LEFT, right: float = _RIGHT
+) -> _Sheet:
     """A sheet with its title and room for a legend under it; `height` of the axes and margins in inches."""
     lines = textwrap.wrap(title, 56)
     top = _LINE * (len(lines) + legend_rows) + 0.24
