@@ -174,6 +174,8 @@ def size_record(at: Design, draws: int, seed: int) -> Record:
 def temperature_record(candidate: Candidate, at: Design | None) -> Record:
     """Coarse samples with the model at each one's doping, and the model at a design."""
     found = sorted(bulk_samples(candidate), key=lambda one: -len(one.points))
+    if not found and at is None:
+        raise InputError(f"nothing published is shipped for {candidate.name}; give a design or a brief")
     content: Record = {
         "kind": "temperature",
         "candidate": candidate.name,

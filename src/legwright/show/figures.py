@@ -110,7 +110,7 @@ def as_png(drawn: Picture) -> bytes:
 
 def against_size(record: Record) -> Picture:
     """(a) Worth against size: window, band of the draws, both ends of the grain law."""
-    curve, worth = record["curve"], _Worth(record["quantity"])
+    curve, worth = record["curve"], Worth(record["quantity"])
     sizes = [row["size_nm"] for row in curve]
     lines: list[tuple[str, str, tuple[str, Any, str]]] = [("as modelled", "value", SERIES[0])]
     if "grey" in curve[0]:
@@ -137,7 +137,7 @@ def against_size(record: Record) -> Picture:
     sheet.legend()
     first, last = record["window_nm"] or (None, None)
     alt = (
-        f"{title}, at {_density(record['doping_per_cm3'])}. Best {worth.said(record['value'])} at "
+        f"{title}, at {density(record['doping_per_cm3'])}. Best {worth.said(record['value'])} at "
         f"{figure(record['size_nm'])} nm; sizes from {figure(first)} to {figure(last)} nm keep 95 % of it; coarse "
         f"material gives {worth.said(record['coarse'])}."
     )
@@ -150,45 +150,42 @@ def against_size(record: Record) -> Picture:
     return Picture(sheet.figure, title, alt)
 
 
-_PANELS = (
-    ("zt", "zT [1]"),
-    ("seebeck_uV_per_K", "S [µV/K]"),
-    ("electrical_conductivity_S_per_cm", "σ [S/cm]"),
-    ("thermal_conductivity_W_per_mK", "κ [W/(m K)]"),
-)
 _LATTICE = "lattice_thermal_conductivity_W_per_mK"
+_PANELS = (
+    ("zT [1]", ("zt",)),
+    ("S [µV/K]", ("seebeck_uV_per_K",)),
+    ("σ [S/cm]", ("electrical_conductivity_S_per_cm",)),
+    ("κ [W/(m K)]", ("thermal_conductivity_W_per_mK", _LATTICE)),
+)
+#: a quantity that spans more than this factor gets a logarithmic axis
+_WIDE = 50.0
 
 
 def against_temperature(record: Record) -> Picture:
     """(b) zT, S, σ, κ against temperature: published coarse samples, each with the model at its doping."""
     title = f"{record['candidate']}: model and published coarse samples"
     series = [*record["samples"], *([record["design"]] if record.get("design") else [])]
-    sheet = _blank(title, 3.9, legend_rows=len(series) + 2, panels=2)
-    panels = sheet.panels
+    sheet = _blank(title, 3.9, legend_rows=len(series) + 3, panels=2)
     handles = []
     for place, each in enumerate(series):
         design = "size_nm" in each
         colour, dash, marker = (BLACK, "-", "") if design else SERIES[place % len(SERIES)]
         width = 2.2 if design else 1.2
-        for axes, (key, _) in zip(panels, _PANELS, strict=True):
-            kelvin = [row["temperature_K"] for row in each["curve"]]
-            axes.plot(
-                kelvin, [row[key] for row in each["curve"]], color=colour, ls=dash, lw=width, gid=f"line {key}"
-            )
-            shown = ((key, marker), (_LATTICE, "v")) if key == _PANELS[3][0] else ((key, marker),)
-            for quantity, mark in shown:
-                _points(axes, [p for p in each["points"] if p["quantity"] == quantity], colour, mark)
-        lattice = [row[_LATTICE] for row in each["curve"]]
-        panels[3].plot(kelvin, lattice, color=colour, ls=dash, lw=0.6, gid="line lattice")
+        for axes, (_, quantities) in zip(sheet.panels, _PANELS, strict=True):
+            for key in quantities:
+                points = [point for point in each["points"] if point["quantity"] == key]
+                if points or design:
+                    thin = 0.6 if key == _LATTICE else width
+                    rows = [(row["temperature_K"], row[key]) for row in each["curve"]]
+                    axes.plot(*zip(*rows, strict=True), color=colour, ls=dash, lw=thin, gid=f"line {key}")
+                    _points(axes, points, colour, "v" if key == _LATTICE else marker)
         handles.append(Line2D([], [], color=colour, ls=dash, lw=width, marker=marker))
     labels = [_sample_label(each) for each in series]
-    for axes, (_, label) in zip(panels, _PANELS, strict=True):
+    for axes, (label, _) in zip(sheet.panels, _PANELS, strict=True):
         axes.set_title(label, loc="left")
         axes.xaxis.set_major_locator(MaxNLocator(4))
-        axes.yaxis.set_major_locator(MaxNLocator(5))
-    for axes in (panels[0], panels[2], panels[3]):
-        axes.set_ylim(bottom=0)
-    for axes in panels[2:]:
+        _fit_scale(axes, label[0])
+    for axes in sheet.panels[2:]:
         axes.set_xlabel("temperature [K]")
     both = [
         Line2D([], [], color=QUIET, ls="", marker="o"),
@@ -209,6 +206,18 @@ def against_temperature(record: Record) -> Picture:
     return Picture(sheet.figure, title, alt.strip())
 
 
+def _fit_scale(axes: Axes, symbol: str) -> None:
+    """From zero; a conductivity that spans much on a logarithmic axis; S, which has a sign, as it comes."""
+    values = np.abs(np.concatenate([line.get_ydata() for line in axes.lines] or [np.ones(1)]))
+    if symbol in "σκ" and np.min(values) > 0 and np.max(values) > _WIDE * np.min(values):
+        axes.set_yscale("log")
+        _log_ticks(axes, "y")
+        return
+    axes.yaxis.set_major_locator(MaxNLocator(5))
+    if symbol != "S":
+        axes.set_ylim(bottom=0)
+
+
 def _points(axes: Axes, points: Sequence[Record], colour: str, marker: str) -> None:
     for fitted in (True, False):
         chosen = [point for point in points if point["fitted"] == fitted]
@@ -220,8 +229,8 @@ def _points(axes: Axes, points: Sequence[Record], colour: str, marker: str) -> N
 
 def _sample_label(each: Record) -> str:
     if "size_nm" in each:
-        return f"this design, {_size(each['size_nm'])}, {_density(each['doping_per_cm3'])}"
-    return f"{textwrap.shorten(each['name'], 30, placeholder='…')}, {_density(each['doping_per_cm3'])}"
+        return f"this design, {_size(each['size_nm'])}, {density(each['doping_per_cm3'])}"
+    return f"{textwrap.shorten(each['name'], 30, placeholder='…')}, {density(each['doping_per_cm3'])}"
 
 
 def _deviations(each: Record) -> str:
@@ -236,9 +245,9 @@ def _deviations(each: Record) -> str:
 
 def design_map(record: Record) -> Picture:
     """(c) Worth over size and doping: the best design, and where nobody is known to make it."""
-    worth = _Worth(record["quantity"])
+    worth = Worth(record["quantity"])
     title = f"{record['candidate']}: {worth.word} over {record['shape']} size and doping, {record['where']}"
-    sheet = _blank(title, 2.9, legend_rows=1, right=0.45)
+    sheet = _blank(title, 2.9, legend_rows=1, right=0.52)
     axes = sheet.axes
     sizes, dopings = np.array(record["sizes_nm"]), np.array(record["dopings_per_cm3"])
     values = np.array([[worth.shown(value) for value in row] for row in record["values"]])
@@ -268,9 +277,9 @@ def design_map(record: Record) -> Picture:
     star = Line2D([], [], marker="*", ms=11, mfc="white", mec=BLACK, ls="")
     hatched = Patch(facecolor="#888888", edgecolor="white", hatch="////")
     sheet.legend(2, [star, hatched], ["this design", "not known to be made"])
-    makeable = f"Made so far: from {figure(smallest)} nm and {_density(low)} to {_density(high)}."
+    makeable = f"Made so far: from {figure(smallest)} nm and {density(low)} to {density(high)}."
     alt = f"{title}. The star: {worth.said(record['value'])} at {figure(record['size_nm'])} nm and "
-    alt += f"{_density(record['doping_per_cm3'])}. Lines at 50 (dotted), 80 (dashed) and 95 % (solid) of it. "
+    alt += f"{density(record['doping_per_cm3'])}. Lines at 50 (dotted), 80 (dashed) and 95 % (solid) of it. "
     alt += makeable
     return Picture(sheet.figure, title, alt)
 
@@ -297,9 +306,9 @@ def free_paths(record: Record) -> Picture:
     sheet.legend()
     halves = [_half_path(rows, key) for key in ("electrons_within", "phonons_within")]
     alt = (
-        f"{title}, at {_density(record['doping_per_cm3'])}. Half of the charge is carried on free paths below "
-        f"{figure(halves[0], 2)} nm, half of the lattice heat below {figure(halves[1], 2)} nm; the "
-        f"{record['shape']} size is {_size(record['size_nm'])}."
+        f"{title}, at {density(record['doping_per_cm3'])}. Half of the charge is carried on free paths below "
+        f"{figure(halves[0], 2)} nm, half of the lattice heat below {figure(halves[1], 2)} nm. "
+        f"The design: {record['shape']}, {_size(record['size_nm'])}."
     )
     return Picture(sheet.figure, title, alt)
 
@@ -311,7 +320,7 @@ def _half_path(rows: Sequence[Record], key: str) -> float:
 def ranking(record: Record) -> Picture:
     """(e) The candidates that can serve, best on top, with the interval of the draws where there is one."""
     rows = [row for row in record["rows"] if row["score"]]
-    worth = _Worth(rows[0]["score_name"])
+    worth = Worth(rows[0]["score_name"])
     drawn_too = "score_low" in rows[0]
     title = f"{record['title']}: {worth.word} of the candidates"
     sheet = _blank(title, 0.19 * len(rows) + 0.2, legend_rows=1, left=1.12)
@@ -369,13 +378,13 @@ def shares(record: Record) -> Picture:
     return Picture(
         sheet.figure,
         title,
-        f"{title}, {record['shape']} size {size}, {_density(record['doping_per_cm3'])}. {said}.",
+        f"{title}, {record['shape']} size {size}, {density(record['doping_per_cm3'])}. {said}.",
     )
 
 
 def sensitivity(record: Record) -> Picture:
     """(g) How the worth of a design moves with each assumption, moved by one standard deviation."""
-    worth = _Worth(record["quantity"])
+    worth = Worth(record["quantity"])
     rows = record["leans"][:_MOST_LEANS]
     title = f"{record['candidate']}: what its {worth.word} leans on, {record['where']}"
     sheet = _blank(title, 0.2 * len(rows) + 0.2, legend_rows=1, left=2.62)
@@ -408,7 +417,7 @@ def sensitivity(record: Record) -> Picture:
 
 
 def _lean_name(row: Record) -> str:
-    return row["name"] if row["doping_per_cm3"] is None else f"{row['name']}, {_density(row['doping_per_cm3'])}"
+    return row["name"] if row["doping_per_cm3"] is None else f"{row['name']}, {density(row['doping_per_cm3'])}"
 
 
 _MOST_LEANS = 12
@@ -424,7 +433,7 @@ KINDS: dict[str, Callable[[Record], Picture]] = {
 }
 
 
-class _Worth:
+class Worth:
     """A score or zT as it is shown: its word, its label with the unit, and its scale."""
 
     def __init__(self, quantity: str) -> None:
@@ -525,10 +534,10 @@ def _plain(value: float) -> str:
 
 
 def _size(nanometres: float | None) -> str:
-    return "that of coarse material" if nanometres is None else f"{figure(nanometres)} nm"
+    return "coarse" if nanometres is None else f"{figure(nanometres)} nm"
 
 
-def _density(per_cm3: float | None) -> str:
+def density(per_cm3: float | None) -> str:
     if per_cm3 is None:
         return "–"
     return "undoped" if per_cm3 < _COUNTS else f"{_power(float(f'{per_cm3:.2g}'))} cm⁻³"
