@@ -135,20 +135,20 @@ def leans(candidate: Candidate, aim: Aim, doping: float, size: float, shape: str
     if shape == "grain":
         found += [
             Lean(
-                f"grain law, {name}",
+                name,
                 None,
                 number.source,
                 slope(*(worth(_law(one, name, number, s)) for s in (1, -1))),
             )
             for name, number in (
-                ("exponent", priors.grain_law.exponent),
-                ("prefactor", priors.grain_law.prefactor),
-                ("carriers turned back", own),
+                ("grain law's exponent", priors.grain_law.exponent),
+                ("grain law's prefactor", priors.grain_law.prefactor),
+                ("share of carriers turned back", own),
             )
         ]
     for k, (name, number) in enumerate(_missed()):
         up, down = (np.exp(sign * _STEP * number.si * np.eye(3)[k]) for sign in (1, -1))
-        found.append(Lean(f"model, {name}", None, number.source, slope(worth(one, up), worth(one, down))))
+        found.append(Lean(f"model's {name}", None, number.source, slope(worth(one, up), worth(one, down))))
     return sorted(found, key=lambda one: -abs(one.change))
 
 
@@ -211,24 +211,20 @@ def _missed() -> tuple[tuple[str, Measure], ...]:
 def _law(one: Crystal, name: str, number: Measure, sign: int) -> Crystal:
     """The crystal with one of the shared laws moved by a step."""
     step = sign * _STEP
-    if name == "exponent":
+    if "exponent" in name:
         return replace(one, phonons=replace(one.phonons, grain_exponent=number.si + step * number.spread))
     factor = float(np.exp(step * number.relative_spread))
-    if name == "prefactor":
+    if "prefactor" in name:
         return replace(one, phonons=replace(one.phonons, grain_prefactor=number.si * factor))
     return replace(one, electrons=replace(one.electrons, reflection=min(number.si * factor, 0.95)))
 
 
 def _anchor_name(anchor: Anchor) -> tuple[str, float | None]:
     doping = None if anchor.doping is None else anchor.doping.si
-    return f"{_ANCHORED[anchor.quantity]}, {anchor.temperature.si:.0f} K", doping
+    return f"{_ANCHORED[anchor.quantity]} anchor, {anchor.temperature.si:.0f} K", doping
 
 
-_ANCHORED = {
-    "mobility": "mobility",
-    "seebeck": "Seebeck coefficient",
-    "lattice_conductivity": "lattice conductivity",
-}
+_ANCHORED = {"mobility": "mobility", "seebeck": "Seebeck", "lattice_conductivity": "lattice"}
 
 
 def _moved_anchors(candidate: Candidate) -> Iterator[tuple[Anchor, tuple[Candidate, Candidate]]]:

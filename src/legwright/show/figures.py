@@ -74,7 +74,12 @@ class Picture:
 
     figure: Figure
     title: str
-    alt: str
+    says: str
+
+    @property
+    def alt(self) -> str:
+        """Title and words in one."""
+        return f"{self.title}. {self.says}"
 
 
 def picture(record: Record) -> Picture:
@@ -93,7 +98,7 @@ def as_svg(drawn: Picture, name: str) -> str:
     body = re.sub(r'(\bid="|href="#|url\(#)', rf"\g<1>{name}-", body)
     label = f'role="img" aria-labelledby="{name}-title {name}-desc"'
     words = (
-        f'<title id="{name}-title">{escape(drawn.title)}</title><desc id="{name}-desc">{escape(drawn.alt)}</desc>'
+        f'<title id="{name}-title">{escape(drawn.title)}</title><desc id="{name}-desc">{escape(drawn.says)}</desc>'
     )
     opening, rest = body.split(">", 1)
     return f"{opening} {label}>\n {words}{rest}"
@@ -103,7 +108,7 @@ def as_png(drawn: Picture) -> bytes:
     """PNG, twice the size of the screen's points, with what it says in its description."""
     out = io.BytesIO()
     with matplotlib.style.context(["default", _STYLE]):
-        words = {"Software": None, "Title": drawn.title, "Description": drawn.alt}
+        words = {"Software": None, "Title": drawn.title, "Description": drawn.says}
         drawn.figure.savefig(out, format="png", dpi=200, metadata=words)
     return out.getvalue()
 
@@ -137,7 +142,7 @@ def against_size(record: Record) -> Picture:
     sheet.legend()
     first, last = record["window_nm"] or (None, None)
     alt = (
-        f"{title}, at {density(record['doping_per_cm3'])}. Best {worth.said(record['value'])} at "
+        f"At {density(record['doping_per_cm3'])}: best {worth.said(record['value'])} at "
         f"{figure(record['size_nm'])} nm; sizes from {figure(first)} to {figure(last)} nm keep 95 % of it; coarse "
         f"material gives {worth.said(record['coarse'])}."
     )
@@ -197,9 +202,8 @@ def against_temperature(record: Record) -> Picture:
     )
     points = [point for each in series for point in each["points"]]
     fitted = sum(point["fitted"] for point in points)
-    alt = (
-        f"{title}. {len(points)} published figures, {fitted} of which fixed the candidate's prefactors. "
-        + " ".join(f"{_sample_label(each)}: {_deviations(each)}" for each in record["samples"])
+    alt = f"{len(points)} published figures, {fitted} of which fixed the candidate's prefactors. " + " ".join(
+        f"{_sample_label(each)}: {_deviations(each)}" for each in record["samples"]
     )
     if record["left_out"]:
         alt += f" {record['left_out']} samples with fewer figures are left out."
@@ -278,7 +282,7 @@ def design_map(record: Record) -> Picture:
     hatched = Patch(facecolor="#888888", edgecolor="white", hatch="////")
     sheet.legend(2, [star, hatched], ["this design", "not known to be made"])
     makeable = f"Made so far: from {figure(smallest)} nm and {density(low)} to {density(high)}."
-    alt = f"{title}. The star: {worth.said(record['value'])} at {figure(record['size_nm'])} nm and "
+    alt = f"The star: {worth.said(record['value'])} at {figure(record['size_nm'])} nm and "
     alt += f"{density(record['doping_per_cm3'])}. Lines at 50 (dotted), 80 (dashed) and 95 % (solid) of it. "
     alt += makeable
     return Picture(sheet.figure, title, alt)
@@ -306,7 +310,7 @@ def free_paths(record: Record) -> Picture:
     sheet.legend()
     halves = [_half_path(rows, key) for key in ("electrons_within", "phonons_within")]
     alt = (
-        f"{title}, at {density(record['doping_per_cm3'])}. Half of the charge is carried on free paths below "
+        f"At {density(record['doping_per_cm3'])} half of the charge is carried on free paths below "
         f"{figure(halves[0], 2)} nm, half of the lattice heat below {figure(halves[1], 2)} nm. "
         f"The design: {record['shape']}, {_size(record['size_nm'])}."
     )
@@ -343,7 +347,7 @@ def ranking(record: Record) -> Picture:
         + (f" ({worth.said(row['score_low'])} to {worth.said(row['score_high'])})" if drawn_too else "")
         for row in rows[:5]
     ]
-    return Picture(sheet.figure, title, f"{title}, {len(rows)} that can serve. The first: {'; '.join(said)}.")
+    return Picture(sheet.figure, title, f"{len(rows)} can serve. The first: {'; '.join(said)}.")
 
 
 def shares(record: Record) -> Picture:
@@ -378,7 +382,7 @@ def shares(record: Record) -> Picture:
     return Picture(
         sheet.figure,
         title,
-        f"{title}, {record['shape']} size {size}, {density(record['doping_per_cm3'])}. {said}.",
+        f"{record['shape']} size {size}, {density(record['doping_per_cm3'])}. {said}.",
     )
 
 
@@ -412,7 +416,7 @@ def sensitivity(record: Record) -> Picture:
     ]
     sheet.legend(2, patches, ["rises with it", "falls with it"])
     said = "; ".join(f"{_lean_name(row)} {worth.moved(row['change'])}" for row in rows[:6])
-    alt = f"{title}: change for one standard deviation of each assumption at the same design, of "
+    alt = "Change for one standard deviation of each assumption at the same design, of "
     return Picture(sheet.figure, title, f"{alt}{worth.said(record['value'])}. Largest: {said}.")
 
 

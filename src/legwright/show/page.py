@@ -17,6 +17,7 @@ from legwright.candidate.sources import bibliography
 from legwright.decide.brief import Brief
 from legwright.decide.rank import Row
 from legwright.decide.why import TELLING
+from legwright.leg.duty import SCORE_NAMES
 from legwright.show import drawings
 from legwright.show.figures import Worth, as_svg, density, picture
 from legwright.show.records import Record, citations
@@ -86,7 +87,7 @@ def _leading(job: Brief, row: Row) -> Record:
 
 def _duty(job: Brief) -> str:
     duty, size = job.duty, job.size
-    goal = duty.maximise.replace("_", " ")
+    goal = Worth(SCORE_NAMES[duty.maximise]).word
     return (
         f"A {duty.kind} leg between {duty.cold_K:g} and {duty.hot_K:g} K that maximises {goal}; "
         f"{size.shape} sizes from {size.min_nm:g} to {size.max_nm:g} nm."
@@ -141,8 +142,8 @@ def _doubt(rows: Sequence[Record], leans: Record) -> str:
     best, worth = rows[0], Worth(leans["quantity"])
     most = leans["leans"][0]
     doubt = (
-        f"The main doubt: {worth.word} moves by {worth.moved(most['change'])} for one standard deviation of "
-        f"“{most['name']}”"
+        f"The main doubt: {worth.word} moves by {worth.moved(most['change'])} for one standard deviation of the "
+        f"{most['name']}"
     )
     if "win_share" in best:
         doubt += f", and {best['candidate']} wins {100 * best['win_share']:.0f} % of the draws"
@@ -212,7 +213,7 @@ def _sections(job: Brief, rows: Sequence[Record], first: dict[str, Record], lead
 
 def _section(name: str, heading: str, lead: str, records: Iterable[Record]) -> Record:
     pictures = [(f"{name}-{number}", picture(record)) for number, record in enumerate(records, start=1)]
-    figures = [{"svg": Markup(as_svg(drawn, label)), "says": drawn.alt} for label, drawn in pictures]
+    figures = [{"svg": Markup(as_svg(drawn, label)), "says": drawn.says} for label, drawn in pictures]
     return {"id": name, "heading": heading, "lead": lead, "figures": figures}
 
 

@@ -63,5 +63,5 @@ def draw_verb(
     def table() -> None:
         tables.console(markdown).print(drawn.alt, markup=False, soft_wrap=True)
 
-    content = {"file": str(into), "title": drawn.title, "says": drawn.alt, **record}
+    content = {"file": str(into), "title": drawn.title, "says": drawn.says, **record}
     publish("draw", content, drawings.flat_rows(record), as_json, csv_file, table)
