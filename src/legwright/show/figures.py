@@ -95,6 +95,7 @@ def as_svg(drawn: Picture, name: str) -> str:
         drawn.figure.savefig(out, format="svg", metadata={"Date": None, "Creator": None})
     whole = re.sub(r"<metadata>.*?</metadata>\s*", "", out.getvalue(), flags=re.DOTALL)
     body = whole[whole.index("<svg") :]
+    body = body.replace('<g id="', '<g class="')  # names of groups repeat; nothing refers to them
     body = re.sub(r'(\bid="|href="#|url\(#)', rf"\g<1>{name}-", body)
     label = f'role="img" aria-labelledby="{name}-title {name}-desc"'
     words = (

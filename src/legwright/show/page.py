@@ -90,7 +90,7 @@ def _duty(job: Brief) -> str:
     goal = Worth(SCORE_NAMES[duty.maximise]).word
     return (
         f"A {duty.kind} leg between {duty.cold_K:g} and {duty.hot_K:g} K that maximises {goal}; "
-        f"{size.shape} sizes from {size.min_nm:g} to {size.max_nm:g} nm."
+        f"{size.shape} sizes from {size.min_nm:g} to {size.max_nm:g}\u00a0nm."
     )
 
 
