@@ -8,7 +8,7 @@ from typing import Any
 
 import numpy as np
 
-from legwright.base.errors import InputError
+from legwright.base.errors import InputError, NothingFeasible
 from legwright.base.units import MICRO, NM, PER_CM3
 from legwright.candidate.library import Candidate, load_candidate
 from legwright.decide.brief import Brief, load_brief
@@ -131,6 +131,8 @@ def gather(kind: str, subject: str, asked: Asked, draws: int, seed: int) -> Reco
 def _ranked(brief: Path, draws: int, seed: int) -> Record:
     job = load_brief(brief)
     found = rank(job, brief)
+    if not any(row.score for row in found):
+        raise NothingFeasible("no candidate can serve this brief")
     sure = confidences(job, found, draws, seed) if draws else None
     return ranking_record(job.title, [rank_record(row, sure) for row in found])
 
