@@ -102,6 +102,16 @@ def test_script_takes_another_candidate(tmp_path):
     assert done.stdout.startswith("bitese-n at 300 K")
 
 
+def test_the_walk_draws_what_it_ranked(tmp_path):
+    done = script(ROOT / "examples" / "walk.py", str(tmp_path), folder=tmp_path)
+    assert done.returncode == 0, done.stderr
+    best = done.stdout.split()[0]
+    for name in ("ranking", "size"):
+        assert best in (tmp_path / f"{name}.svg").read_text(encoding="utf-8")
+    assert f"The first: 1. {best}" in done.stdout
+    assert f"{best}: power against grain size" in done.stdout
+
+
 @pytest.mark.parametrize("path", OWN, ids=lambda path: path.stem)
 def test_own_candidate_reads_as_demo_data_and_cites_the_file_beside_it(path, legwright):
     said = legwright("candidates", path, "--json")

@@ -63,8 +63,8 @@ def read_text(path: Path, shown: Path | str | None = None) -> str:
         raise InputError(f"is not a path ({error})", file=repr(str(name))) from error
 
 
-def write_whole(path: Path, text: str) -> None:
-    """Write `text` to `path` completely or not at all (temporary name, fsync, replace)."""
+def write_whole(path: Path, content: str | bytes) -> None:
+    """Write text (as UTF-8) or bytes to `path` completely or not at all (temporary name, fsync, replace)."""
     if path.is_dir():
         raise InputError("cannot be written (is a directory)", file=path)
     try:
@@ -72,8 +72,8 @@ def write_whole(path: Path, text: str) -> None:
     except OSError as error:
         raise InputError(f"cannot be written ({error.strerror})", file=path) from error
     try:
-        with os.fdopen(handle, "w", encoding="utf-8", newline="\n") as stream:
-            stream.write(text)
+        with os.fdopen(handle, "wb") as stream:
+            stream.write(content.encode() if isinstance(content, str) else content)
             stream.flush()
             os.fsync(stream.fileno())
         os.replace(temporary, path)

@@ -11,6 +11,7 @@ from legwright.base.errors import InputError, NothingFeasible, nearest
 from legwright.base.version import VERSION
 from legwright.show.verbs.audit import audit_verb
 from legwright.show.verbs.candidates import candidates_verb
+from legwright.show.verbs.draw import draw_verb
 from legwright.show.verbs.fit import fit_verb
 from legwright.show.verbs.leg import leg_verb
 from legwright.show.verbs.measure import measure_verb
@@ -41,6 +42,7 @@ for _verb in (
     peak_verb,
     sheet_verb,
     why_verb,
+    draw_verb,
     candidates_verb,
     search_verb,
     leg_verb,

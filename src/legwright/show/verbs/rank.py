@@ -2,12 +2,20 @@
 
 from __future__ import annotations
 
+import shlex
+from collections.abc import Sequence
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 import click
 
 from legwright.base.errors import InputError, NothingFeasible
 from legwright.show.options import output, publish
+
+if TYPE_CHECKING:
+    from legwright.decide.brief import Brief
+    from legwright.decide.rank import Row
+    from legwright.show.records import Record
 
 
 @click.command("rank")
@@ -20,6 +28,9 @@ from legwright.show.options import output, publish
 @click.option(
     "--trade-offs", is_flag=True, help="Also print the fronts of score against cost, supply, hazard, size."
 )
+@click.option(
+    "--page", type=click.Path(path_type=Path), metavar="FILE", help="Also write one page for the meeting."
+)
 @output
 def rank_verb(
     brief: Path,
@@ -27,6 +38,7 @@ def rank_verb(
     draws: int,
     seed: int,
     trade_offs: bool,
+    page: Path | None,
     as_json: bool,
     csv_file: Path | None,
     markdown: bool,
@@ -63,6 +75,26 @@ def rank_verb(
             out.print(tables.trade_offs_table(rows, fronts, markdown))
         tables.footnotes(out, under["flag_meanings"], under["cautions"])
 
+    if page is not None:
+        _write_page(page, brief, job, found, rows, under, draws, seed)
     publish("rank", content, rows, as_json, csv_file, table)
     if not any(row["score"] for row in rows):
         raise NothingFeasible("no candidate can serve this brief; the flags say why")
+
+
+def _write_page(
+    page: Path,
+    brief: Path,
+    job: Brief,
+    found: Sequence[Row],
+    rows: Sequence[Record],
+    under: Record,
+    draws: int,
+    seed: int,
+) -> None:
+    from legwright.base.files import write_whole
+    from legwright.show.page import meeting_page
+
+    sure = ["--draws", str(draws), "--seed", str(seed)] if draws else []
+    command = shlex.join(["legwright", "rank", str(brief), *sure, "--page", str(page)])
+    write_whole(page, meeting_page(job, brief.read_text(encoding="utf-8-sig"), found, rows, under, command, seed))
