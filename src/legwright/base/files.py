@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import tempfile
+from collections.abc import Callable
 from importlib import resources
 from pathlib import Path
 from typing import Any
@@ -64,7 +65,19 @@ def read_text(path: Path, shown: Path | str | None = None) -> str:
 
 
 def write_whole(path: Path, content: str | bytes) -> None:
-    """Write text (as UTF-8) or bytes to `path` completely or not at all (temporary name, fsync, replace)."""
+    """Write text (as UTF-8) or bytes to `path` completely or not at all."""
+
+    def write(temporary: Path) -> None:
+        temporary.write_bytes(content.encode() if isinstance(content, str) else content)
+
+    write_by(path, write)
+
+
+def write_by(path: Path, write: Callable[[Path], None]) -> None:
+    """Let `write` fill a file of a temporary name; it takes the place of `path` when it is whole and on the disk.
+
+    InputError where it cannot be written; whatever ends `write`, no other file is left.
+    """
     if path.is_dir():
         raise InputError("cannot be written (is a directory)", file=path)
     try:
@@ -72,11 +85,13 @@ def write_whole(path: Path, content: str | bytes) -> None:
     except OSError as error:
         raise InputError(f"cannot be written ({error.strerror})", file=path) from error
     try:
-        with os.fdopen(handle, "wb") as stream:
-            stream.write(content.encode() if isinstance(content, str) else content)
-            stream.flush()
-            os.fsync(stream.fileno())
+        with os.fdopen(handle, "rb") as kept:
+            write(Path(temporary))
+            os.fsync(kept.fileno())
         os.replace(temporary, path)
     except OSError as error:
         os.unlink(temporary)
         raise InputError(f"cannot be written ({error.strerror})", file=path) from error
+    except BaseException:
+        os.unlink(temporary)
+        raise

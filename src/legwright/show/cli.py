@@ -17,6 +17,7 @@ from legwright.show.verbs.leg import leg_verb
 from legwright.show.verbs.measure import measure_verb
 from legwright.show.verbs.peak import peak_verb
 from legwright.show.verbs.rank import rank_verb
+from legwright.show.verbs.screen import screen_verb
 from legwright.show.verbs.search import search_verb
 from legwright.show.verbs.sheet import sheet_verb
 from legwright.show.verbs.why import why_verb
@@ -45,6 +46,7 @@ for _verb in (
     draw_verb,
     candidates_verb,
     search_verb,
+    screen_verb,
     leg_verb,
     measure_verb,
     fit_verb,

@@ -246,6 +246,31 @@ def families_table(rows: Sequence[Record], markdown: bool) -> Layout:
     return draw("Alloy lines", columns, cells, markdown)
 
 
+def screen_table(found: Record, markdown: bool) -> Layout:
+    """The best of a screening."""
+    rows = found["rows"]
+    columns = (
+        "candidate",
+        SCORE_TITLES[rows[0]["score_name"]] if rows else "score",
+        "size [nm]",
+        "doping [cm⁻³]",
+        "formula",
+    )
+    cells = (
+        (
+            row["candidate"],
+            figure(row["score"]),
+            figure(row["size_nm"]),
+            figure(row["doping_per_cm3"]),
+            row["formula"],
+        )
+        for row in rows
+    )
+    return draw(
+        f"{found['title']}: best of {found['done']} screened, of {found['asked']}", columns, cells, markdown
+    )
+
+
 def search_table(found: Record, markdown: bool) -> Layout:
     """The best design, and what certifies it."""
     pairs = [
