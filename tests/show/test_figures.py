@@ -5,6 +5,7 @@ import re
 import xml.etree.ElementTree as ET
 from dataclasses import replace
 from itertools import combinations
+from pathlib import Path
 
 import numpy as np
 import pytest
@@ -12,6 +13,7 @@ from matplotlib.colors import to_hex, to_rgb
 from PIL import Image
 
 from legwright.candidate.library import load_candidate
+from legwright.candidate.priors import load_priors
 from legwright.decide.score import score
 from legwright.physics.crystal import crystal
 from legwright.physics.properties import evaluate, evaluate_crystal
@@ -180,8 +182,6 @@ def test_sensitivity_shows_derivative_times_spread(at_temperature):
     change = {row["name"]: row["change"] for row in made["leans"]}
     here = evaluate(at_temperature.candidate, 900.0, 1e26, 50e-9)
     zt, share = float(here.zt), float(here.lattice_thermal_conductivity / here.thermal_conductivity)
-    from legwright.candidate.priors import load_priors
-
     model = load_priors().discrepancy
     expected = {
         "model's Seebeck coefficient": 2 * zt * model.seebeck.si,
@@ -196,6 +196,18 @@ def test_sensitivity_shows_derivative_times_spread(at_temperature):
     drawn = figures.picture(made)
     bars = [bar.get_width() * (1 if bar.get_gid() == "rises" else -1) for bar in drawn.figure.axes[0].patches]
     np.testing.assert_allclose(bars, [row["change"] for row in made["leans"]][: len(bars)])
+
+
+def test_the_recipe_for_a_new_figure_works():
+    """The function in DEVELOPERS.md, as it stands there."""
+    text = (Path(__file__).resolve().parents[2] / "DEVELOPERS.md").read_text(encoding="utf-8")
+    (body,) = re.findall(r"^\+(def lorenz.*?)^ KINDS", text, re.DOTALL | re.MULTILINE)
+    names = dict(vars(figures))
+    exec(body.replace("\n+", "\n"), names)
+    curve = [{"temperature_K": 300.0, "lorenz": 2.44}, {"temperature_K": 400.0, "lorenz": 2.0}]
+    drawn = names["lorenz"]({"candidate": "aa-n", "curve": curve})
+    assert y(drawn, "lorenz").tolist() == [2.44, 2.0]
+    assert drawn.says == "From 2 to 2.44."
 
 
 # labels, words, bytes

@@ -35,7 +35,7 @@ def made() -> dict[str, str]:
     }
     pictures = {name: figures.as_svg(figures.picture(record), name) for name, record in drawn.items()}
     lines = [records.rank_record(row) for row in rows if row.score]
-    out = Console(record=True, width=150, file=StringIO())
+    out = Console(record=True, width=120, file=StringIO())
     out.print(tables.rank_table(job.title, lines, markdown=False))
     return {"table": out.export_svg(title="legwright rank", unique_id="table", code_format=_alone()), **pictures}
 

@@ -7,14 +7,12 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.special import ndtri
-from scipy.stats import qmc
 
 from legwright.candidate.library import Candidate
 from legwright.candidate.model import Anchor
 from legwright.candidate.number import Measure
 from legwright.candidate.priors import load_priors
-from legwright.decide.draws import anchor_spreads, with_each_law
+from legwright.decide.draws import MOST_REFLECTED, own_normals, own_spread, rounded, with_each_law
 from legwright.decide.score import span_nodes
 from legwright.leg.balance import LegMaterial
 from legwright.leg.duty import SCORE_NAMES, Duty, best_score
@@ -26,8 +24,6 @@ Array = NDArray[np.float64]
 Aim = Duty | float
 
 _NODES, _ROUNDS, _SIZES, _MAP = 9, 4, 65, (33, 41)
-#: draws of what is a candidate's own under each draw of the shared laws
-_OWN = 16
 #: how far beyond the known dopings a map looks, to show where they end
 _BEYOND = 2.0
 #: step of a derivative, in standard deviations: small against the bend of any of these curves
@@ -59,7 +55,7 @@ class SizeCurve:
 def size_curve(
     candidate: Candidate, aim: Aim, doping: float, limits: tuple[float, float], shape: str, draws: int, seed: int
 ) -> SizeCurve:
-    """The curve over sizes (m) between the limits; doping in 1/m³. `draws` is rounded up to whole sets."""
+    """The curve over sizes (m) between the limits; doping in 1/m³. `draws` is rounded up to a power of two."""
     one, sizes = crystal(candidate), np.geomspace(*limits, _SIZES)
 
     def curve(of: Crystal, at: Array = sizes) -> Array:
@@ -154,9 +150,13 @@ def leans(candidate: Candidate, aim: Aim, doping: float, size: float, shape: str
 
 def _over(one: Crystal, aim: Aim, doping: Array | float, size: Array | float, shape: str) -> Properties:
     """Properties at the temperatures of the aim, which come first."""
-    nodes = span_nodes(aim, _NODES) if isinstance(aim, Duty) else np.array([aim])
+    length = aim.felt_length if isinstance(aim, Duty) else np.inf
     ranks = max(np.ndim(doping), np.ndim(size))
-    return evaluate_crystal(one, nodes.reshape(-1, *(1,) * ranks), doping, size, shape)
+    return evaluate_crystal(one, _nodes(aim).reshape(-1, *(1,) * ranks), doping, size, shape, length)
+
+
+def _nodes(aim: Aim) -> Array:
+    return span_nodes(aim, _NODES) if isinstance(aim, Duty) else np.array([aim])
 
 
 def _worth(
@@ -180,21 +180,15 @@ def _worth(
 def _drawn(
     candidate: Candidate, one: Crystal, aim: Aim, doping: float, sizes: Array, shape: str, draws: int, seed: int
 ) -> Array:
-    """Worth over sizes in each draw: laws for all alike, anchors and what the model misses the candidate's own."""
-    laws = max(2 ** int(np.ceil(np.log2(max(draws, _OWN) / _OWN))), 1)
-    spreads = np.hypot(anchor_spreads(candidate), [number.si for _, number in _missed()])
-    own_seed = np.random.SeedSequence([seed, *candidate.name.encode()])
-    u = qmc.Sobol(3, rng=np.random.default_rng(own_seed)).random(laws * _OWN)
-    factors = np.exp(spreads[:, None] * ndtri(u).T).reshape(3, laws, _OWN)
-    return np.concatenate(
+    """Worth over sizes in each draw, as the ranking draws: laws for all alike, the rest the candidate's own."""
+    count = rounded(draws)
+    spread = own_spread(candidate, _nodes(aim), doping, float(np.sqrt(sizes[0] * sizes[-1])), shape)
+    factors = np.exp(own_normals(candidate, count, seed) @ spread.T)
+    laws = with_each_law(candidate, one, count, seed)
+    return np.stack(
         [
-            _worth(
-                candidate,
-                aim,
-                _over(law, aim, doping, sizes[None, :], shape),
-                factors[:, k, :, None],
-            )
-            for k, law in enumerate(with_each_law(candidate, one, laws, seed))
+            _worth(candidate, aim, _over(law, aim, doping, sizes, shape), own)
+            for law, own in zip(laws, factors, strict=True)
         ]
     )
 
@@ -216,7 +210,7 @@ def _law(one: Crystal, name: str, number: Measure, sign: int) -> Crystal:
     factor = float(np.exp(step * number.relative_spread))
     if "prefactor" in name:
         return replace(one, phonons=replace(one.phonons, grain_prefactor=number.si * factor))
-    return replace(one, electrons=replace(one.electrons, reflection=min(number.si * factor, 0.95)))
+    return replace(one, electrons=replace(one.electrons, reflection=min(number.si * factor, MOST_REFLECTED)))
 
 
 def _anchor_name(anchor: Anchor) -> tuple[str, float | None]:

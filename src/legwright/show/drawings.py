@@ -13,8 +13,8 @@ from legwright.base.units import MICRO, NM, PER_CM3
 from legwright.candidate.library import Candidate, load_candidate
 from legwright.decide.brief import Brief, load_brief
 from legwright.decide.bulk import COMPARED, BulkSample, bulk_samples
+from legwright.decide.confidence import confidences, draw_all
 from legwright.decide.curves import Aim, aim_name, leans, size_curve, surface, worth_of
-from legwright.decide.draws import confidences
 from legwright.decide.peak import LARGEST, SMALLEST, peak
 from legwright.decide.rank import Row, best_design, design_or_best, rank, size_range, window
 from legwright.decide.why import design_of, why
@@ -133,7 +133,7 @@ def _ranked(brief: Path, draws: int, seed: int) -> Record:
     found = rank(job, brief)
     if not any(row.score for row in found):
         raise NothingFeasible("no candidate can serve this brief")
-    sure = confidences(job, found, draws, seed) if draws else None
+    sure = confidences(draw_all(job, found, draws, seed)) if draws else None
     return ranking_record(job.title, [rank_record(row, sure) for row in found])
 
 

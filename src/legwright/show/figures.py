@@ -23,7 +23,8 @@ from matplotlib.lines import Line2D
 from matplotlib.patches import Patch
 from matplotlib.ticker import FixedLocator, FuncFormatter, MaxNLocator, NullLocator
 
-from legwright.show.tables import SCORE_TITLES, figure
+from legwright.show.layout import figure
+from legwright.show.tables import SCORE_TITLES
 
 Record = Mapping[str, Any]
 
@@ -439,7 +440,7 @@ KINDS: dict[str, Callable[[Record], Picture]] = {
 
 
 class Worth:
-    """A score or zT as it is shown: its word, its label with the unit, and its scale."""
+    """A score or zT as it is shown: its word, its label with the unit, and its scale (per cent for efficiency)."""
 
     def __init__(self, quantity: str) -> None:
         titled = SCORE_TITLES.get(quantity, "zT")

@@ -20,8 +20,8 @@ from legwright.decide.why import TELLING
 from legwright.leg.duty import SCORE_NAMES
 from legwright.show import drawings
 from legwright.show.figures import Worth, as_svg, density, picture
+from legwright.show.layout import figure
 from legwright.show.records import Record, citations
-from legwright.show.tables import figure, flag_numbers
 
 #: candidates whose bulk fit is shown
 LEADING = 3
@@ -44,7 +44,7 @@ def meeting_page(
     serving = [record for record in records if record["score"]]
     first = _first_figures(job, able[0], seed) if able else {}
     leading = [_leading(job, row) for row in able[:LEADING]]
-    numbers = flag_numbers(serving)
+    numbers = _note_numbers(serving)
     content = {
         "title": job.title,
         "duty": _duty(job),
@@ -65,6 +65,12 @@ def meeting_page(
     return house.from_string(template).render(content) + "\n"
 
 
+def _note_numbers(rows: Iterable[Record]) -> dict[str, int]:
+    """Numbers of the flags, in order of first use."""
+    used = dict.fromkeys(flag for row in rows for flag in row["flags"])
+    return {flag: number for number, flag in enumerate(used, start=1)}
+
+
 def _first_figures(job: Brief, row: Row, seed: int) -> dict[str, Record]:
     """The records of the figures of the best candidate, by kind."""
     at = drawings.design_in(job, row)
@@ -78,7 +84,7 @@ def _first_figures(job: Brief, row: Row, seed: int) -> dict[str, Record]:
 
 
 #: for the band of the size curve
-_DRAWS = 256
+_DRAWS = 128
 
 
 def _leading(job: Brief, row: Row) -> Record:
@@ -121,11 +127,11 @@ def _limits(best: Record, shares: Record) -> str:
     if gain is None:
         pays = f"Only a small {shape} size lets it serve at all: coarse material scores 0"
     elif gain > 1 + TELLING:
-        pays = f"The small {shape} size pays: ×{gain:.2f} over coarse material"
+        pays = f"This {shape} size pays: ×{gain:.2f} over coarse material"
     elif gain < 1 - TELLING:
-        pays = f"The small {shape} size does not pay: ×{gain:.2f} against coarse material"
+        pays = f"This {shape} size does not pay: ×{gain:.2f} against coarse material"
     else:
-        pays = f"The small {shape} size makes no difference that counts: ×{gain:.2f} against coarse material"
+        pays = f"This {shape} size makes no difference that counts: ×{gain:.2f} against coarse material"
     if best.get("nanostructuring_pays") is not None:
         pays += f", and better than it in {100 * best['nanostructuring_pays']:.0f} % of the draws"
     (charge, of_charge), (heat, of_heat) = (
@@ -141,10 +147,8 @@ def _limits(best: Record, shares: Record) -> str:
 def _doubt(rows: Sequence[Record], leans: Record) -> str:
     best, worth = rows[0], Worth(leans["quantity"])
     most = leans["leans"][0]
-    doubt = (
-        f"The main doubt: {worth.word} moves by {worth.moved(most['change'])} for one standard deviation of the "
-        f"{most['name']}"
-    )
+    moved = worth.moved(abs(most["change"])).removeprefix("+")
+    doubt = f"The main doubt: {worth.word} moves by {moved} for one standard deviation of the {most['name']}"
     if "win_share" in best:
         doubt += f", and {best['candidate']} wins {100 * best['win_share']:.0f} % of the draws"
         if best.get("tied_with"):
@@ -232,11 +236,28 @@ def _assumptions(job: Brief) -> list[str]:
         "What the model misses beyond the spreads of the anchors, one standard deviation of the logarithm: "
         f"{miss.electrical_conductivity.value:g} of electrical conductivity, {miss.seebeck.value:g} of the Seebeck "
         f"coefficient, {miss.thermal_conductivity_sized.value:g} of lattice conductivity at a stated size.",
-        f"Ideal contacts and exchangers; leg length {job.leg.length_mm:g} mm.",
+        _surroundings(job),
         "Prefactors were fixed on bulk samples: those are fitted, not predicted. Nothing nanostructured fixed "
         "anything.",
     ]
+    if job.scatter is not None:
+        lines.append(
+            "The table counts legs as they are made, scattered; the figures show legs that hit their design."
+        )
+    if job.leg.partner is not None:
+        lines.append(
+            f"The table's score is that of a couple with {job.leg.partner}; the figures of the best candidate show "
+            "its leg alone."
+        )
     return lines
+
+
+def _surroundings(job: Brief) -> str:
+    length = f"leg length {job.leg.length_mm:g} mm"
+    if job.leg.length_free_mm is not None:
+        length = "the leg as long as is best, from {:g} to {:g} mm".format(*job.leg.length_free_mm)
+    around = "Ideal contacts and exchangers" if job.task.setting.ideal else "Contacts and exchangers of the brief"
+    return f"{around}; {length}."
 
 
 def _refused(records: Iterable[Record]) -> list[Record]:

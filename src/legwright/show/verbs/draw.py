@@ -46,7 +46,7 @@ def draw_verb(
         raise InputError(f"no figure '{kind}'; {nearest(kind, KINDS)}")
     from legwright.base.files import write_whole
     from legwright.base.units import NM, PER_CM3
-    from legwright.show import drawings, figures, tables
+    from legwright.show import drawings, figures, layout
 
     suffix = drawings.file_suffix(into)
     asked = drawings.Asked(
@@ -61,7 +61,7 @@ def draw_verb(
     write_whole(into, figures.as_svg(drawn, kind) if suffix == ".svg" else figures.as_png(drawn))
 
     def table() -> None:
-        tables.console(markdown).print(drawn.alt, markup=False, soft_wrap=True)
+        layout.console(markdown).print(drawn.alt, markup=False, soft_wrap=True)
 
     content = {"file": str(into), "title": drawn.title, "says": drawn.says, **record}
     publish("draw", content, drawings.flat_rows(record), as_json, csv_file, table)
