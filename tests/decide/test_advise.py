@@ -150,3 +150,12 @@ def test_nothing_to_advise_where_nobody_can_serve(brief, capsys, tmp_path):
     hot.write_text(brief.read_text(encoding="utf-8").replace("640", "2500"), encoding="utf-8")
     assert run(["measure", str(hot), "--draws", "16"]) == 3
     assert capsys.readouterr().out == ""
+
+
+def test_advice_is_on_legs_alone(brief, capsys, tmp_path):
+    couple = tmp_path / "couple.toml"
+    couple.write_text(brief.read_text(encoding="utf-8") + '[leg]\npartner = "pbte-n"\n', encoding="utf-8")
+    assert run(["measure", str(couple), "--draws", "16"]) == 2
+    said = capsys.readouterr()
+    assert said.out == ""
+    assert "leg.partner" in said.err

@@ -68,7 +68,7 @@ def sureness_table(rows: Sequence[Record], markdown: bool) -> Layout:
     columns = ("candidate", "in first three", "best size, 5 to 95 % [nm]", "small size pays", "tied with")
     cells = (
         (
-            f"{row['rank']}. {row['candidate']}",
+            f"{row['rank']:>2}. {row['candidate']}",
             percent(row["first_three_share"]),
             span((row["size_low_nm"], row["size_high_nm"])),
             percent(row["nanostructuring_pays"]),
@@ -137,7 +137,7 @@ def trade_offs_table(rows: Sequence[Record], fronts: Mapping[str, Sequence[str]]
 
     cells = (
         (
-            f"{row['rank']}. {row['candidate']}",
+            f"{row['rank']:>2}. {row['candidate']}",
             figure(row["score"]),
             starred(row, "cost_USD_per_kg", figure(row["cost_USD_per_kg"])),
             starred(row, "supply_concentration", figure(row["supply_concentration"])),

@@ -6,7 +6,7 @@ from pathlib import Path
 
 import click
 
-from legwright.base.errors import NothingFeasible
+from legwright.base.errors import InputError, NothingFeasible
 from legwright.show.options import output, publish
 
 
@@ -21,12 +21,14 @@ def measure_verb(
 ) -> None:
     """What to measure next so that the choice for BRIEF gains most for the effort."""
     from legwright.decide.advise import advise
-    from legwright.decide.brief import load_brief
+    from legwright.decide.brief import load_brief, partner_of
     from legwright.decide.confidence import confidences, draw_all
     from legwright.decide.rank import rank
     from legwright.show import layout, records, tables
 
     job = load_brief(brief)
+    if partner_of(job, brief):
+        raise InputError("is not for advice on measurements: leave it out", file=brief, key="leg.partner")
     rows = rank(job, brief, workers)
     able = [row for row in rows if row.score > 0]
     if not able:
