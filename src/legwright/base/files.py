@@ -33,13 +33,15 @@ def read_toml(path: Path, shown: Path | str | None = None) -> dict[str, Any]:
     try:
         return tomli.loads(read_text(path, shown))
     except tomli.TOMLDecodeError as error:
-        raise InputError(f"is not valid TOML: {error}", file=name) from error
+        raise InputError(f"is not valid TOML: {error}", file=name, slug="unreadable-file") from error
     except RecursionError as error:
-        raise InputError("is nested too deeply for a TOML file of ours", file=name) from error
+        raise InputError(
+            "is nested too deeply for a TOML file of ours", file=name, slug="unreadable-file"
+        ) from error
     except ValueError as error:
         if isinstance(error, InputError):
             raise
-        raise InputError(f"is not valid TOML: {error}", file=name) from error
+        raise InputError(f"is not valid TOML: {error}", file=name, slug="unreadable-file") from error
 
 
 def read_text(path: Path, shown: Path | str | None = None) -> str:
@@ -48,20 +50,20 @@ def read_text(path: Path, shown: Path | str | None = None) -> str:
     needed = f"a {path.suffix[1:].upper() or 'text'} file is needed"
     try:
         if path.is_dir():
-            raise InputError(f"is a directory; {needed}", file=name)
+            raise InputError(f"is a directory; {needed}", file=name, slug="unreadable-file")
         if path.stat().st_size > LARGEST_INPUT_BYTES:
-            raise InputError(f"is larger than {LARGEST_INPUT_BYTES} bytes", file=name)
+            raise InputError(f"is larger than {LARGEST_INPUT_BYTES} bytes", file=name, slug="unreadable-file")
         return path.read_text(encoding="utf-8-sig")
     except FileNotFoundError as error:
-        raise InputError("no such file", file=name) from error
+        raise InputError("no such file", file=name, slug="unreadable-file") from error
     except UnicodeDecodeError as error:
-        raise InputError(f"is not UTF-8 text; {needed}", file=name) from error
+        raise InputError(f"is not UTF-8 text; {needed}", file=name, slug="unreadable-file") from error
     except OSError as error:
-        raise InputError(f"cannot be read ({error.strerror})", file=name) from error
+        raise InputError(f"cannot be read ({error.strerror})", file=name, slug="unreadable-file") from error
     except ValueError as error:
         if isinstance(error, InputError):
             raise
-        raise InputError(f"is not a path ({error})", file=repr(str(name))) from error
+        raise InputError(f"is not a path ({error})", file=repr(str(name)), slug="unreadable-file") from error
 
 
 def write_whole(path: Path, content: str | bytes) -> None:
@@ -79,11 +81,11 @@ def write_by(path: Path, write: Callable[[Path], None]) -> None:
     InputError where it cannot be written; whatever ends `write`, no other file is left.
     """
     if path.is_dir():
-        raise InputError("cannot be written (is a directory)", file=path)
+        raise InputError("cannot be written (is a directory)", file=path, slug="cannot-write")
     try:
         handle, temporary = tempfile.mkstemp(dir=path.parent, prefix=f".{path.name}.")
     except OSError as error:
-        raise InputError(f"cannot be written ({error.strerror})", file=path) from error
+        raise InputError(f"cannot be written ({error.strerror})", file=path, slug="cannot-write") from error
     try:
         with os.fdopen(handle, "rb") as kept:
             write(Path(temporary))
@@ -91,7 +93,7 @@ def write_by(path: Path, write: Callable[[Path], None]) -> None:
         os.replace(temporary, path)
     except OSError as error:
         os.unlink(temporary)
-        raise InputError(f"cannot be written ({error.strerror})", file=path) from error
+        raise InputError(f"cannot be written ({error.strerror})", file=path, slug="cannot-write") from error
     except BaseException:
         os.unlink(temporary)
         raise

@@ -33,12 +33,14 @@ class Parts:
             self.folder.mkdir(exist_ok=True)
             lock = (self.folder / "lock").open("w", encoding="utf-8")
         except OSError as error:
-            raise InputError(f"cannot be written ({error.strerror})", file=self.folder) from error
+            raise InputError(
+                f"cannot be written ({error.strerror})", file=self.folder, slug="cannot-write"
+            ) from error
         with lock:
             try:
                 fcntl.flock(lock, fcntl.LOCK_EX | fcntl.LOCK_NB)
             except OSError as error:
-                raise InputError("another run is at work on it", file=self.folder) from error
+                raise InputError("another run is at work on it", file=self.folder, slug="other-run") from error
             self._claim()
             yield
 
@@ -47,7 +49,11 @@ class Parts:
         if not path.exists():
             write_whole(path, self.question + "\n")
         elif path.read_text(encoding="utf-8").strip() != self.question:
-            raise InputError("belongs to another question (brief, members or block size differ)", file=self.folder)
+            raise InputError(
+                "belongs to another question (brief, members or block size differ)",
+                file=self.folder,
+                slug="other-run",
+            )
 
     def write(self, number: int, text: str) -> None:
         """Keep a part, whole or not at all."""

@@ -28,7 +28,7 @@ def read_as(kind: type[T], data: Mapping[str, Any], file: Path | str) -> T:
         return kind.model_validate(_tuples(data))
     except ValidationError as error:
         fault = _worst(error)
-        raise InputError(_sentence(kind, fault), file=file, key=_key(fault["loc"])) from error
+        raise InputError(_sentence(kind, fault), file=file, key=_key(fault["loc"]), slug="bad-field") from error
 
 
 def _tuples(value: Any) -> Any:

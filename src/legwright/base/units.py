@@ -96,7 +96,7 @@ def si_factor(unit: str, si_unit: str) -> float:
         except pint.UndefinedUnitError:
             zero, factor = value_of(0.0, False), value_of(1.0, False)
     except (pint.PintError, tokenize.TokenError, ArithmeticError, *_UNREADABLE) as error:
-        raise InputError(f"unit '{unit}' is not a unit that converts to {si_unit}") from error
+        raise InputError(f"unit '{unit}' is not a unit that converts to {si_unit}", slug="bad-unit") from error
     if zero != 0.0:
-        raise InputError(f"unit '{unit}' has a shifted zero; give it in {si_unit}")
+        raise InputError(f"unit '{unit}' has a shifted zero; give it in {si_unit}", slug="bad-unit")
     return factor

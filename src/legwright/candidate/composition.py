@@ -24,7 +24,9 @@ def atomic_mass(symbol: str) -> float:
     try:
         return float(Element(symbol).atomic_mass) * ATOMIC_MASS
     except ValueError as error:
-        raise InputError(f"'{symbol}' is not an element; {nearest(symbol, [e.value for e in Element])}") from error
+        raise InputError(
+            f"'{symbol}' is not an element; {nearest(symbol, [e.value for e in Element])}", slug="unknown-name"
+        ) from error
 
 
 @cache

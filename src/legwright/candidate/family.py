@@ -123,7 +123,7 @@ def load_family(name_or_path: str | Path) -> Family:
     text = str(name_or_path)
     path = named_file(text, family_names(), families_folder())
     if path is None:
-        raise InputError(f"no family '{text}' in the library; {nearest(text, family_names())}")
+        raise InputError(f"no family '{text}' in the library; {nearest(text, family_names())}", slug="unknown-name")
     return _read(path, text, stamp(path))
 
 
@@ -135,7 +135,7 @@ def _read(path: Path, shown: str, _stamp: object) -> Family:
         try:
             nodes.append(load_candidate(node.candidate))
         except InputError as error:
-            raise InputError(str(error), file=shown, key=f"node[{index}].candidate") from error
+            raise InputError(str(error), file=shown, key=f"node[{index}].candidate", slug=error.slug) from error
     check_sources(data, path, shown)
     first = nodes[0]
     for other in nodes[1:]:
@@ -144,22 +144,31 @@ def _read(path: Path, shown: str, _stamp: object) -> Family:
                 f"'{other.name}' and '{first.name}' differ in carrier or bands: not one line",
                 file=shown,
                 key="node",
+                slug="bad-field",
             )
     family = Family(path.stem, path.resolve(), data, tuple(nodes))
     known = {key: number for node in nodes for key, number in _scalars(node.data)}
     for index, one in enumerate(data.varies, start=1):
         if one.key not in known:
             raise InputError(
-                f"no number '{one.key}'; {nearest(one.key, known)}", file=shown, key=f"varies[{index}].key"
+                f"no number '{one.key}'; {nearest(one.key, known)}",
+                file=shown,
+                key=f"varies[{index}].key",
+                slug="bad-field",
             )
         for number in (*one.ends, *(bow.by for bow in one.bowing)):
             try:
                 si_factor(number.unit, known[one.key].si_unit)
             except InputError as error:
-                raise InputError(str(error), file=shown, key=f"varies[{index}]") from error
+                raise InputError(str(error), file=shown, key=f"varies[{index}]", slug=error.slug) from error
     for one_node, place in zip(nodes, data.node, strict=True):
         if not _same_occupants(one_node, _occupants(family, place.shares)):
-            raise InputError(f"the shares of '{one_node.name}' do not give its composition", file=shown, key="node")
+            raise InputError(
+                f"the shares of '{one_node.name}' do not give its composition",
+                file=shown,
+                key="node",
+                slug="bad-field",
+            )
     return family
 
 

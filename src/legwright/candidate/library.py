@@ -76,8 +76,8 @@ def load_candidate(name_or_path: str | Path) -> Candidate:
     if path := named_file(text, library_names(), candidates_folder()):
         return _read(path, text, stamp(path), stamp(path.parent / "sources.bib"))
     if text in family.family_names():
-        raise InputError(f"'{text}' is a family: give a composition, such as '{text}:0.2'")
-    raise InputError(f"no candidate '{text}' in the library; {nearest(text, library_names())}")
+        raise InputError(f"'{text}' is a family: give a composition, such as '{text}:0.2'", slug="unknown-name")
+    raise InputError(f"no candidate '{text}' in the library; {nearest(text, library_names())}", slug="unknown-name")
 
 
 def named_file(text: str, names: tuple[str, ...], folder: Path) -> Path | None:
@@ -104,7 +104,7 @@ def _read(path: Path, shown: str, *_stamps: tuple[int, int] | None) -> Candidate
     try:
         _ = candidate.disorder
     except InputError as error:
-        raise InputError(str(error), file=shown, key="site") from error
+        raise InputError(str(error), file=shown, key="site", slug=error.slug) from error
     return candidate
 
 

@@ -88,12 +88,14 @@ def read_measurements(path: str | Path, carrier: str | None = None) -> Measureme
     try:
         lines = [(number, line) for number, line in enumerate(read, start=1) if any(line)]
     except csv.Error as error:
-        raise InputError(f"is not a table of comma-separated values: {error}", file=path) from error
+        raise InputError(
+            f"is not a table of comma-separated values: {error}", file=path, slug="unreadable-file"
+        ) from error
     if len(lines) < 2:
-        raise InputError("holds no rows under its header", file=path)
+        raise InputError("holds no rows under its header", file=path, slug="bad-row")
     columns = [_column(cell, path) for cell in lines[0][1]]
     if not any(name == "temperature" for name, _ in columns):
-        raise InputError("has no column 'temperature [K]'", file=path)
+        raise InputError("has no column 'temperature [K]'", file=path, slug="bad-row")
     values: dict[str, list[float]] = {name: [] for name, factor in columns if factor is not None}
     words: dict[str, list[str]] = {name: [] for name, factor in columns if factor is None}
     rows = []
@@ -127,21 +129,25 @@ def _column(cell: str, path: str | Path) -> tuple[str, float | None]:
     """Name and factor to SI of a header; None for words."""
     matched = _HEADER.match(cell)
     if not matched:
-        raise InputError(f"header '{cell}' is not 'name [unit]'", file=path)
+        raise InputError(f"header '{cell}' is not 'name [unit]'", file=path, slug="bad-row")
     name, unit = matched.groups()
     if name in WORDS:
         return name, None
     if name not in QUANTITIES:
-        raise InputError(f"unknown column '{name}'; {nearest(name, [*QUANTITIES, *WORDS])}", file=path)
+        raise InputError(
+            f"unknown column '{name}'; {nearest(name, [*QUANTITIES, *WORDS])}", file=path, slug="bad-row"
+        )
     if not unit:
         raise InputError(
-            f"column '{name}' says no unit: write '{name} [{QUANTITIES[name][0]}]' or another", file=path
+            f"column '{name}' says no unit: write '{name} [{QUANTITIES[name][0]}]' or another",
+            file=path,
+            slug="bad-unit",
         )
     try:
         return name, si_factor(unit.replace(" ", "*") if "*" not in unit else unit, QUANTITIES[name][0])
     except InputError as error:
         hint = "; a temperature must be in K, add 273.15 to degrees Celsius" if name == "temperature" else ""
-        raise InputError(f"column '{name}': {error}{hint}", file=path) from error
+        raise InputError(f"column '{name}': {error}{hint}", file=path, slug="bad-unit") from error
 
 
 def _number(name: str, factor: float, cell: str, path: str | Path, row: int) -> float:
@@ -161,7 +167,7 @@ def _number(name: str, factor: float, cell: str, path: str | Path, row: int) -> 
 
 
 def _fault(path: str | Path, row: int, what: str) -> InputError:
-    return InputError(what, file=path, key=f"row {row}")
+    return InputError(what, file=path, key=f"row {row}", slug="bad-row")
 
 
 def _check_rows(table: Measurements, carrier: str | None) -> None:

@@ -212,7 +212,10 @@ def _check_elements(brief: Brief, path: str | Path) -> None:
     for symbol in brief.avoid.elements:
         if symbol not in symbols:
             raise InputError(
-                f"'{symbol}' is not an element; {nearest(symbol, symbols)}", file=path, key="avoid.elements"
+                f"'{symbol}' is not an element; {nearest(symbol, symbols)}",
+                file=path,
+                key="avoid.elements",
+                slug="unknown-name",
             )
 
 
@@ -243,4 +246,4 @@ def _named(name: str, path: str | Path, key: str) -> Candidate:
     try:
         return load_candidate(Path(path).parent / name if name.endswith(".toml") else name)
     except InputError as error:
-        raise InputError(str(error), file=path, key=key) from error
+        raise InputError(str(error), file=path, key=key, slug=error.slug) from error

@@ -8,6 +8,7 @@ import io
 from collections.abc import Callable, Iterable, Iterator, Sequence
 from contextlib import ExitStack
 from dataclasses import asdict, dataclass, fields
+from importlib import import_module
 from pathlib import Path
 from typing import Any
 
@@ -215,16 +216,18 @@ def _numbered(brief: Brief, number: int, names: Sequence[str]) -> tuple[int, str
 
 def _client(cluster: str, workers: int) -> Any:
     try:
-        from distributed import Client, LocalCluster
+        distributed: Any = import_module("distributed")
     except ImportError as error:
-        raise InputError("needs the extra 'scale': pip install 'legwright[scale]'", key="--cluster") from error
+        raise InputError(
+            "needs the extra 'scale': pip install 'legwright[scale]'", key="--cluster", slug="missing-extra"
+        ) from error
     if cluster != "local":
         try:
-            return Client(cluster, timeout=10)
+            return distributed.Client(cluster, timeout=10)
         except (OSError, ValueError) as error:
             raise InputError(f"no cluster answers at '{cluster}'", key="--cluster") from error
-    local: Any = LocalCluster
-    return Client(local(n_workers=workers, threads_per_worker=1, processes=True, dashboard_address=None))
+    own = distributed.LocalCluster(n_workers=workers, threads_per_worker=1, processes=True, dashboard_address=None)
+    return distributed.Client(own)
 
 
 def _join(parts: Parts, count: int, into: Path) -> None:
@@ -246,7 +249,9 @@ def _join_parquet(texts: Iterable[str], into: Path) -> None:
         import pyarrow as pa
         import pyarrow.parquet as pq
     except ImportError as error:
-        raise InputError("needs the extra 'scale': pip install 'legwright[scale]'", key="--into") from error
+        raise InputError(
+            "needs the extra 'scale': pip install 'legwright[scale]'", key="--into", slug="missing-extra"
+        ) from error
     numbers = {"score", "size_nm", "doping_per_cm3"}
     schema = pa.schema([(f.name, pa.float64() if f.name in numbers else pa.string()) for f in fields(Screened)])
 

@@ -236,10 +236,10 @@ def _read(path: Path, key: str) -> list[float]:
         body = {"search": whole["search"], "answers": [float(x) for x in whole["answers"]]}
         sealed = whole["sha256"]
     except (OSError, ValueError, KeyError, TypeError) as error:
-        raise InputError("is no checkpoint of a search", file=path) from error
+        raise InputError("is no checkpoint of a search", file=path, slug="other-run") from error
     if hashlib.sha256(json.dumps(body).encode()).hexdigest() != sealed:
-        raise InputError("is damaged: its checksum does not fit", file=path)
+        raise InputError("is damaged: its checksum does not fit", file=path, slug="other-run")
     if body["search"] != key:
-        raise InputError("belongs to another search (candidate, brief or seed differ)", file=path)
+        raise InputError("belongs to another search (candidate, brief or seed differ)", file=path, slug="other-run")
     answers: list[float] = body["answers"]
     return answers

@@ -382,6 +382,7 @@ def _refuse_far_misses(candidate: Candidate, anchors: list[Anchor], misses: Arra
             "change the anchor, its spread or the scattering parameters",
             file=candidate.path.name,
             key=f"anchor[{candidate.data.anchor.index(anchor) + 1}]",
+            slug="anchor-out-of-reach",
         )
 
 

@@ -201,14 +201,16 @@ def evaluate_crystal(
     True
     """
     if shape not in SHAPES:
-        raise InputError(f"value '{shape}' is not allowed; {nearest(shape, SHAPES)}", key="shape")
+        raise InputError(
+            f"value '{shape}' is not allowed; {nearest(shape, SHAPES)}", key="shape", slug="out-of-range"
+        )
     t = within(temperature, "temperature", COLDEST, HOTTEST, "K")
     n = within(doping, "doping", THINNEST, DENSEST, "1/m³")
     d = within(size, "size", SMALLEST, LARGEST, "m", infinite=True)
     rank = max(t.ndim, n.ndim, d.ndim)
     t, n, d = (np.reshape(a, (1,) * (rank - a.ndim) + a.shape) for a in (t, n, d))
     if not length > 0:
-        raise InputError(f"value {length:g} m is not allowed; a length above 0", key="length")
+        raise InputError(f"value {length:g} m is not allowed; a length above 0", key="length", slug="out-of-range")
     block = partial(_evaluate_block, length=length)
     by_mode = one.phonons.wall_roughness is not None or np.isfinite(length)
     parts = _evaluate_blocks(
@@ -232,7 +234,11 @@ def within(value: ArrayLike, key: str, low: float, high: float, unit: str, *, in
     if not np.all(allowed):
         bad = array[~allowed].flat[0]
         or_bulk = ", or infinite" if infinite else ""
-        raise InputError(f"value {bad:g} {unit} is not allowed; {low:g} to {high:g} {unit}{or_bulk}", key=key)
+        raise InputError(
+            f"value {bad:g} {unit} is not allowed; {low:g} to {high:g} {unit}{or_bulk}",
+            key=key,
+            slug="out-of-range",
+        )
     return array
 
 

@@ -9,9 +9,12 @@ import click
 
 from legwright.base.errors import InputError, NothingFeasible, nearest
 from legwright.base.version import VERSION
+from legwright.show.verbs.about import about_verb
 from legwright.show.verbs.audit import audit_verb
+from legwright.show.verbs.brief import brief_verb
 from legwright.show.verbs.candidates import candidates_verb
 from legwright.show.verbs.draw import draw_verb
+from legwright.show.verbs.explain import explain_verb
 from legwright.show.verbs.fit import fit_verb
 from legwright.show.verbs.leg import leg_verb
 from legwright.show.verbs.measure import measure_verb
@@ -51,6 +54,9 @@ for _verb in (
     measure_verb,
     fit_verb,
     audit_verb,
+    brief_verb,
+    explain_verb,
+    about_verb,
 ):
     _cli.add_command(_verb)
 
@@ -65,12 +71,12 @@ def run(arguments: list[str]) -> int:
     try:
         done = _cli.main(args=arguments, prog_name="legwright", standalone_mode=False)
     except InputError as error:
-        return _refuse(str(error))
+        return _refuse(str(error), error.slug)
     except click.exceptions.NoArgsIsHelpError as error:
         click.echo(error.format_message())
         return 0
     except click.ClickException as error:
-        return _refuse(error.format_message())
+        return _refuse(error.format_message(), "usage")
     except NothingFeasible as error:
         click.echo(f"legwright: {error}", err=True)
         return 3
@@ -85,6 +91,6 @@ def run(arguments: list[str]) -> int:
     return done if isinstance(done, int) else 0
 
 
-def _refuse(message: str) -> int:
-    click.echo(f"legwright: {message}", err=True)
+def _refuse(message: str, slug: str) -> int:
+    click.echo(f"legwright: {message} [{slug}]", err=True)
     return 2

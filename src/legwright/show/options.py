@@ -9,15 +9,18 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import click
+from click.shell_completion import CompletionItem
 
-from legwright.base.errors import InputError
+from legwright.base.errors import InputError, nearest
+from legwright.base.flags import MEANINGS
 
 if TYPE_CHECKING:
     from legwright.show.records import Record
 
     _Number = click.ParamType[float]
+    _Text = click.ParamType[str]
 else:
-    _Number = click.ParamType
+    _Number = _Text = click.ParamType
 
 
 class Positive(_Number):
@@ -42,9 +45,45 @@ class Positive(_Number):
         return number
 
 
+class Named(_Text):
+    """A candidate by library name or path; the shell completes the names."""
+
+    name = "candidate"
+
+    def shell_complete(self, ctx: click.Context, param: click.Parameter, incomplete: str) -> list[CompletionItem]:
+        from legwright.candidate.library import library_names
+
+        return [CompletionItem(name) for name in library_names() if name.startswith(incomplete)]
+
+
+_HUSHED = "legwright.hushed"
+
+
+def _hush(ctx: click.Context, param: click.Parameter, slugs: tuple[str, ...]) -> None:
+    for slug in slugs:
+        if slug not in MEANINGS:
+            raise InputError(f"no flag '{slug}'; {nearest(slug, MEANINGS)}", key="--hush", slug="unknown-name")
+    ctx.meta[_HUSHED] = frozenset(slugs)
+
+
+def hushed() -> frozenset[str]:
+    """Flags whose meaning the user does not want to read again."""
+    context = click.get_current_context(silent=True)
+    return frozenset() if context is None else context.meta.get(_HUSHED, frozenset())
+
+
 def output(command: Callable[..., Any]) -> Callable[..., Any]:
     """The options that every verb has."""
     for option in (
+        click.option(
+            "--hush",
+            multiple=True,
+            metavar="FLAG",
+            envvar="LEGWRIGHT_HUSH",
+            expose_value=False,
+            callback=_hush,
+            help="Do not say under tables what FLAG means; repeatable. The flag itself stays.",
+        ),
         click.option("--markdown", is_flag=True, help="Print tables as Markdown."),
         click.option("--csv", "csv_file", type=click.Path(path_type=Path), help="Also write the rows to FILE."),
         click.option("--json", "as_json", is_flag=True, help="Print one JSON object and nothing else."),

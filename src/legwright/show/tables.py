@@ -8,6 +8,7 @@ from typing import Any
 from rich.console import Console
 
 from legwright.show.layout import Layout, draw, figure, figure_within, percent, span
+from legwright.show.options import hushed
 
 Record = Mapping[str, Any]
 
@@ -244,6 +245,17 @@ def families_table(rows: Sequence[Record], markdown: bool) -> Layout:
         for row in rows
     )
     return draw("Alloy lines", columns, cells, markdown)
+
+
+def about_tables(found: Record, markdown: bool) -> list[Layout]:
+    """Versions and data sets."""
+    title = f"legwright {found['program']} ({found['licence']}), Python {found['python']}, {found['platform']}"
+    packages = ((row["package"], row["version"] or "not installed") for row in found["packages"])
+    sets = ((row["data_set"], str(row["files"]), row["sha256"][:16]) for row in found["data_sets"])
+    return [
+        draw(title, ("package", "version"), packages, markdown),
+        draw("Data sets", ("data set", "files", "SHA-256 begins"), sets, markdown),
+    ]
 
 
 def screen_table(found: Record, markdown: bool) -> Layout:
@@ -562,8 +574,10 @@ def numbers_table(title: str, rows: Sequence[Record], markdown: bool) -> Layout:
 
 def footnotes(out: Console, meanings: Mapping[str, str], cautions: Iterable[str]) -> None:
     """Meaning of each flag used, then the cautions, once."""
+    quiet = hushed()
     for flag, meaning in meanings.items():
-        out.print(f"{flag}: {meaning}", markup=False)
+        if flag not in quiet:
+            out.print(f"{flag}: {meaning}", markup=False)
     reminders = list(cautions)
     if reminders:
         out.print()

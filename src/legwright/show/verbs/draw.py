@@ -43,7 +43,7 @@ def draw_verb(
 ) -> None:
     """A figure of SUBJECT: a candidate, or for `ranking` a brief."""
     if kind not in KINDS:
-        raise InputError(f"no figure '{kind}'; {nearest(kind, KINDS)}")
+        raise InputError(f"no figure '{kind}'; {nearest(kind, KINDS)}", slug="unknown-name")
     from legwright.base.files import write_whole
     from legwright.base.units import NM, PER_CM3
     from legwright.show import drawings, figures, layout

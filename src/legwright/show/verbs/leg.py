@@ -7,11 +7,11 @@ from pathlib import Path
 import click
 
 from legwright.base.errors import NothingFeasible
-from legwright.show.options import Positive, output, publish
+from legwright.show.options import Named, Positive, output, publish
 
 
 @click.command("leg")
-@click.argument("candidate")
+@click.argument("candidate", type=Named())
 @click.argument("brief", type=click.Path(path_type=Path))
 @click.option("--doping", type=Positive("CM3"), help="Active density per cm³; default: the brief's best.")
 @click.option("--size", type=Positive("NM|bulk", bulk=True), help="nm, or bulk; default: the brief's best.")

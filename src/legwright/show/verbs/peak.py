@@ -6,11 +6,11 @@ from pathlib import Path
 
 import click
 
-from legwright.show.options import Positive, output, publish, shape_option
+from legwright.show.options import Named, Positive, output, publish, shape_option
 
 
 @click.command("peak")
-@click.argument("candidate")
+@click.argument("candidate", type=Named())
 @click.option("--temperature", type=Positive("K"), required=True, help="Kelvin.")
 @click.option("--doping", type=Positive("CM3"), help="Active density per cm³; default: the best.")
 @shape_option

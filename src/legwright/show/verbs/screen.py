@@ -3,11 +3,15 @@
 from __future__ import annotations
 
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 import click
 
 from legwright.base.errors import InputError, NothingFeasible
 from legwright.show.options import output, publish
+
+if TYPE_CHECKING:
+    from legwright.show.records import Record
 
 
 @click.command("screen")
@@ -62,13 +66,14 @@ def screen_verb(
         raise InputError("there is nothing to screen", key="--folder" if folder else "candidates.carrier")
     with progress("screening") as told:
         found = screen(job, names, into, workers, cluster, told)
-    content = {
+    rows: list[Record] = [asdict(row) for row in found.best]
+    content: Record = {
         "title": job.title,
         "asked": found.asked,
         "done": found.done,
         "complete": found.complete,
         "file": str(found.into) if found.complete else None,
-        "rows": [asdict(row) for row in found.best],
+        "rows": rows,
     }
 
     def table() -> None:
@@ -77,7 +82,7 @@ def screen_verb(
         if found.complete:
             out.print(f"All {found.asked} rows: {found.into}", markup=False)
 
-    publish("screen", content, content["rows"], as_json, csv_file, table)
+    publish("screen", content, rows, as_json, csv_file, table)
     if found.complete and not found.best:
         raise NothingFeasible("none of these can serve this brief; the file's flags say why")
     return 0 if found.complete else 130

@@ -7,11 +7,11 @@ from pathlib import Path
 
 import click
 
-from legwright.show.options import Positive, output, publish, shape_option
+from legwright.show.options import Named, Positive, output, publish, shape_option
 
 
 @click.command("sheet")
-@click.argument("candidate")
+@click.argument("candidate", type=Named())
 @click.option("--temperature", type=Positive("K"), required=True, help="Kelvin.")
 @click.option("--doping", type=Positive("CM3"), required=True, help="Active density per cm³.")
 @click.option("--size", type=Positive("NM", bulk=True), required=True, metavar="NM|bulk", help="Nanometres.")

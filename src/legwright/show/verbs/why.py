@@ -7,11 +7,11 @@ from pathlib import Path
 import click
 
 from legwright.base.errors import InputError
-from legwright.show.options import Positive, output, publish
+from legwright.show.options import Named, Positive, output, publish
 
 
 @click.command("why")
-@click.argument("candidate")
+@click.argument("candidate", type=Named())
 @click.option("--temperature", type=Positive("K"), help="Kelvin; or give a brief.")
 @click.option("--brief", type=click.Path(path_type=Path), help="Over the duty of this brief, at its best design.")
 @click.option("--doping", type=Positive("CM3"), help="Active density per cm³.")
