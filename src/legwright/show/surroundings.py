@@ -18,18 +18,14 @@ _DATA = {"candidates": "*.toml", "families": "*.toml", "measurements": "*.csv", 
 
 def surroundings() -> dict[str, Any]:
     """Versions of the program, Python and each dependency (null: not installed); data sets with their checksums."""
-    about = metadata.metadata("legwright")
-    needed = [
-        re.split(r"[<>=!~;\\[ ]", line)[0]
-        for line in metadata.requires("legwright") or ()
-        if "extra ==" not in line
-    ]
+    lines = [line for line in metadata.requires("legwright") or () if "extra ==" not in line]
+    needed = {re.split(r"[<>=!~; ]", line)[0] for line in lines}
     return {
         "program": VERSION,
-        "licence": about.get("License-Expression") or about.get("License"),
+        "licence": metadata.metadata("legwright")["License-Expression"],
         "python": platform.python_version(),
         "platform": platform.platform(terse=True),
-        "packages": [{"package": name, "version": _version(name)} for name in sorted(set(needed))],
+        "packages": [{"package": name, "version": _version(name)} for name in sorted(needed)],
         "data_sets": [_data_set(name, pattern) for name, pattern in _DATA.items()],
     }
 
@@ -46,8 +42,5 @@ def _data_set(name: str, pattern: str) -> dict[str, Any]:
     whole = hashlib.sha256()
     for path in files:
         whole.update(path.name.encode() + b"\0" + Path(path).read_bytes())
-    return {
-        "data_set": "numbers shared by all" if name == "." else name,
-        "files": len(files),
-        "sha256": whole.hexdigest(),
-    }
+    title = "shared by all" if name == "." else name
+    return {"data_set": title, "files": len(files), "sha256": whole.hexdigest()}
