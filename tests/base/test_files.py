@@ -85,3 +85,14 @@ def test_shipped_data_is_found():
     assert (folder / "sources.bib").is_file()
     assert (folder / "priors.toml").is_file()
     assert list((folder / "candidates").glob("*.toml"))
+
+
+@pytest.mark.parametrize("mask", [0o022, 0o077])
+def test_what_is_written_is_as_open_to_others_as_any_file_of_the_user(mask, tmp_path):
+    before = os.umask(mask)
+    try:
+        write_whole(tmp_path / "ours.txt", "a")
+        (tmp_path / "any.txt").write_text("a")
+    finally:
+        os.umask(before)
+    assert (tmp_path / "ours.txt").stat().st_mode == (tmp_path / "any.txt").stat().st_mode

@@ -205,6 +205,25 @@ def test_a_page_where_nobody_can_serve_says_so(tmp_path, capsys):
     capsys.readouterr()
 
 
+@pytest.mark.parametrize(
+    ("more", "said"),
+    [
+        ("[making]\nsize_scatter = 1.5", "legs that hit their design"),
+        ("[leg]\npartner = 'pbte-p'", "beside pbte-p"),
+        (
+            "[leg]\ncontact_uohm_cm2 = 5\nlength_free_mm = [0.5, 5]",
+            "Contacts and exchangers of the brief; the leg as long",
+        ),
+    ],
+)
+def test_a_page_says_what_its_brief_adds(more, said, tmp_path, capsys):
+    path = tmp_path / "more.toml"
+    path.write_text(BRIEF.replace('"pbte-p", "si-n", "bitese-n"', '"pbte-n"') + more, encoding="utf-8")
+    assert run(["rank", str(path), "--page", str(tmp_path / "more.html")]) == 0
+    assert said in plain((tmp_path / "more.html").read_text(encoding="utf-8"))
+    capsys.readouterr()
+
+
 def test_a_page_that_cannot_be_written_is_refused(tmp_path, folder, capsys):
     assert run(["rank", str(folder / "rig.toml"), "--page", str(tmp_path / "no" / "page.html")]) == 2
     said = capsys.readouterr()

@@ -125,13 +125,29 @@ def test_a_page_with_an_error_and_a_request_would_be_caught(tmp_path, asked):
     assert "http://elsewhere.test/x.png" in of_pages(seen)
 
 
+def measured(page, folder, width: int) -> tuple[float, ...]:
+    """Width that the page takes, things over its edge, least letter of its figures (px), figures."""
+    frame = folder / "frame.html"
+    frame.write_text(FRAME.format(width=width, page=page.as_uri()), encoding="utf-8")
+    done = browse(folder, f"--window-size={width + 40},900", "--dump-dom", frame.as_uri())
+    title = re.search(r"<title>(.*?)</title>", done.stdout).group(1)
+    return tuple(float(word) for word in title.split())
+
+
+def test_a_page_that_is_too_wide_would_be_caught(tmp_path):
+    bad = tmp_path / "bad.html"
+    svg = '<svg width="50" height="20"><text y="15" font-size="4">a</text></svg>'
+    bad.write_text(f'<!DOCTYPE html><p style="width:600px">wide</p>{svg}', encoding="utf-8")
+    scroll, over, letters, figures = measured(bad, tmp_path, 390)
+    assert scroll > 600
+    assert over == 1
+    assert letters < 7.5
+    assert figures == 1
+
+
 @pytest.mark.parametrize("width", [390, 1440])
 def test_nothing_hangs_over_the_edge(page, tmp_path, width):
-    frame = tmp_path / "frame.html"
-    frame.write_text(FRAME.format(width=width, page=page.as_uri()), encoding="utf-8")
-    done = browse(tmp_path, f"--window-size={width + 40},900", "--dump-dom", frame.as_uri())
-    title = re.search(r"<title>(.*?)</title>", done.stdout).group(1)
-    scroll, over, letters, figures = (float(word) for word in title.split())
+    scroll, over, letters, figures = measured(page, tmp_path, width)
     assert scroll <= width
     assert over == 0
     assert figures > 6

@@ -5,7 +5,9 @@ import sys
 
 import pytest
 
-HEAVY = "{'numpy', 'scipy', 'pandas', 'pymatgen', 'skopt', 'sklearn', 'matplotlib', 'pint', 'rich', 'joblib'}"
+HEAVY = (
+    "{'numpy', 'scipy', 'pandas', 'pymatgen', 'skopt', 'sklearn', 'matplotlib', 'pint', 'rich', 'joblib', 'jinja2'}"
+)
 COUNT = f"import sys; print(sorted({HEAVY} & {{name.split('.')[0] for name in sys.modules}}))"
 
 
@@ -18,7 +20,15 @@ def loaded_after(program: str) -> str:
 
 @pytest.mark.parametrize(
     "arguments",
-    [["--help"], ["rank", "--help"], ["peak", "--help"], ["sheet", "--help"], ["candidates", "--help"], ["peek"]],
+    [
+        ["--help"],
+        ["rank", "--help"],
+        ["peak", "--help"],
+        ["sheet", "--help"],
+        ["candidates", "--help"],
+        ["draw", "--help"],
+        ["peek"],
+    ],
     ids=" ".join,
 )
 def test_help_is_thin(arguments):

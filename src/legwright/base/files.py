@@ -90,6 +90,7 @@ def write_by(path: Path, write: Callable[[Path], None]) -> None:
         with os.fdopen(handle, "rb") as kept:
             write(Path(temporary))
             os.fsync(kept.fileno())
+        os.chmod(temporary, 0o666 & ~_umask())  # mkstemp's files are for their maker alone
         os.replace(temporary, path)
     except OSError as error:
         os.unlink(temporary)
@@ -97,3 +98,10 @@ def write_by(path: Path, write: Callable[[Path], None]) -> None:
     except BaseException:
         os.unlink(temporary)
         raise
+
+
+def _umask() -> int:
+    """What the user keeps from others in new files; it can only be read by setting it."""
+    mask = os.umask(0o077)
+    os.umask(mask)
+    return mask

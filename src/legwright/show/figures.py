@@ -283,7 +283,8 @@ def design_map(record: Record) -> Picture:
     star = Line2D([], [], marker="*", ms=11, mfc="white", mec=BLACK, ls="")
     hatched = Patch(facecolor="#888888", edgecolor="white", hatch="////")
     sheet.legend(2, [star, hatched], ["this design", "not known to be made"])
-    makeable = f"Made so far: from {figure(smallest)} nm and {density(low)} to {density(high)}."
+    sizes_made = f"from {figure(smallest)} nm" if smallest else "the file names no smallest size"
+    makeable = f"Made so far: {sizes_made}; from {density(low)} to {density(high)}."
     alt = f"The star: {worth.said(record['value'])} at {figure(record['size_nm'])} nm and "
     alt += f"{density(record['doping_per_cm3'])}. Lines at 50 (dotted), 80 (dashed) and 95 % (solid) of it. "
     alt += makeable

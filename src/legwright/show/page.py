@@ -15,6 +15,7 @@ from legwright.candidate.number import Measure
 from legwright.candidate.priors import load_priors
 from legwright.candidate.sources import bibliography
 from legwright.decide.brief import Brief
+from legwright.decide.confidence import PAYS
 from legwright.decide.rank import Row
 from legwright.decide.why import TELLING
 from legwright.leg.duty import SCORE_NAMES
@@ -48,7 +49,7 @@ def meeting_page(
     content = {
         "title": job.title,
         "duty": _duty(job),
-        "verdict": _verdict(serving, first),
+        "verdict": _verdict(serving, first, job.leg.partner),
         "table": _table(serving, numbers) if serving else None,
         "sections": _sections(job, serving, first, leading),
         "assumptions": _assumptions(job),
@@ -100,20 +101,21 @@ def _duty(job: Brief) -> str:
     )
 
 
-def _verdict(rows: Sequence[Record], first: dict[str, Record]) -> list[str]:
+def _verdict(rows: Sequence[Record], first: dict[str, Record], partner: str | None) -> list[str]:
     """Three sentences: what to make, what limits it and whether the size pays, and the main doubt."""
     if not rows:
         return ["No candidate can serve this brief; the reasons stand below."]
-    return [_choice(rows), _limits(rows[0], first["shares"]), _doubt(rows, first["sensitivity"])]
+    return [_choice(rows, partner), _limits(rows[0], first["shares"]), _doubt(rows, first["sensitivity"])]
 
 
-def _choice(rows: Sequence[Record]) -> str:
+def _choice(rows: Sequence[Record], partner: str | None) -> str:
     best, worth = rows[0], Worth(rows[0]["score_name"])
     low, high = best["window_nm"]
+    beside = f", beside {partner}" if partner else ""
     sentence = (
         f"Make {best['candidate']} ({best['formula']}, {best['carrier']}-type) with a {best['shape']} size of "
         f"{figure(best['size_nm'])} nm ({figure(low)} to {figure(high)} nm keep 95 %) and "
-        f"{density(best['doping_per_cm3'])} active carriers: {worth.word} {worth.said(best['score'])}"
+        f"{density(best['doping_per_cm3'])} active carriers{beside}: {worth.word} {worth.said(best['score'])}"
     )
     if best.get("score_high"):
         sentence += f" (90 % of the draws: {worth.said(best['score_low'])} to {worth.said(best['score_high'])})"
@@ -133,7 +135,8 @@ def _limits(best: Record, shares: Record) -> str:
     else:
         pays = f"This {shape} size makes no difference that counts: ×{gain:.2f} against coarse material"
     if best.get("nanostructuring_pays") is not None:
-        pays += f", and better than it in {100 * best['nanostructuring_pays']:.0f} % of the draws"
+        often = f"{100 * best['nanostructuring_pays']:.0f} % of the draws"
+        pays += f", and by {100 * (PAYS - 1):.0f} % or more in {often}"
     (charge, of_charge), (heat, of_heat) = (
         max(shares[f"{kind}_resistance_shares"].items(), key=lambda part: part[1])
         for kind in ("electrical", "thermal")
