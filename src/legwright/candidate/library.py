@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cache, cached_property
+from html import escape
 from pathlib import Path
 
 from pydantic import BaseModel
@@ -46,6 +47,20 @@ class Candidate:
         for _, number in numbers(self.data):
             counts[number.basis] = counts.get(number.basis, 0) + 1
         return counts
+
+    def _repr_html_(self) -> str:
+        """For notebooks: what it is, and where its numbers came from."""
+        data = self.data
+        rows = {
+            "title": data.title,
+            "formula": data.formula,
+            "carrier": data.carrier,
+            "direction": data.direction,
+            "highest temperature [K]": f"{data.service.highest_temperature.si:g}",
+            **{f"numbers {basis}": str(count) for basis, count in sorted(self.basis_counts.items())},
+        }
+        cells = "".join(f'<tr><th scope="row">{escape(k)}</th><td>{escape(v)}</td></tr>' for k, v in rows.items())
+        return f"<table><caption>{escape(self.name)}</caption><tbody>{cells}</tbody></table>"
 
 
 def candidates_folder() -> Path:

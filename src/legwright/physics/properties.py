@@ -149,6 +149,10 @@ class Properties:
 
         return pd.DataFrame(self.columns())
 
+    def _repr_html_(self) -> str:
+        """For notebooks: the frame, cut where it is long."""
+        return str(self.to_frame().to_html(max_rows=40, index=False))
+
 
 def evaluate(
     candidate: Candidate,

@@ -18,6 +18,8 @@ from legwright.candidate.supply import cost_per_kg, hazardous_elements, mass_den
 from legwright.physics.solubility import atomic_percent
 
 if TYPE_CHECKING:
+    import pandas as pd
+
     from legwright.candidate.family import Family
     from legwright.candidate.library import Candidate
     from legwright.decide.advise import Advice
@@ -523,6 +525,13 @@ def as_json(verb: str, content: Record) -> str:
     """One strict JSON object: no NaN, no infinity."""
     whole = {"schema": SCHEMA, "legwright": VERSION, "verb": verb, **content}
     return json.dumps(whole, allow_nan=False, ensure_ascii=False, indent=2) + "\n"
+
+
+def rank_frame(rows: Iterable[Row], sure: dict[str, Confidence] | None = None) -> pd.DataFrame:
+    """A ranking as a frame, which notebooks show as a table; columns as in JSON, units in their names."""
+    import pandas as pd
+
+    return pd.DataFrame([rank_record(row, sure) for row in rows]).set_index("rank")
 
 
 def as_csv(records: list[Record]) -> str:
