@@ -18,7 +18,8 @@ from legwright.decide.brief import Brief, candidates_of
 from legwright.decide.robust import MadeMap
 from legwright.decide.score import around, leg_material, properties_over_span, score
 from legwright.decide.warnings import point_flags
-from legwright.leg.duty import SCORE_NAMES, Duty, best_score
+from legwright.leg.duty import SCORE_NAMES, Duty, score_of
+from legwright.leg.installed import best_running
 from legwright.physics.properties import Properties
 
 Array = NDArray[np.float64]
@@ -100,7 +101,7 @@ def rank_one(brief: Brief, candidate: Candidate) -> Row:
         legs = MadeMap.of(candidate, duty, dopings, sizes, shape, scatter)
         doping, size, worth = legs.best(dopings, sizes)
     made = properties_over_span(candidate, duty, doping, size, shape, _FINE_NODES)
-    best = float(best_score(leg_material(candidate, made), duty, _FINE_ROUNDS))
+    best = float(score_of(best_running(leg_material(candidate, made), duty), duty))
     if best == 0:
         return _infeasible(brief, candidate, "duty-out-of-reach")
     if scatter is None:
