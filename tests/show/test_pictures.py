@@ -37,7 +37,9 @@ def made() -> dict[str, str]:
     lines = [records.rank_record(row) for row in rows if row.score]
     out = Screen(width=120, file=StringIO())
     out.console.record = True
-    out.table(job.title, tables.rank_columns(rows[0].score_name), lines)
+    duty = {"kind": job.duty.kind, "hot_K": job.duty.hot_K, "cold_K": job.duty.cold_K}
+    meanings = records.notes((flag for line in lines for flag in line["flags"]), ())["flag_meanings"]
+    tables.rank(out, {"title": job.title, "duty": duty, "rows": lines, "flag_meanings": meanings, "cautions": []})
     return {
         "table": out.console.export_svg(title="legwright rank", unique_id="table", code_format=_alone()),
         **pictures,
