@@ -8,11 +8,11 @@ from pathlib import Path
 
 import pytest
 from rich._export_format import CONSOLE_SVG_FORMAT
-from rich.console import Console
 
 from legwright.decide.brief import load_brief
 from legwright.decide.rank import rank
 from legwright.show import drawings, figures, records, tables
+from legwright.show.layout import Screen
 
 ROOT = Path(__file__).resolve().parents[2]
 FOLDER = ROOT / "examples" / "pictures"
@@ -35,9 +35,15 @@ def made() -> dict[str, str]:
     }
     pictures = {name: figures.as_svg(figures.picture(record), name) for name, record in drawn.items()}
     lines = [records.rank_record(row) for row in rows if row.score]
-    out = Console(record=True, width=120, file=StringIO())
-    out.print(tables.rank_table(job.title, lines, markdown=False))
-    return {"table": out.export_svg(title="legwright rank", unique_id="table", code_format=_alone()), **pictures}
+    out = Screen(width=120, file=StringIO())
+    out.console.record = True
+    duty = {"kind": job.duty.kind, "hot_K": job.duty.hot_K, "cold_K": job.duty.cold_K}
+    meanings = records.notes((flag for line in lines for flag in line["flags"]), ())["flag_meanings"]
+    tables.rank(out, {"title": job.title, "duty": duty, "rows": lines, "flag_meanings": meanings, "cautions": []})
+    return {
+        "table": out.console.export_svg(title="legwright rank", unique_id="table", code_format=_alone()),
+        **pictures,
+    }
 
 
 def _alone() -> str:

@@ -13,7 +13,7 @@ import tomli
 
 import legwright
 from legwright.base.errors import REFUSALS
-from legwright.base.flags import MEANINGS
+from legwright.base.flags import MEANINGS, word
 from legwright.decide.brief import Brief, load_brief
 
 SOURCES = sorted(Path(legwright.__file__).parent.rglob("*.py"))
@@ -96,9 +96,9 @@ def test_explain_lists_all_and_offers_the_nearest(legwright):
 
 def test_a_hushed_flag_stays_but_is_not_explained(legwright, brief):
     loud, quiet = legwright("rank", brief()), legwright("rank", brief(), "--hush", "sintered-boundaries")
-    assert "sintered-boundaries: " in loud.out
-    assert "sintered-boundaries: " not in quiet.out
-    assert "sintered-boundaries" in quiet.out
+    assert "Sintered bodies" in loud.out
+    assert "Sintered bodies" not in quiet.out
+    assert "sintered" in quiet.out
     flags = legwright("rank", brief(), "--hush", "sintered-boundaries", "--json").json["rows"][0]["flags"]
     assert "sintered-boundaries" in flags
     assert legwright("rank", brief(), "--hush", "sintered").code == 2
@@ -114,11 +114,62 @@ def test_about_names_versions_and_data(legwright):
     assert "SHA-256" in legwright("about").out
 
 
-@pytest.mark.parametrize(("shell", "word"), [("bash", "2"), ("zsh", "2"), ("fish", "pb")])
-def test_the_shell_completes_candidates(shell, word):
-    surroundings = {**os.environ, "_LEGWRIGHT_COMPLETE": f"{shell}_complete"}
-    surroundings |= {"COMP_WORDS": "legwright sheet pb", "COMP_CWORD": word}
+@pytest.mark.parametrize("shell", ["bash", "zsh", "fish"])
+def test_the_shell_completes_candidates(shell):
+    offered = completions("legwright sheet pb", shell)
+    assert {"pbse-n", "pbse-p", "pbte-n", "pbte-p"} <= offered
+    assert all(name.startswith("pb") for name in offered)
+
+
+def test_the_shell_completes_families_options_and_slugs():
+    assert "si-ge-n:" in completions("legwright search si-")
+    assert completions("legwright leg pbte-p brief.toml --partner mg3") == {"mg3sbbi-n"}
+    assert "window-open" in completions("legwright explain wind")
+    assert "--temperature" in completions("legwright peak si-n --te")
+
+
+def completions(words: str, shell: str = "bash") -> set[str]:
+    """What the shell is offered for the last of these words."""
+    place = words.split()[-1] if shell == "fish" else str(words.count(" "))
+    asked = {"_LEGWRIGHT_COMPLETE": f"{shell}_complete", "COMP_WORDS": words, "COMP_CWORD": place}
     program = [sys.executable, "-c", "from legwright.show.cli import main; main()"]
-    said = subprocess.run(program, capture_output=True, text=True, env=surroundings, check=False).stdout
-    assert "pbte-n" in said
-    assert "sige-n" not in said
+    said = subprocess.run(program, capture_output=True, text=True, env={**os.environ, **asked}, check=False).stdout
+    lines = said.splitlines()
+    return set(lines[1::3] if shell == "zsh" else (line.partition(",")[2] for line in lines))
+
+
+def test_a_brief_to_fill_in_never_goes_over_a_file(legwright, tmp_path):
+    path = tmp_path / "mine.toml"
+    path.write_text("mine", encoding="utf-8")
+    said = legwright("brief", "cooler", "--into", path)
+    assert (said.code, said.out) == (2, "")
+    assert said.err.endswith("exists; name another file [cannot-write]\n")
+    assert path.read_text(encoding="utf-8") == "mine"
+
+
+def test_words_of_flags_are_short_unlike_and_explained(legwright):
+    words = [word(flag) for flag in MEANINGS]
+    assert len(set(words)) == len(words)
+    assert max(map(len, words)) <= 20, "a word in a table, not a sentence"
+    assert legwright("explain", "too hot").out.startswith("above-service-temperature (flag): ")
+
+
+def test_the_names_of_hushed_flags_stay_and_cautions_are_never_hushed(legwright, monkeypatch):
+    sheet = ("sheet", "sige-n", "--temperature", "700", "--doping", "1e20", "--size", "50")
+    monkeypatch.setenv("LEGWRIGHT_HUSH", "from-memory sintered-boundaries")
+    said = legwright(*sheet).out
+    assert "from memory.\nsintered" in said or "sintered (sintered-boundaries).\nfrom memory." in said
+    assert "Sintered bodies" not in said
+    assert "Cautions: " in said
+
+
+def test_a_pipe_without_unicode_gets_json_tables_and_words():
+    def piped(*words: str) -> str:
+        program = [sys.executable, "-c", "from legwright.show.cli import main; main()", *words]
+        env = {**os.environ, "PYTHONIOENCODING": "ascii"}
+        return subprocess.run(program, capture_output=True, env=env, check=True).stdout.decode("ascii")
+
+    sheet = ("sheet", "sige-n", "--temperature", "700", "--doping", "1e20", "--size", "50")
+    assert piped(*sheet, "--json").endswith("}\n")
+    assert "power factor [uW/(cm K2)]" in piped(*sheet)
+    assert "Cahill" in piped("explain", "below amorphous")

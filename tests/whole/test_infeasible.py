@@ -43,7 +43,9 @@ def test_nobody_feasible_is_exit_3_with_the_table_still_printed(changes, flag, l
 def test_nobody_feasible_prints_the_reason_under_the_table(legwright, brief):
     said = legwright("rank", brief({"duty.hot_K": "1600"}))
     assert said.code == 3
-    assert "above-service-temperature: " in said.out
+    assert "Test rig: generator leg" in said.out
+    assert "Cannot serve, too hot: sige-n." in said.out
+    assert "(above-service-temperature): " in said.out
 
 
 def test_those_who_cannot_serve_stand_last(legwright, brief):

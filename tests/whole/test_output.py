@@ -154,7 +154,7 @@ def test_table_shows_the_ranking_flags_and_cautions(legwright, brief):
     assert "Test rig: generator leg, 400 to 700 K, grain size" in said.out
     for word in ("1. sige-n", "Si0.8Ge0.2", "efficiency", "window", "doping", "zT mean", "zT peak", "gain"):
         assert word in said.out
-    assert re.search(r"^sintered-boundaries: ", said.out, re.MULTILINE)
+    assert re.search(r"^sintered \(sintered-boundaries\): Sintered bodies", said.out, re.MULTILINE)
     assert "Cautions: " in said.out
     assert "local codes" in said.out
 

@@ -28,6 +28,8 @@ def loaded_after(program: str) -> str:
         ["candidates", "--help"],
         ["draw", "--help"],
         ["peek"],
+        ["explain"],
+        ["explain", "window-open"],
     ],
     ids=" ".join,
 )

@@ -94,6 +94,34 @@ MEANINGS: dict[str, str] = {
     "direction": "The figures hold for the one crystal direction or texture named in the candidate's file.",
 }
 
+#: what a table calls a flag whose slug is too long for one; the others by their slug with spaces
+_SHORT = {
+    "above-service-temperature": "too hot",
+    "volatile-near-service-limit": "volatile",
+    "duty-out-of-reach": "out of reach",
+    "no-doping-range": "no doping",
+    "hazardous-element": "hazardous",
+    "supply-too-concentrated": "few suppliers",
+    "no-gain-reference": "gain undefined",
+    "below-smallest-makeable-size": "too fine to make",
+    "doping-outside-known-range": "doping unknown",
+    "dopant-beyond-solubility": "beyond solubility",
+    "thin-wire-subbands": "subbands",
+    "temperature-outside-data": "beyond data",
+    "lattice-below-amorphous-minimum": "below amorphous",
+    "sintered-boundaries": "sintered",
+    "mixed-minority-carriers": "bipolar",
+}
+
+
+def word(flag: str) -> str:
+    """The flag as a table shows it.
+
+    >>> word("window-open"), word("above-service-temperature")
+    ('window open', 'too hot')
+    """
+    return _SHORT.get(flag, flag.replace("-", " "))
+
 
 def ordered(flags: Iterable[str]) -> tuple[str, ...]:
     """Flags without repeats, in the order of MEANINGS; an unknown slug is a KeyError (our fault)."""

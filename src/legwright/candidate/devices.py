@@ -83,5 +83,7 @@ def _device(row: dict[str, str], path: Path, number: int) -> Device:
             "note": row["note"],
         }
     except (KeyError, ValueError) as error:
-        raise InputError(f"cannot be read: {error}", file=path, key=f"row {number}") from error
+        raise InputError(
+            f"cannot be read: {error}", file=path, key=f"row {number}", slug="unreadable-file"
+        ) from error
     return read_as(Device, made, f"{path}, row {number}")

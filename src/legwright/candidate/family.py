@@ -225,7 +225,10 @@ def _all_shares(family: Family, rest: Shares) -> Shares:
     shares = (1 - sum(rest), *rest)
     for end, share in zip(ends, shares, strict=True):
         if not -_SAME <= share <= end.most + _SAME:
-            raise InputError(f"composition of '{family.name}': {end.name} {share:g} is not within 0 … {end.most:g}")
+            raise InputError(
+                f"composition of '{family.name}': {end.name} {share:g} is not within 0 … {end.most:g}",
+                slug="out-of-range",
+            )
     return tuple(min(max(share, 0.0), 1.0) for share in shares)
 
 

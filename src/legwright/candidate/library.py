@@ -133,4 +133,5 @@ def check_sources(data: BaseModel, path: Path, shown: str) -> None:
                 f"{nearest(number.source, known)}",
                 file=shown,
                 key=key,
+                slug="unknown-name",
             )

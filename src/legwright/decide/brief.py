@@ -232,6 +232,7 @@ def candidates_of(brief: Brief, path: str | Path) -> list[Candidate]:
             f"none of the candidates has carrier '{brief.candidates.carrier}'",
             file=path,
             key="candidates.carrier",
+            slug="bad-field",
         )
     return sorted(chosen, key=lambda c: (c.name, str(c.path)))
 

@@ -256,7 +256,9 @@ def best_doping(brief: Brief, candidate: Candidate, size: float) -> float:
     """The doping (1/m³) within the candidate's and the brief's range that serves best at that size (m)."""
     limits = doping_range(brief, candidate)
     if limits is None:
-        raise InputError(f"no doping of {candidate.name} lies within the brief's range", key="doping")
+        raise InputError(
+            f"no doping of {candidate.name} lies within the brief's range", key="doping", slug="out-of-range"
+        )
     dopings = np.geomspace(*limits, _DOPINGS)
     return float(dopings[np.argmax(score(candidate, brief.task, dopings, size, brief.size.shape))])
 

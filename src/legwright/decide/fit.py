@@ -127,7 +127,7 @@ class _Problem:
         self.of_sample = np.array([self.samples.index(name) for name in names])
         self.measured, self.heat_capacity = _measured(table, start)
         if not any(np.any(~np.isnan(series)) for series in self.measured.values()):
-            raise InputError("holds neither σ, S nor κ: nothing to fit", file=table.path)
+            raise InputError("holds neither σ, S nor κ: nothing to fit", file=table.path, slug="bad-row")
         hall = table.of("hall_density")
         self.expected, spreads = [], []
         for index in range(len(self.samples)):

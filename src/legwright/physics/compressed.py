@@ -233,7 +233,9 @@ def compress(
     within(sizes, "sizes", SMALLEST, LARGEST, "m")
     for key, (low, high) in (("dopings", dopings), ("sizes", sizes)):
         if low >= high:
-            raise InputError(f"value {low:g} to {high:g} is not allowed; a range ascends", key=key)
+            raise InputError(
+                f"value {low:g} to {high:g} is not allowed; a range ascends", key=key, slug="out-of-range"
+            )
     t = np.asarray(temperature, dtype=float)
     direct = _Direct(one, t.ravel(), sizes, shape)
     ends = pairwise([dopings[0], *(x for x in _corners(one) if dopings[0] < x < dopings[1]), dopings[1]])
@@ -325,6 +327,7 @@ def _pieces(direct: _Direct, low: float, high: float, tolerance: float, halvings
             f"value {tolerance:g} is not allowed; from {low:.3g} to {high:.3g} 1/m³ series of the most terms come "
             f"within {error:.0e}",
             key="tolerance",
+            slug="out-of-range",
         )
     middle = float(np.sqrt(low * high))
     for ends in ((low, middle), (middle, high)):

@@ -31,7 +31,8 @@ class _Verbs(click.Group):
 
     def resolve_command(self, ctx: click.Context, args: list[str]) -> Any:
         if args and self.get_command(ctx, args[0]) is None:
-            raise click.UsageError(f"no verb '{args[0]}'; {nearest(args[0], self.list_commands(ctx))}", ctx)
+            verbs = self.list_commands(ctx)
+            raise InputError(f"no verb '{args[0]}'; {nearest(args[0], verbs)}", slug="unknown-name")
         return super().resolve_command(ctx, args)
 
 

@@ -444,10 +444,9 @@ class Worth:
     """A score or zT as it is shown: its word, its label with the unit, and its scale (per cent for efficiency)."""
 
     def __init__(self, quantity: str) -> None:
-        titled = SCORE_TITLES.get(quantity, "zT")
+        self.word, unit = SCORE_TITLES.get(quantity, ("zT", ""))
         self.percent = quantity == "efficiency"
-        self.word = titled.split(" [")[0]
-        self.unit = "%" if self.percent else titled.split("[")[1].rstrip("]") if "[" in titled else "1"
+        self.unit = "%" if self.percent else unit or "1"
         self.label = f"{self.word} [{self.unit}]"
 
     def shown(self, value: float) -> float:

@@ -1,185 +1,359 @@
-"""How a table looks: weightiest columns first, decimals in line, no row ever folded, plain where the screen is."""
+"""How a table stands on a screen: the most important columns first, figures under their points, no folded row.
+
+A table is a list of columns and a list of records. A column names its title, unit, key and how its values are
+written; one whose key no record has is left out. What does not fit beside the rest stands in a second table with
+the same first column, and what does not fit there either is named under it.
+"""
 
 from __future__ import annotations
 
-import codecs
 import math
 import os
-import re
-import sys
-import unicodedata
-from collections.abc import Iterable, Sequence
+import textwrap
+from collections.abc import Callable, Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass
+from typing import IO, Any
 
-from rich import box
 from rich.cells import cell_len, set_cell_size
-from rich.console import Console, ConsoleOptions, RenderResult
-from rich.table import Table
+from rich.console import Console
 from rich.text import Text
 
-#: columns off a terminal where nothing says how wide the page is; Markdown rows must not fold at all
-_OFF_TERMINAL, _UNFOLDED = 120, 100_000
-#: what rich's plain box puts around each cell, and a text column is not cut below this
-_GAP, _LEAST_TEXT = 2, 12
+from legwright.show.plain import encodes, plain
+
+Record = Mapping[str, Any]
+Show = Callable[[Sequence[Any]], list[str]]
+
+#: columns of a screen that nobody named, and of prose that is still read with ease
+OFF_TERMINAL, READABLE = 120, 100
+NONE, CUT, GAP = "–", "…", "  "
+#: tables that stand over each other; what matters so little opens none
+_STACKED, SPARE = 2, 4
 
 
-def console(markdown: bool) -> Console:
-    """A console on stdout, as wide as the screen, COLUMNS or 120 characters; without colour off a terminal."""
-    _plain_where_needed()
-    if markdown:
-        return Console(highlight=False, width=_UNFOLDED, no_color=True, soft_wrap=True)
-    out = Console(highlight=False)
-    if out.is_terminal or os.environ.get("COLUMNS", "").isdigit():
-        return out
-    return Console(highlight=False, width=_OFF_TERMINAL, no_color=True)
+def figure(value: float | None, figures: int = 3) -> str:
+    """A value to so many significant figures; a dash for none.
 
-
-@dataclass(frozen=True)
-class Layout:
-    """A titled table that fits whatever width it is printed in.
-
-    Columns that do not fit beside the others go into a table of their own below, with the first column again; a
-    text wider than the page is cut, with a mark.
+    >>> figure(0.123456), figure(148.3), figure(36786.0, 2), figure(None), figure(2.2e20), figure(0.0)
+    ('0.123', '148', '37000', '–', '2.20e20', '0')
     """
-
-    title: str
-    columns: Sequence[str]
-    rows: Sequence[Sequence[str]]
-    markdown: bool
-
-    def __rich_console__(self, console: Console, options: ConsoleOptions) -> RenderResult:
-        columns = [_aligned([row[i] for row in self.rows]) for i in range(len(self.columns))]
-        if self.markdown:
-            yield self._table(range(len(columns)), columns, _UNFOLDED)
-            return
-        widths = [
-            max(cell_len(name), *map(cell_len, cells), 0) if cells else cell_len(name)
-            for name, cells in zip(self.columns, columns, strict=True)
-        ]
-        yield Text(_cut(self.title, options.max_width), "bold")
-        for chosen in _stacked(widths, options.max_width):
-            yield self._table(chosen, columns, options.max_width)
-            yield Text()
-
-    def _table(self, chosen: Iterable[int], columns: Sequence[Sequence[str]], width: int) -> Table:
-        if self.markdown:
-            table = Table(box=box.MARKDOWN)
-        else:
-            table = Table(box=box.SIMPLE_HEAD, show_edge=False, pad_edge=False, padding=(0, 1, 0, 0))
-        cells = []
-        left = width
-        for place, index in enumerate(chosen):
-            name = self.columns[index]
-            room = max(left - _GAP * (place > 0), _LEAST_TEXT)
-            words = [_cut(text, room) for text in columns[index]]
-            left -= max((cell_len(word) for word in [*words, name]), default=0) + _GAP * (place > 0)
-            header = Text(_cut(name, room))
-            if index and any(re.match(r"[×+−-]?\d", word) for word in words):
-                widest = max(map(cell_len, [*words, header.plain]))
-                words = [" " * (widest - cell_len(word)) + word for word in words]  # rich would strip what aligns
-                header = Text(" " * (widest - cell_len(header.plain)) + header.plain)
-            table.add_column(header, no_wrap=True)
-            cells.append(words)
-        for row in zip(*cells, strict=True):
-            table.add_row(*(Text(word, justify="left") for word in row))
-        return table
+    if value is None:
+        return NONE
+    if not value or not math.isfinite(value):
+        return f"{value:g}"
+    mantissa, exponent = f"{value:.{figures - 1}e}".split("e")
+    power = int(exponent)
+    if not -4 < power < 5:
+        return f"{mantissa}e{power}"
+    return f"{float(f'{mantissa}e{power}'):.{max(figures - 1 - power, 0)}f}"
 
 
-def draw(title: str, columns: Sequence[str], rows: Iterable[Sequence[str]], markdown: bool) -> Layout:
-    """A table whose first column names the row; the others in order of weight."""
-    return Layout(title, tuple(columns), [tuple(row) for row in rows], markdown)
+def span(ends: Sequence[float | None] | None, figures: int = 3) -> str:
+    """An interval in a sentence.
+
+    >>> span((15.0, 21.234), 2)
+    '15 … 21'
+    """
+    return NONE if ends is None else " … ".join(figure(end, figures) for end in ends)
 
 
-def _stacked(widths: Sequence[int], page: int) -> list[list[int]]:
-    """Columns of each table, so that none is wider than the page; the first column stands in each."""
-    tables, used = [[0]], widths[0]
-    for index, width in enumerate(widths[1:], start=1):
-        if used + _GAP + width > page and len(tables[-1]) > 1:
-            tables.append([0])
-            used = widths[0]
-        tables[-1].append(index)
-        used += _GAP + width
-    return tables
+def decimals_of(half_width: float) -> int:
+    """Decimals that end at the first figure of an uncertainty.
+
+    >>> decimals_of(0.0105), decimals_of(0.0095), decimals_of(30.0)
+    (2, 3, -1)
+    """
+    return -math.floor(math.log10(half_width))
 
 
-def _cut(text: str, width: int) -> str:
-    return text if cell_len(text) <= width else set_cell_size(text, width - 1) + "…"
+def _to(value: float, decimals: int) -> str:
+    if value and not 1e-3 <= abs(value) < 1e5:
+        return figure(value, max(decimals - decimals_of(abs(value)) + 1, 1))
+    return f"{round(value, decimals):.{max(decimals, 0)}f}"
 
 
-_NUMBER = re.compile(r"(\D?)(-?\d+)(\.\d*)?(e[+-]\d+)?( %)?")
+def on_point(texts: Iterable[str]) -> list[str]:
+    """The same texts padded so that their decimal points stand in one column.
+
+    >>> on_point(["1.25", "10", "–"])
+    [' 1.25', '10   ', ' –   ']
+    """
+    parts = [text.partition(".") for text in texts]
+    left = max((len(whole) for whole, _, _ in parts), default=0)
+    right = max((len(point + rest) for _, point, rest in parts), default=0)
+    return [whole.rjust(left) + (point + rest).ljust(right) for whole, point, rest in parts]
 
 
-def _aligned(cells: Sequence[str]) -> list[str]:
-    """Numbers with their points under each other; a column of anything else as it stands."""
-    found = [_NUMBER.fullmatch(cell) for cell in cells]
-    plain = [match for match in found if match and not match[4]]
-    if not plain or any(match is None and cell not in ("", "–") for match, cell in zip(found, cells, strict=True)):
-        return list(cells)
-    behind = max(len(match[3] or "") for match in plain)
+def words(values: Sequence[Any]) -> list[str]:
+    """Texts, and lists of texts, as they are."""
     return [
-        cell
-        if match is None or match[4]
-        else f"{match[1]}{match[2]}{(match[3] or '').ljust(behind)}{match[5] or ''}"
-        for cell, match in zip(cells, found, strict=True)
+        NONE if v is None else ", ".join(map(str, v)) if isinstance(v, list | tuple) else str(v) for v in values
     ]
 
 
-def figure(value: float | None, digits: int = 3) -> str:
-    """A rounded figure without trailing noise; a dash for none.
-
-    >>> figure(0.123456), figure(148.3), figure(None), figure(2.2e20)
-    ('0.123', '148', '–', '2.20e+20')
-    """
-    if value is None:
-        return "–"
-    if value and not 1e-3 <= abs(value) < 1e5:
-        return f"{value:.{digits - 1}e}"
-    return f"{value:.{digits}g}" if abs(value) < 10**digits else f"{value:.0f}"
+def counts(values: Sequence[int]) -> list[str]:
+    """Whole numbers, every digit."""
+    return on_point(map(str, values))
 
 
-def figure_within(value: float, low: float, high: float) -> str:
-    """A figure no finer than its interval: to the first digit of half its width, to the second where that is a 1.
-
-    >>> figure_within(0.05134, 0.031, 0.079), figure_within(0.05134, 0.049, 0.052), figure_within(61.7, 55, 70)
-    ('0.05', '0.0513', '62')
-    """
-    half = 0.5 * (high - low)
-    if not half > 0:
-        return figure(value)
-    place = math.floor(math.log10(half))
-    place -= int(half / 10.0**place) == 1
-    return f"{round(value, -place):.{max(-place, 0)}f}"
+def given(values: Sequence[float]) -> list[str]:
+    """Values as a file gave them."""
+    return on_point(f"{value:g}".replace("e-0", "e-").replace("e+", "e") for value in values)
 
 
-def span(ends: Sequence[float] | None, digits: int = 3) -> str:
-    """An interval; a dash for none."""
-    return "–" if ends is None else f"{figure(ends[0], digits)} … {figure(ends[1], digits)}"
+def figures(count: int = 3) -> Show:
+    """Each value to so many figures of its own."""
+    return lambda values: on_point(figure(value, count) for value in values)
 
 
-def percent(share: float) -> str:
-    """A share in whole per cent."""
-    return f"{100 * share:.0f} %"
+def numbers(count: int = 3) -> Show:
+    """All values to the same decimals, those that give the largest so many figures; each its own where that hides
+    one."""
+
+    def show(values: Sequence[float | None]) -> list[str]:
+        sizes = [abs(value) for value in values if value]
+        if not sizes:
+            return figures(count)(values)
+        decimals = decimals_of(max(sizes)) + count - 1
+        if not 1e-3 <= max(sizes) < 1e5 or decimals < 0 or min(sizes) < 0.5 * 10.0**-decimals:
+            return figures(count)(values)
+        return on_point(NONE if value is None else _to(value, decimals) if value else "0" for value in values)
+
+    return show
 
 
-#: one plain character for each that a narrow screen may lack, so that columns stay in line
-_PLAIN = str.maketrans(
-    "…–—×±·µμΔδκλσρηθωΓΛγαβτχ≤≥≈→√∞°Ååöäüéíñ⁻⁺⁰¹²³⁴⁵⁶⁷⁸⁹₀₁₂₃₄₅₆₇₈₉",
-    "~--x~.uuDdklsrhtwGLgabtx<>~>v@oAaoauein-+01234567890123456789",
-)
+def shares(decimals: int = 0) -> Show:
+    """Shares in per cent; the column's unit says so."""
+    return lambda values: on_point(NONE if value is None else f"{100 * value:.{decimals}f}" for value in values)
 
 
-def _plain(error: UnicodeError) -> tuple[str, int]:
-    assert isinstance(error, UnicodeEncodeError)
-    text = error.object[error.start : error.end].translate(_PLAIN)
-    known = "".join(
-        unicodedata.normalize("NFKD", each).encode("ascii", "ignore").decode()[:1] or "?" for each in text
+def spans(count: int = 3) -> Show:
+    """Intervals, their marks under each other."""
+    return _both(lambda value: (figure(value[0], count), figure(value[1], count)))
+
+
+def scores(values: Sequence[tuple[float, float | None, float | None]]) -> list[str]:
+    """Values with the ends of their intervals, to the first figure of half the interval; three figures without."""
+    if all(low is None or high is None or low >= high for _, low, high in values):
+        return numbers(3)([value for value, _, _ in values])
+    return on_point(
+        figure(value, 2)
+        if low is None or high is None or low >= high
+        else _to(value, decimals_of((high - low) / 2))
+        for value, low, high in values
     )
-    return known, error.end
 
 
-def _plain_where_needed() -> None:
-    """What stdout's encoding lacks is said in plain characters."""
-    codecs.register_error("plain", _plain)
-    reconfigure = getattr(sys.stdout, "reconfigure", None)
-    if reconfigure is not None and not (sys.stdout.encoding or "").lower().startswith("utf"):
-        reconfigure(errors="plain")
+def _ends(value: tuple[float | None, float | None]) -> tuple[str, str]:
+    low, high = value
+    if low is None or high is None or low >= high:
+        return figure(low, 2), figure(high, 2)
+    decimals = decimals_of((high - low) / 2) + 1
+    return _to(low, decimals), _to(high, decimals)
+
+
+def _both(texts: Callable[[Any], tuple[str, str]]) -> Show:
+    def show(values: Sequence[Any]) -> list[str]:
+        known = [None if value is None or None in value else texts(value) for value in values]
+        left = max((len(ends[0]) for ends in known if ends), default=1)
+        right = max((len(ends[1]) for ends in known if ends), default=0)
+        none = NONE.rjust(left) + " " * (right + 3 * (right > 0))
+        return [f"{ends[0]:>{left}} … {ends[1]:<{right}}" if ends else none for ends in known]
+
+    return show
+
+
+#: intervals of scores, one figure finer than the score
+intervals: Show = _both(_ends)
+
+
+@dataclass(frozen=True)
+class Column:
+    """What a column says, and how much it matters: 0 first, SPARE least; equals as they are listed.
+
+    `least`: characters to which a long text may be cut, with a mark; 0: never.
+    """
+
+    title: str
+    value: str | Callable[[Record], Any]
+    unit: str = ""
+    show: Show = words
+    matters: int = 0
+    least: int = 0
+
+    def texts(self, rows: Sequence[Record]) -> list[str]:
+        """The cells, each as wide as the widest."""
+        value = self.value
+        found = [row.get(value) if isinstance(value, str) else value(row) for row in rows]
+        return self.show(found)
+
+    @property
+    def known(self) -> str:
+        """Title and unit on one line."""
+        return f"{self.title} [{self.unit}]" if self.unit else self.title
+
+    def is_in(self, rows: Sequence[Record]) -> bool:
+        """Whether any record has it."""
+        return not isinstance(self.value, str) or any(self.value in row for row in rows)
+
+
+@dataclass
+class _Block:
+    """A column in text: the head's lines, the cells, and how wide it must and may be."""
+
+    column: Column
+    head: list[str]
+    cells: list[str]
+
+    @property
+    def widest(self) -> int:
+        return max(map(cell_len, [*self.head, *self.cells]))
+
+    @property
+    def narrowest(self) -> int:
+        return (
+            min(self.widest, max(self.column.least, *map(cell_len, self.head)))
+            if self.column.least
+            else self.widest
+        )
+
+    def line(self, text: str, width: int, cut: str) -> str:
+        if cell_len(text) > width:
+            return set_cell_size(text, width - len(cut)) + cut
+        return set_cell_size(text, width) if self.column.show is words else " " * (width - cell_len(text)) + text
+
+
+class Screen:
+    """Where tables and sentences go: stdout as it is, or Markdown."""
+
+    def __init__(
+        self,
+        markdown: bool = False,
+        hushed: Collection[str] = (),
+        file: IO[str] | None = None,
+        width: int | None = None,
+    ) -> None:
+        console = Console(highlight=False, file=file, width=width, soft_wrap=markdown)
+        if width is None and not console.is_terminal:
+            columns = os.environ.get("COLUMNS", "")
+            console.width = int(columns) if columns.isdecimal() and int(columns) else OFF_TERMINAL
+        self.console, self.markdown, self.hushed = console, markdown, hushed
+        self._plain, self._begun = not encodes(console.file), False
+
+    def text(self, text: str) -> str:
+        """What this screen can show of a text."""
+        return plain(text) if self._plain else text
+
+    def table(self, title: str, columns: Sequence[Column], rows: Sequence[Record], keys: int = 1) -> None:
+        """The rows under a title; nothing where there are none. The first `keys` columns tell rows apart."""
+        if not rows:
+            return
+        blocks = [self._block(column, rows) for column in columns if column.is_in(rows)]
+        self.gap()
+        if self.markdown:
+            self.say(title, len(title))
+            self._markdown(blocks)
+            return
+        self.say(title, len(title))
+        first, rest = blocks[:keys], blocks[keys:]
+        for place in range(_STACKED):
+            if place:
+                self.gap()
+            chosen = _fitting(first, rest, self.console.width)
+            self._draw([*first, *chosen], keys)
+            rest = [block for block in rest if block not in chosen]
+            if all(block.column.matters >= SPARE for block in rest):
+                break
+        if rest:
+            left = ", ".join(block.column.title.replace("\n", " ") for block in rest)
+            self.gap()
+            self.say(f"Not shown at this width, but on wider screens and in --json: {left}.")
+
+    def pairs(self, title: str, rows: Iterable[tuple[str, str, str]]) -> None:
+        """What, how much, in which unit."""
+        lines = [{"what": f"{what} [{unit}]" if unit else what, "value": value} for what, value, unit in rows]
+        self.table(title, [Column("property", "what"), Column("value", "value", show=on_point)], lines)
+
+    def say(self, text: str, bold: int = 0) -> None:
+        """A paragraph, wrapped where it stays readable; so many of its characters bold."""
+        head, rest = self.text(text[:bold]), self.text(text[bold:])
+        if self.markdown:
+            self._print(f"**{head}**{rest}\n" if head else f"{rest}\n")
+            return
+        width, indent = min(self.console.width, READABLE), "  " if head and rest else ""
+        lines = textwrap.wrap(head + rest, width, subsequent_indent=indent, break_on_hyphens=False)
+        self._print(_bold("\n".join(lines), len(head)))
+
+    def gap(self) -> None:
+        """An empty line, but not at the top."""
+        if self._begun:
+            self.console.print()
+
+    def _print(self, text: str | Text) -> None:
+        self._begun = True
+        self.console.print(text, markup=False, no_wrap=True, overflow="ignore", crop=False)
+
+    def _block(self, column: Column, rows: Sequence[Record]) -> _Block:
+        *above, last = column.title.split("\n")
+        unit = [f"[{column.unit}]"] if column.unit else []
+        head = [*above, " ".join([last, *unit])] if above else [last, *unit]
+        return _Block(column, [*map(self.text, head)], [*map(self.text, column.texts(rows))])
+
+    def _draw(self, blocks: Sequence[_Block], keys: int) -> None:
+        widths = _widths(blocks, keys, self.console.width)
+        height, cut = max(len(block.head) for block in blocks), self.text(CUT)
+
+        def line(texts: Iterable[str]) -> str:
+            cells = zip(blocks, texts, widths, strict=True)
+            return GAP.join(block.line(text, width, cut) for block, text, width in cells).rstrip()
+
+        heads = [[""] * (height - len(block.head)) + block.head for block in blocks]
+        for texts in zip(*heads, strict=True):
+            self._print(_bold(line(texts)))
+        self._print(Text(self.text("─") * (sum(widths) + len(GAP) * (len(widths) - 1)), "dim"))
+        for texts in zip(*(block.cells for block in blocks), strict=True):
+            self._print(Text(line(texts)))
+
+    def _markdown(self, blocks: Sequence[_Block]) -> None:
+        def line(texts: Iterable[str]) -> str:
+            return f"| {' | '.join(' '.join(text.split()).replace('|', chr(92) + '|') for text in texts)} |"
+
+        self._print(line(self.text(block.column.known.replace("\n", " ")) for block in blocks))
+        self._print("|" + "|".join(":--" if block.column.show is words else "--:" for block in blocks) + "|")
+        for texts in zip(*(block.cells for block in blocks), strict=True):
+            self._print(line(texts))
+
+
+def _bold(text: str, end: int | None = None) -> Text:
+    shown = Text(text)
+    shown.stylize("bold", 0, end)
+    return shown
+
+
+def _fitting(first: Sequence[_Block], rest: Sequence[_Block], room: int) -> list[_Block]:
+    """Of the rest, the most important that fit beside the first, in their listed order."""
+    free = room + len(GAP) - sum(_keys_widths(first, rest, room)) - len(GAP) * len(first)
+    chosen: list[_Block] = []
+    for block in sorted(rest, key=lambda one: one.column.matters):
+        if block.narrowest + len(GAP) <= free:
+            free -= block.narrowest + len(GAP)
+            chosen.append(block)
+    return [block for block in rest if block in chosen]
+
+
+def _keys_widths(keys: Sequence[_Block], rest: Sequence[_Block], room: int) -> list[int]:
+    """All of the first columns, unless the very first is so long that it would drive the others out."""
+    widths = [block.widest for block in keys]
+    if sum(widths) + sum(block.narrowest for block in rest) + len(GAP) * (len(keys) + len(rest) - 1) > room:
+        widths[0] = min(widths[0], 2 * room // 5)
+    return widths
+
+
+def _widths(blocks: Sequence[_Block], keys: int, room: int) -> list[int]:
+    """Each as wide as it must be; those that were cut share what is left, from the first on."""
+    widths = _keys_widths(blocks[:keys], blocks[keys:], room) + [block.narrowest for block in blocks[keys:]]
+    free = room - sum(widths) - len(GAP) * (len(blocks) - 1)
+    for index, block in enumerate(blocks):
+        more = min(free, block.widest - widths[index])
+        widths[index] += more
+        free -= more
+    return widths

@@ -15,6 +15,7 @@ from legwright.base.errors import InputError, nearest
 from legwright.base.flags import MEANINGS
 
 if TYPE_CHECKING:
+    from legwright.show.layout import Screen
     from legwright.show.records import Record
 
     _Number = click.ParamType[float]
@@ -41,19 +42,26 @@ class Positive(_Number):
             number = math.nan
         if not (math.isfinite(number) and number > 0):
             word = " or the word bulk" if self.bulk else ""
-            self.fail(f"value '{value}' is not allowed; a finite number above 0{word}", param, ctx)
+            key = None if param is None else param.opts[0]
+            message = f"value '{value}' is not allowed; a finite number above 0{word}"
+            raise InputError(message, key=key, slug="out-of-range")
         return number
 
 
 class Named(_Text):
-    """A candidate by library name or path; the shell completes the names."""
+    """A candidate by library name, family and shares, or path; the shell completes them."""
 
     name = "candidate"
 
     def shell_complete(self, ctx: click.Context, param: click.Parameter, incomplete: str) -> list[CompletionItem]:
-        from legwright.candidate.library import library_names
+        from legwright.base.files import datasets_folder
 
-        return [CompletionItem(name) for name in library_names() if name.startswith(incomplete)]
+        known = [
+            *sorted(path.stem for path in (datasets_folder() / "candidates").glob("*.toml")),
+            *sorted(f"{path.stem}:" for path in (datasets_folder() / "families").glob("*.toml")),
+        ]
+        names = [CompletionItem(name) for name in known if name.startswith(incomplete)]
+        return names or [CompletionItem(incomplete, type="file")]
 
 
 _HUSHED = "legwright.hushed"
@@ -99,19 +107,23 @@ def publish(
     verb: str,
     content: Record,
     rows: list[Record],
+    table: Callable[[Screen, Record], None],
     as_json: bool,
     csv_file: Path | None,
-    table: Callable[[], None],
+    markdown: bool,
 ) -> None:
-    """Write the CSV if asked for, then one JSON object or the table."""
+    """Write the rows as CSV if asked for, then print the content: one JSON object, or what `table` makes of it."""
     from legwright.base.files import write_whole
     from legwright.show import records
+    from legwright.show.plain import encodes
 
     if csv_file == Path():
         raise InputError("needs the name of a file", key="--csv")
     if csv_file is not None:
         write_whole(csv_file, records.as_csv(rows))
     if as_json:
-        sys.stdout.write(records.as_json(verb, content))
+        sys.stdout.write(records.as_json(verb, content, ascii_only=not encodes(sys.stdout)))
     else:
-        table()
+        from legwright.show.layout import Screen
+
+        table(Screen(markdown, hushed()), content)

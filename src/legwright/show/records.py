@@ -111,10 +111,11 @@ def advice_record(found: Advice, score_name: str) -> Record:
     }
 
 
-def peak_record(found: Peak) -> Record:
+def peak_record(found: Peak, shape: str) -> Record:
     """The whole of `peak`."""
     return {
         "candidate": found.candidate.name,
+        "shape": shape,
         "temperature_K": found.temperature,
         "doping_per_cm3": found.doping / PER_CM3,
         "size_nm": found.size / NM,
@@ -147,6 +148,8 @@ def sheet_record(candidate: Candidate, made: Properties, flags: tuple[str, ...])
         "power_factor_W_per_mK2": float(made.power_factor),
         "zt": float(made.zt),
         "mobility_cm2_per_Vs": float(made.mobility) / CM2,
+        "hall_mobility_cm2_per_Vs": float(made.hall_mobility) / CM2,
+        "hall_coefficient_cm3_per_C": float(made.hall_coefficient) * PER_CM3,
         "amorphous_minimum_W_per_mK": float(made.amorphous_minimum),
         "flags": list(flags),
     }
@@ -521,10 +524,10 @@ def notes(flags: Iterable[str], candidates: Iterable[Candidate]) -> Record:
     }
 
 
-def as_json(verb: str, content: Record) -> str:
+def as_json(verb: str, content: Record, ascii_only: bool = False) -> str:
     """One strict JSON object: no NaN, no infinity."""
     whole = {"schema": SCHEMA, "legwright": VERSION, "verb": verb, **content}
-    return json.dumps(whole, allow_nan=False, ensure_ascii=False, indent=2) + "\n"
+    return json.dumps(whole, allow_nan=False, ensure_ascii=ascii_only, indent=2) + "\n"
 
 
 def rank_frame(rows: Iterable[Row], sure: dict[str, Confidence] | None = None) -> pd.DataFrame:

@@ -17,15 +17,10 @@ if TYPE_CHECKING:
 @output
 def about_verb(as_json: bool, csv_file: Path | None, markdown: bool) -> None:
     """Versions of the program, of what it leans on, and of its data sets: for a report, or a question to others."""
-    from legwright.show import layout, tables
+    from legwright.show import tables
     from legwright.show.surroundings import surroundings
 
     content: Record = surroundings()
     rows = [*content["packages"], *content["data_sets"]]
 
-    def table() -> None:
-        out = layout.console(markdown)
-        for each in tables.about_tables(content, markdown):
-            out.print(each)
-
-    publish("about", content, rows, as_json, csv_file, table)
+    publish("about", content, rows, tables.about, as_json, csv_file, markdown)

@@ -19,7 +19,7 @@ def audit_verb(as_json: bool, csv_file: Path | None, markdown: bool) -> None:
     """The library against published samples and devices: how far off, how often inside its own intervals."""
     from legwright.decide.audit import audit, totals
     from legwright.decide.devices import audit_devices
-    from legwright.show import layout, records, tables
+    from legwright.show import records, tables
 
     found = audit()
     rows = [records.verdict_record(one) for one in found.verdicts]
@@ -32,14 +32,4 @@ def audit_verb(as_json: bool, csv_file: Path | None, markdown: bool) -> None:
         "without_candidate": found.without_candidate,
     }
 
-    def table() -> None:
-        out = layout.console(markdown)
-        out.print(tables.totals_table(sums, markdown))
-        out.print(tables.misses_table(rows, markdown))
-        out.print(tables.AUDIT_WORDS, markup=False)
-        out.print(tables.devices_table(devices, markdown))
-        out.print(tables.DEVICE_WORDS, markup=False)
-        waiting = ", ".join(f"{name} ({count})" for name, count in found.without_candidate.items())
-        out.print(f"Published values without a candidate: {waiting or 'none'}.", markup=False)
-
-    publish("audit", content, rows, as_json, csv_file, table)
+    publish("audit", content, rows, tables.audit, as_json, csv_file, markdown)

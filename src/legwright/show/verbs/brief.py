@@ -7,6 +7,7 @@ from pathlib import Path
 
 import click
 
+from legwright.base.errors import InputError
 from legwright.base.files import write_whole
 
 _DUTIES = {
@@ -25,5 +26,7 @@ def brief_verb(kind: str, into: Path | None) -> None:
         text = text.replace("{" + name + "}", value)
     if into is None:
         click.echo(text, nl=False)
+    elif into.exists():
+        raise InputError("exists; name another file", file=into, key="--into", slug="cannot-write")
     else:
         write_whole(into, text)

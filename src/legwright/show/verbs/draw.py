@@ -46,7 +46,7 @@ def draw_verb(
         raise InputError(f"no figure '{kind}'; {nearest(kind, KINDS)}", slug="unknown-name")
     from legwright.base.files import write_whole
     from legwright.base.units import NM, PER_CM3
-    from legwright.show import drawings, figures, layout
+    from legwright.show import drawings, figures
 
     suffix = drawings.file_suffix(into)
     asked = drawings.Asked(
@@ -60,8 +60,7 @@ def draw_verb(
     drawn = figures.picture(record)
     write_whole(into, figures.as_svg(drawn, kind) if suffix == ".svg" else figures.as_png(drawn))
 
-    def table() -> None:
-        layout.console(markdown).print(drawn.alt, markup=False, soft_wrap=True)
-
     content = {"file": str(into), "title": drawn.title, "says": drawn.says, **record}
-    publish("draw", content, drawings.flat_rows(record), as_json, csv_file, table)
+    publish(
+        "draw", content, drawings.flat_rows(record), lambda out, _: out.say(drawn.alt), as_json, csv_file, markdown
+    )

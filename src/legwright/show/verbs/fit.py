@@ -7,12 +7,14 @@ from pathlib import Path
 import click
 
 from legwright.base.errors import InputError
-from legwright.show.options import output, publish
+from legwright.show.options import Named, output, publish
 
 
 @click.command("fit")
 @click.argument("measurements", type=click.Path(path_type=Path))
-@click.option("--like", metavar="CANDIDATE", required=True, help="Candidate to start from: name or file.")
+@click.option(
+    "--like", type=Named(), metavar="CANDIDATE", required=True, help="Candidate to start from: name or file."
+)
 @click.option("--into", type=click.Path(path_type=Path), help="Write the calibrated candidate to this TOML file.")
 @output
 def fit_verb(
@@ -23,7 +25,7 @@ def fit_verb(
     from legwright.candidate.library import load_candidate
     from legwright.candidate.measurements import read_measurements
     from legwright.decide.fit import candidate_text, fit
-    from legwright.show import layout, records, tables
+    from legwright.show import records, tables
 
     if into is not None and into.suffix != ".toml":
         raise InputError(f"value '{into}' is not allowed; a name that ends in .toml", key="--into")
@@ -33,15 +35,4 @@ def fit_verb(
     if into is not None:
         write_whole(into, candidate_text(found))
 
-    def table() -> None:
-        out = layout.console(markdown)
-        for each in tables.fit_tables(content, markdown):
-            out.print(each)
-        out.print(f"Fit: {found.reason}. Heat capacity: {found.heat_capacity}.", markup=False)
-        open_ones = [row["parameter"] for row in content["parameters"] if not row["determined"]]
-        if open_ones:
-            out.print(f"These data do not determine: {', '.join(open_ones)}.", markup=False)
-        if into is not None:
-            out.print(f"Written: {into}", markup=False)
-
-    publish("fit", content, content["parameters"], as_json, csv_file, table)
+    publish("fit", content, content["parameters"], tables.fit, as_json, csv_file, markdown)

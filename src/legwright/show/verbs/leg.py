@@ -15,8 +15,15 @@ from legwright.show.options import Named, Positive, output, publish
 @click.argument("brief", type=click.Path(path_type=Path))
 @click.option("--doping", type=Positive("CM3"), help="Active density per cm³; default: the brief's best.")
 @click.option("--size", type=Positive("NM|bulk", bulk=True), help="nm, or bulk; default: the brief's best.")
-@click.option("--then", "then", multiple=True, metavar="CANDIDATE", help="The next segment towards the cold end.")
-@click.option("--partner", metavar="CANDIDATE", help="The couple's other leg; default: the brief's.")
+@click.option(
+    "--then",
+    "then",
+    multiple=True,
+    type=Named(),
+    metavar="CANDIDATE",
+    help="The next segment towards the cold end.",
+)
+@click.option("--partner", type=Named(), metavar="CANDIDATE", help="The couple's other leg; default: the brief's.")
 @output
 def leg_verb(
     candidate: str,
@@ -40,7 +47,7 @@ def leg_verb(
     from legwright.decide.couple import designed, join
     from legwright.decide.installed import deliver
     from legwright.decide.service import service
-    from legwright.show import layout, records, tables
+    from legwright.show import records, tables
 
     one, job = load_candidate(candidate), load_brief(brief)
     doping, size = None if doping is None else doping * PER_CM3, None if size is None else size * NM
@@ -63,16 +70,7 @@ def leg_verb(
         content["service"] = records.service_record(aged)
     under = records.notes(content["flags"], [*materials, *([other] if other else [])])
 
-    def table() -> None:
-        out = layout.console(markdown)
-        for one_table in tables.leg_tables(content, markdown):
-            out.print(one_table)
-        if aged is not None:
-            for part in tables.service_tables(content["service"], content["size_nm"], markdown):
-                out.print(part)
-        tables.footnotes(out, under["flag_meanings"], under["cautions"])
-
-    publish("leg", {**content, **under}, [content], as_json, csv_file, table)
+    publish("leg", {**content, **under}, [content], tables.leg, as_json, csv_file, markdown)
     if then or other:
         if joined.running is None:
             raise NothingFeasible("these legs cannot serve this brief; the flags say why")

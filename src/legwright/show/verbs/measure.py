@@ -24,7 +24,7 @@ def measure_verb(
     from legwright.decide.brief import load_brief, partner_of
     from legwright.decide.confidence import confidences, draw_all
     from legwright.decide.rank import rank
-    from legwright.show import layout, records, tables
+    from legwright.show import records, tables
 
     job = load_brief(brief)
     if partner_of(job, brief):
@@ -40,14 +40,4 @@ def measure_verb(
     advice = advise(found, fitted, seed, (likeliest, *sure[likeliest].tied_with))
     content = {"title": job.title, **records.advice_record(advice, able[0].score_name)}
 
-    def table() -> None:
-        out = layout.console(markdown)
-        for each in tables.advice_tables(content, markdown):
-            out.print(each)
-        out.print(
-            f"Chosen now: {advice.chosen}, expected {layout.figure(advice.expected)}; if all were known the choice "
-            f"would gain {layout.figure(advice.all_known, 2)}.",
-            markup=False,
-        )
-
-    publish("measure", content, content["rows"], as_json, csv_file, table)
+    publish("measure", content, content["rows"], tables.measure, as_json, csv_file, markdown)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from functools import partial
 from pathlib import Path
 
 import click
@@ -28,24 +29,19 @@ def peak_verb(
     from legwright.base.units import PER_CM3
     from legwright.candidate.library import load_candidate
     from legwright.decide.peak import peak
-    from legwright.show import layout, records, tables
+    from legwright.show import records, tables
 
     one = load_candidate(candidate)
     found = peak(one, temperature, None if doping is None else doping * PER_CM3, shape)
-    content = records.peak_record(found)
+    content = records.peak_record(found, shape)
     under = records.notes(found.flags, [one])
 
-    def table() -> None:
-        out = layout.console(markdown)
-        low, high = content["window_nm"]
-        pairs = [
-            (f"{shape} size at the peak [nm]", layout.figure(content["size_nm"])),
-            ("zT at the peak", layout.figure(content["zt"])),
-            ("sizes that keep 95 % of it [nm]", f"{layout.figure(low)} … {layout.figure(high)}"),
-            ("zT of coarse material, same doping", layout.figure(content["zt_coarse"])),
-            ("doping [cm⁻³]" + ("" if doping else ", the best"), layout.figure(content["doping_per_cm3"])),
-        ]
-        out.print(tables.pairs_table(f"{one.name} at {temperature:g} K", pairs, markdown))
-        tables.footnotes(out, under["flag_meanings"], under["cautions"])
-
-    publish("peak", {**content, **under}, content["curve"], as_json, csv_file, table)
+    publish(
+        "peak",
+        {**content, **under},
+        content["curve"],
+        partial(tables.peak, best_doping=doping is None),
+        as_json,
+        csv_file,
+        markdown,
+    )

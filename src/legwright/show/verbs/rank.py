@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import shlex
 from collections.abc import Sequence
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -49,7 +50,7 @@ def rank_verb(
     from legwright.decide.couple import rank_with
     from legwright.decide.rank import rank
     from legwright.decide.tradeoffs import trade_offs as fronts_of
-    from legwright.show import layout, records, tables
+    from legwright.show import records, tables
 
     job = load_brief(brief)
     partner = partner_of(job, brief)
@@ -61,23 +62,19 @@ def rank_verb(
     rows = [records.rank_record(row, sure) for row in found]
     under = records.notes((f for row in found for f in row.flags), (row.candidate for row in found if row.score))
     fronts = {axis: list(names) for axis, names in fronts_of(found).items()}
-    content = {"title": job.title, "rows": rows, "trade_offs": fronts, **under}
-
-    def table() -> None:
-        out = layout.console(markdown)
-        duty = job.duty
-        what = f"couple with {partner.name}" if partner else "leg"
-        heading = f"{job.title}: {duty.kind} {what}, {duty.cold_K:g} to {duty.hot_K:g} K, {job.size.shape} size"
-        out.print(tables.rank_table(heading, rows, markdown))
-        if draws:
-            out.print(tables.sureness_table(rows, markdown))
-        if trade_offs:
-            out.print(tables.trade_offs_table(rows, fronts, markdown))
-        tables.footnotes(out, under["flag_meanings"], under["cautions"])
+    duty = {"kind": job.duty.kind, "hot_K": job.duty.hot_K, "cold_K": job.duty.cold_K}
+    content = {
+        "title": job.title,
+        "duty": duty,
+        "partner": partner.name if partner else None,
+        "rows": rows,
+        "trade_offs": fronts,
+        **under,
+    }
 
     if page is not None:
         _write_page(page, brief, job, found, rows, under, draws, seed)
-    publish("rank", content, rows, as_json, csv_file, table)
+    publish("rank", content, rows, partial(tables.rank, trade_offs=trade_offs), as_json, csv_file, markdown)
     if not any(row["score"] for row in rows):
         raise NothingFeasible("no candidate can serve this brief; the flags say why")
 

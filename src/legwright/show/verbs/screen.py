@@ -46,7 +46,7 @@ def screen_verb(
     from legwright.decide.brief import load_brief
     from legwright.decide.screen import members as members_of
     from legwright.decide.screen import screen
-    from legwright.show import layout, tables
+    from legwright.show import tables
     from legwright.show.progress import progress
 
     job = load_brief(brief)
@@ -76,13 +76,7 @@ def screen_verb(
         "rows": rows,
     }
 
-    def table() -> None:
-        out = layout.console(markdown)
-        out.print(tables.screen_table(content, markdown))
-        if found.complete:
-            out.print(f"All {found.asked} rows: {found.into}", markup=False)
-
-    publish("screen", content, rows, as_json, csv_file, table)
+    publish("screen", content, rows, tables.screen, as_json, csv_file, markdown)
     if found.complete and not found.best:
         raise NothingFeasible("none of these can serve this brief; the file's flags say why")
     return 0 if found.complete else 130

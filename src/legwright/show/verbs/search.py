@@ -6,11 +6,11 @@ from pathlib import Path
 
 import click
 
-from legwright.show.options import output, publish
+from legwright.show.options import Named, output, publish
 
 
 @click.command("search")
-@click.argument("subject")
+@click.argument("subject", type=Named())
 @click.argument("brief", type=click.Path(path_type=Path))
 @click.option("--evaluations", type=click.IntRange(12, 2000), default=48, show_default=True, help="Costly answers.")
 @click.option("--seed", type=click.IntRange(0), default=0, show_default=True, help="Of the random numbers.")
@@ -31,17 +31,12 @@ def search_verb(
     from legwright.candidate.library import load_candidate
     from legwright.decide.brief import load_brief
     from legwright.decide.search import search
-    from legwright.show import layout, records, tables
+    from legwright.show import records, tables
 
     one = load_family(subject) if subject in family_names() else load_candidate(subject)
     found = search(one, load_brief(brief), evaluations, seed, resume)
     content = records.search_record(found)
     under = records.notes(found.flags, [found.candidate])
 
-    def table() -> None:
-        out = layout.console(markdown)
-        out.print(tables.search_table(content, markdown))
-        tables.footnotes(out, under["flag_meanings"], under["cautions"])
-
-    publish("search", {**content, **under}, [content], as_json, csv_file, table)
+    publish("search", {**content, **under}, [content], tables.search, as_json, csv_file, markdown)
     return 0 if found.complete else 130

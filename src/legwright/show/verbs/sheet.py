@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from pathlib import Path
 
 import click
@@ -33,22 +32,11 @@ def sheet_verb(
     from legwright.candidate.library import load_candidate
     from legwright.decide.warnings import point_flags
     from legwright.physics.properties import evaluate
-    from legwright.show import layout, records, tables
+    from legwright.show import records, tables
 
     one = load_candidate(candidate)
     made = evaluate(one, temperature, doping * PER_CM3, size * NM, shape)
     content = records.sheet_record(one, made, ordered(point_flags(one, made, shape)))
     under = records.notes(content["flags"], [one])
 
-    def table() -> None:
-        out = layout.console(markdown)
-        asked = ("temperature [K]", "doping [1/cm^3]", "size [nm]")
-        pairs = [
-            (name, layout.figure(float(value[0]), 4)) for name, value in made.columns().items() if name not in asked
-        ]
-        where = "coarse" if math.isinf(size) else f"{size:g} nm {shape}"
-        heading = f"{one.name} ({content['formula']}) at {temperature:g} K, {doping:.3g} cm⁻³, {where}"
-        out.print(tables.pairs_table(heading, pairs, markdown))
-        tables.footnotes(out, under["flag_meanings"], under["cautions"])
-
-    publish("sheet", {**content, **under}, [content], as_json, csv_file, table)
+    publish("sheet", {**content, **under}, [content], tables.sheet, as_json, csv_file, markdown)

@@ -34,7 +34,7 @@ def why_verb(
     from legwright.candidate.library import load_candidate
     from legwright.decide.brief import load_brief
     from legwright.decide.why import design_of, why
-    from legwright.show import layout, records, tables
+    from legwright.show import records, tables
 
     if (temperature is None) == (brief is None):
         raise InputError("give either --temperature or --brief")
@@ -52,14 +52,4 @@ def why_verb(
     content = records.why_record(found)
     under = records.notes(found.flags, [one])
 
-    def table() -> None:
-        out = layout.console(markdown)
-        out.print(content["verdict"], markup=False)
-        pays = content["electrons_pay_below_nm"]
-        reach = "not down to 1 nm" if pays is None else f"below {layout.figure(pays)} nm"
-        out.print(f"Carriers start to pay (5 % of mobility) {reach}.", markup=False)
-        for each in tables.why_tables(content, markdown):
-            out.print(each)
-        tables.footnotes(out, under["flag_meanings"], under["cautions"])
-
-    publish("why", {**content, **under}, content["free_paths"], as_json, csv_file, table)
+    publish("why", {**content, **under}, content["free_paths"], tables.why, as_json, csv_file, markdown)
