@@ -147,9 +147,9 @@ def test_a_damaged_part_is_worked_out_again_and_another_question_is_refused(tmp_
 def test_two_runs_at_once_are_refused(tmp_path):
     first, second = (Parts(tmp_path / "parts", "q") for _ in range(2))
     with first.held(), pytest.raises(InputError, match="another run"), second.held():
-        pass
+        raise AssertionError("two runs hold one folder")
     with second.held():
-        pass
+        assert (tmp_path / "parts" / "question").read_text(encoding="utf-8") == "q\n"
 
 
 def test_members_are_spread_over_the_line_and_can_be_loaded():
